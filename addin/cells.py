@@ -14,7 +14,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, Literal, TypeAlias
 
-import numpy as np
 import numpy.typing as npt
 
 ErrorKind = Literal["VALUE", "NUM", "NA", "DIV0", "REF", "NAME", "NULL"]
@@ -42,7 +41,7 @@ class CellError:
         return ERROR_TEXT[self.kind]
 
 
-Scalar: TypeAlias = float | str | bool | None | CellError
+Scalar: TypeAlias = float | str | bool | CellError | None
 Range: TypeAlias = list[list[Scalar]]
 Cell: TypeAlias = Scalar | Range
 Grid: TypeAlias = npt.NDArray[Any]
