@@ -33,7 +33,7 @@ def store(
     xml: bytes,
     values: Mapping[tuple[int, int], Scalar],
     blocks: Sequence[tuple[int, int, Grid]] = (),
-    array_refs: Mapping[tuple[int, int], tuple[int, int, int, int]] = {},  # noqa: B006
+    array_refs: Mapping[tuple[int, int], tuple[int, int, int, int]] = {},
 ) -> bytes:
     """The sheet with new values."""
     raise NotImplementedError
