@@ -1,0 +1,362 @@
+"""Units at the cell boundary.
+
+Every argument and result of a worksheet function has a *role* (diameter,
+pressure, flow, ...). A *unit set* gives each role a unit. A number crosses the
+boundary by one multiplication (and, for a temperature or an absolute pressure,
+one addition) whose factor pint worked out once; pint never runs for a cell.
+
+Units are accepted from an explicit list of spellings, as engineers write them.
+A spelling that means two things ("ton", "mb") is refused with what to write.
+"""
+
+from __future__ import annotations
+
+import difflib
+import functools
+import re
+from collections.abc import Mapping
+from typing import Any, Final, Literal, NamedTuple
+
+from .cells import Scalar
+
+Datum = Literal["", "gauge", "absolute"]
+
+
+class UnitError(ValueError):
+    """A unit that is not known, ambiguous, or of the wrong dimension."""
+
+
+class Role(NamedTuple):
+    """A kind of quantity and its unit in each named set."""
+
+    text: str
+    si: str
+    metric: str
+    us: str
+    datum: Datum = ""
+
+
+ROLES: Final[Mapping[str, Role]] = {
+    "diameter": Role("diameter of a section", "m", "mm", "in"),
+    "length": Role("length along the pipe", "m", "m", "ft"),
+    "level": Role("coordinate, level or lift", "m", "m", "ft"),
+    "head": Role("head of the fluid", "m", "m", "ft"),
+    "roughness": Role("roughness of the wall", "m", "mm", "in"),
+    "area": Role("area", "m2", "m2", "ft2"),
+    "volume": Role("volume", "m3", "m3", "ft3"),
+    "velocity": Role("velocity", "m/s", "m/s", "ft/s"),
+    "flow": Role("volume flow", "m3/s", "L/s", "gpm"),
+    "flowrate": Role("rate of change of flow", "m3/s2", "L/s2", "gpm/s"),
+    "massflow": Role("mass flow", "kg/s", "kg/s", "lb/s"),
+    "density": Role("density", "kg/m3", "kg/m3", "lb/ft3"),
+    "viscosity": Role("dynamic viscosity", "Pa s", "mPa s", "cP"),
+    "pressure": Role("gauge pressure", "Pa", "kPa", "psi", "gauge"),
+    "loss": Role("pressure difference", "Pa", "kPa", "psi"),
+    "absolute": Role("absolute pressure", "Pa", "kPa", "psi", "absolute"),
+    "force": Role("force", "N", "kN", "lbf"),
+    "moment": Role("moment of a force", "N m", "kN m", "lbf ft"),
+    "power": Role("power", "W", "kW", "hp"),
+    "angle": Role("angle", "deg", "deg", "deg"),
+    "ratio": Role("plain number", "-", "-", "-"),
+}
+
+SETS: Final = {"si": "si", "metric": "metric", "us": "us"}
+
+# Spelling -> (expression that pint reads, datum of a pressure). Case matters.
+_SPELLINGS: Final[dict[str, tuple[str, Datum]]] = {}
+
+
+def _spell(expression: str, *spellings: str, datum: Datum = "") -> None:
+    for spelling in spellings:
+        _SPELLINGS[_squeeze(spelling)] = (expression, datum)
+
+
+def _squeeze(text: str) -> str:
+    """Fold what does not change the meaning: blanks, dots and superscripts."""
+    folded = (
+        text.strip().replace("²", "2").replace("³", "3").replace("^", "").replace("µ", "u").replace("μ", "u")
+    )
+    return re.sub(r"[\s·⋅*]+", " ", folded)
+
+
+_spell("meter", "m")
+_spell("millimeter", "mm")
+_spell("centimeter", "cm")
+_spell("kilometer", "km")
+_spell("micrometer", "um", "micron")
+_spell("inch", "in", '"', "in.")
+_spell("foot", "ft", "'", "ft.")
+_spell("meter**2", "m2")
+_spell("millimeter**2", "mm2")
+_spell("centimeter**2", "cm2")
+_spell("inch**2", "in2", "sq in")
+_spell("foot**2", "ft2", "sq ft")
+_spell("meter**3", "m3")
+_spell("liter", "L", "l")
+_spell("foot**3", "ft3", "cu ft")
+_spell("gallon", "US gal")
+_spell("imperial_gallon", "UK gal")
+_spell("meter/second", "m/s")
+_spell("foot/second", "ft/s", "fps")
+_spell("kilometer/hour", "km/h")
+_spell("meter**3/second", "m3/s", "cumec")
+_spell("meter**3/hour", "m3/h", "m3/hr")
+_spell("meter**3/day", "m3/d", "m3/day")
+_spell("liter/second", "L/s", "l/s", "lps")
+_spell("liter/minute", "L/min", "l/min")
+_spell("megaliter/day", "ML/d", "Ml/d", "MLD")
+_spell("gallon/minute", "gpm", "US gpm", "usgpm")
+_spell("imperial_gallon/minute", "UK gpm", "igpm")
+_spell("1e6*gallon/day", "mgd", "MGD", "US mgd")
+_spell("foot**3/second", "cfs", "ft3/s")
+_spell("foot**3/minute", "cfm", "ft3/min")
+_spell("meter**3/second**2", "m3/s2")
+_spell("liter/second**2", "L/s2", "l/s2")
+_spell("gallon/minute/second", "gpm/s")
+_spell("foot**3/second**2", "cfs/s", "ft3/s2")
+_spell("kilogram/second", "kg/s")
+_spell("kilogram/hour", "kg/h")
+_spell("tonne/hour", "t/h")
+_spell("pound/second", "lb/s", "lbm/s")
+_spell("pound/hour", "lb/h", "lbm/h")
+_spell("slug/second", "slug/s")
+_spell("kilogram/meter**3", "kg/m3")
+_spell("gram/centimeter**3", "g/cm3", "kg/L", "kg/l", "t/m3")
+_spell("pound/foot**3", "lb/ft3", "lbm/ft3", "pcf")
+_spell("slug/foot**3", "slug/ft3")
+_spell("pascal*second", "Pa s", "Pas", "kg/(m s)")
+_spell("millipascal*second", "mPa s", "mPas")
+_spell("centipoise", "cP")
+_spell("pound_force*second/foot**2", "lbf s/ft2")
+for _unit, _names in (
+    ("pascal", ("Pa",)),
+    ("hectopascal", ("hPa",)),
+    ("kilopascal", ("kPa",)),
+    ("megapascal", ("MPa",)),
+    ("bar", ("bar",)),
+    ("millibar", ("mbar",)),
+    ("pound_force/inch**2", ("psi", "lbf/in2")),
+    ("pound_force/foot**2", ("psf", "lbf/ft2")),
+    # Conventional columns: NIST SP 811 appendix B.8, water at 1000 kg/m3 and standard gravity.
+    ("9806.65*pascal", ("mH2O", "mwc", "mWC")),
+    ("9.80665*pascal", ("mmH2O",)),
+    ("2989.067*pascal", ("ftH2O", "ftwc")),
+    ("3386.389*pascal", ("inHg",)),
+    ("133.322387415*pascal", ("mmHg",)),
+    ("101325*pascal", ("atm",)),
+    ("kilogram_force/centimeter**2", ("kgf/cm2",)),
+    ("newton/millimeter**2", ("N/mm2",)),
+):
+    _spell(_unit, *_names)
+    for _name in _names:
+        _spell(_unit, f"{_name}(g)", f"{_name} g", f"{_name} gauge", datum="gauge")
+        _spell(_unit, f"{_name}(a)", f"{_name} a", f"{_name} abs", datum="absolute")
+_spell("pound_force/inch**2", "psig", datum="gauge")
+_spell("pound_force/inch**2", "psia", datum="absolute")
+_spell("bar", "barg", datum="gauge")
+_spell("bar", "bara", datum="absolute")
+_spell("kilopascal", "kPag", datum="gauge")
+_spell("kilopascal", "kPaa", datum="absolute")
+_spell("newton", "N")
+_spell("kilonewton", "kN")
+_spell("meganewton", "MN")
+_spell("kilogram_force", "kgf")
+_spell("pound_force", "lbf")
+_spell("1000*pound_force", "kip", "kips")
+_spell("2000*pound_force", "tonf")
+_spell("newton*meter", "N m", "Nm")
+_spell("kilonewton*meter", "kN m", "kNm")
+_spell("pound_force*foot", "lbf ft", "ft lbf", "lbf-ft", "ft-lbf")
+_spell("1000*pound_force*foot", "kip ft", "kip-ft")
+_spell("watt", "W")
+_spell("kilowatt", "kW")
+_spell("megawatt", "MW")
+# NIST SP 811 appendix B.8: horsepower of 550 ft lbf/s.
+_spell("550*foot*pound_force/second", "hp")
+_spell("degree", "deg", "°", "degrees")
+_spell("radian", "rad")
+_spell("grade", "gon")
+_spell("dimensionless", "-", "1", "")
+_spell("1e-2", "%")
+
+_AMBIGUOUS: Final[Mapping[str, str]] = {
+    "mb": "write mbar for millibar",
+    "mB": "write mbar for millibar",
+    "ton": "write tonf for the US short ton-force, kN, or kgf",
+    "tons": "write tonf for the US short ton-force, kN, or kgf",
+    "nm": "write N m for newton metre",
+    "gal": "write US gal or UK gal",
+    "lbs": "write lbf for force or lb for mass",
+    "#": "write lbf for force or lb for mass",
+    "psi(d)": "write psi",
+}
+_MASS_FOR_FORCE: Final = ("lb", "lbm", "kg", "t", "slug")
+_spell("pound", "lb", "lbm")
+_spell("kilogram", "kg")
+_spell("tonne", "t")
+_spell("slug", "slug")
+
+
+class Unit(NamedTuple):
+    """How a number in a unit becomes the engine's SI number: ``x * factor`` (+ datum shift)."""
+
+    symbol: str
+    factor: float
+    shift: int
+    """-1: ambient pressure is taken off on the way in; +1: put on."""
+
+
+@functools.cache
+def _registry() -> Any:
+    import pint  # heavy, and needed only once a first unit is converted
+
+    return pint.UnitRegistry(cache_folder=None)
+
+
+@functools.cache
+def _pint_unit(expression: str) -> Any:
+    return _registry()(expression)
+
+
+def _dimensions(expression: str) -> Any:
+    quantity = _pint_unit(expression)
+    return getattr(quantity, "dimensionality", _registry().dimensionless.dimensionality)
+
+
+def _si_factor(expression: str) -> float:
+    quantity = _pint_unit(expression)
+    return (
+        float(quantity.to_base_units().magnitude) if hasattr(quantity, "to_base_units") else float(quantity)
+    )
+
+
+@functools.cache
+def unit(text: str, role: str) -> Unit:
+    """Look up a unit for a role.
+
+    Raises
+    ------
+    UnitError
+        Unknown or ambiguous spelling, or wrong dimension; the message says what was expected.
+    """
+    wanted = ROLES[role]
+    key = _squeeze(text)
+    if key in _AMBIGUOUS:
+        raise UnitError(f'unit "{text}" is ambiguous: {_AMBIGUOUS[key]}')
+    if key not in _SPELLINGS:
+        near = difflib.get_close_matches(key, _SPELLINGS, n=3, cutoff=0.6)
+        hint = f"; did you mean {', '.join(near)}?" if near else ""
+        raise UnitError(
+            f'unit "{text}" is not known; expected a unit of {role}, such as {examples(role)}{hint}'
+        )
+    expression, datum = _SPELLINGS[key]
+    if _dimensions(expression) != _dimensions(_SPELLINGS[_squeeze(wanted.si)][0]) or (
+        (wanted.si == "-") != (expression in ("dimensionless", "1e-2"))
+    ):
+        hint = "; that is a mass, write lbf, kgf or kN" if key in _MASS_FOR_FORCE and role == "force" else ""
+        raise UnitError(f'unit "{text}" is not a unit of {role}; expected one such as {examples(role)}{hint}')
+    if datum and not wanted.datum:
+        raise UnitError(f'unit "{text}" is for a pressure against a datum; {wanted.text} takes {wanted.si}')
+    shift = 0 if not datum or datum == wanted.datum else (-1 if datum == "absolute" else 1)
+    return Unit(text.strip() or "-", _si_factor(expression), shift)
+
+
+def examples(role: str) -> str:
+    """Name a few units of a role for an error message."""
+    known = ROLES[role]
+    return ", ".join(dict.fromkeys((known.si, known.metric, known.us)))
+
+
+_QUANTITY = re.compile(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?)\s*(\S.*?)\s*$")
+
+
+def quantity(text: str, role: str) -> tuple[float, int]:
+    """Read text such as "300 mm" for a role: SI value and datum shift.
+
+    Raises
+    ------
+    UnitError
+        Text that is not a number with its unit.
+    """
+    match = _QUANTITY.match(text)
+    if not match:
+        raise UnitError(
+            f'"{text}" is not a number with its unit, such as "1.5 {examples(role).split(", ")[-1]}"'
+        )
+    found = unit(match[2], role)
+    return float(match[1]) * found.factor, found.shift
+
+
+class UnitSet:
+    """A unit for every role."""
+
+    def __init__(self, name: str, base: str, changed: Mapping[str, str] | None = None) -> None:
+        self.name = name
+        self._symbols: dict[str, str] = {role: getattr(row, base) for role, row in ROLES.items()}
+        self._symbols.update(changed or {})
+
+    def unit(self, role: str) -> Unit:
+        """Give the unit of a role in this set."""
+        return unit(self._symbols[role], role)
+
+    def symbol(self, role: str) -> str:
+        """Give the unit of a role as it is written in a heading."""
+        return self._symbols[role]
+
+    def describe(self) -> dict[str, str]:
+        """List role -> unit."""
+        return dict(self._symbols)
+
+
+@functools.cache
+def named_set(name: str) -> UnitSet:
+    """Give one of the named sets; the name's case does not matter."""
+    key = name.strip().lower()
+    if key not in SETS:
+        raise UnitError(f'unit set "{name}" is not known; expected SI, metric, US or a range of role | unit')
+    return UnitSet({"si": "SI", "metric": "metric", "us": "US"}[key], SETS[key])
+
+
+@functools.lru_cache(maxsize=256)
+def _ranged_set(rows: tuple[tuple[Scalar, ...], ...]) -> UnitSet:
+    base = "si"
+    changed: dict[str, str] = {}
+    for row in rows:
+        role, symbol = row[0], row[1] if len(row) > 1 else None
+        if role in (None, ""):
+            continue
+        key = str(role).strip().lower()
+        if key in ("role", "quantity", "units"):
+            continue
+        if not isinstance(symbol, str) or not symbol.strip():
+            raise UnitError(f'units: no unit is given for "{role}"')
+        if key in ("set", "base"):
+            base = SETS.get(symbol.strip().lower()) or named_set(symbol).name
+            continue
+        if key not in ROLES:
+            near = difflib.get_close_matches(key, ROLES, n=1, cutoff=0.6)
+            hint = f'; did you mean "{near[0]}"?' if near else ""
+            raise UnitError(f'units: role "{role}" is not known (allowed: {", ".join(ROLES)}){hint}')
+        unit(symbol, key)
+        if changed.setdefault(key, symbol.strip()) != symbol.strip():
+            raise UnitError(f'units: role "{role}" is given twice')
+    return UnitSet("range", base, changed)
+
+
+def unit_set(cell: Any) -> UnitSet:
+    """Read the ``units`` argument: empty, a set's name, or a range of role | unit.
+
+    Raises
+    ------
+    UnitError
+        With the role and unit that are wrong.
+    """
+    if cell is None or cell == "":
+        return named_set("SI")
+    if isinstance(cell, str):
+        return named_set(cell)
+    if isinstance(cell, list):
+        if len(cell) == 1 and len(cell[0]) == 1:
+            return unit_set(cell[0][0])
+        return _ranged_set(tuple(map(tuple, cell)))
+    raise UnitError(f"units = {cell!r} (allowed: SI, metric, US or a range of role | unit)")
