@@ -45,3 +45,11 @@ Scalar: TypeAlias = float | str | bool | CellError | None
 Range: TypeAlias = list[list[Scalar]]
 Cell: TypeAlias = Scalar | Range
 Grid: TypeAlias = npt.NDArray[Any]
+
+
+class Refused(Exception):
+    """A call that cannot be answered; becomes the cell's error value."""
+
+    def __init__(self, kind: ErrorKind, message: str) -> None:
+        super().__init__(message)
+        self.error = CellError(kind, message)

@@ -1,0 +1,1 @@
+"""Readers of the functions that take whole tables: from ranges to the engine and back to columns."""
