@@ -51,7 +51,7 @@ def number(cell: Scalar, name: str, role: str, given: Unit, ambient: float = P_A
         except UnitError as error:
             raise Refused("VALUE", f"{name}: {error}") from None
         return value + shift * ambient
-    return float(cell) * given.factor + given.shift * ambient  # numpy scalars
+    return float(cell or 0.0) * given.factor + given.shift * ambient  # numpy scalars
 
 
 def numbers(

@@ -17,6 +17,8 @@ import re
 from collections.abc import Mapping
 from typing import Any, Final, Literal, NamedTuple
 
+from thrustbook.engine.constants import P_ATM
+
 from .cells import Scalar
 
 Datum = Literal["", "gauge", "absolute"]
@@ -259,6 +261,39 @@ def unit(text: str, role: str) -> Unit:
         raise UnitError(f'unit "{text}" is for a pressure against a datum; {wanted.text} takes {wanted.si}')
     shift = 0 if not datum or datum == wanted.datum else (-1 if datum == "absolute" else 1)
     return Unit(text.strip() or "-", _si_factor(expression), shift)
+
+
+@functools.cache
+def _free(text: str) -> tuple[str, float, Datum]:
+    """Look up a unit for no role in particular: expression, factor, datum."""
+    key = _squeeze(text)
+    if key in _AMBIGUOUS:
+        raise UnitError(f'unit "{text}" is ambiguous: {_AMBIGUOUS[key]}')
+    if key not in _SPELLINGS:
+        near = difflib.get_close_matches(key, _SPELLINGS, n=3, cutoff=0.6)
+        raise UnitError(
+            f'unit "{text}" is not known' + (f"; did you mean {', '.join(near)}?" if near else "")
+        )
+    expression, datum = _SPELLINGS[key]
+    return expression, _si_factor(expression), datum
+
+
+def convert(value: float, source: str, target: str, ambient: float = P_ATM) -> float:
+    """Convert a number between two units; between gauge and absolute by the ambient pressure [Pa].
+
+    Raises
+    ------
+    UnitError
+        Unknown or ambiguous units, or units of different dimensions.
+    """
+    (a, factor_a, datum_a), (b, factor_b, datum_b) = _free(source), _free(target)
+    angle = {"degree", "radian", "grade"}
+    if _dimensions(a) != _dimensions(b) or (a in angle) != (b in angle):
+        raise UnitError(f'unit "{source}" cannot be converted to "{target}": they measure different things')
+    shift = 0.0
+    if datum_a and datum_b and datum_a != datum_b:
+        shift = ambient if datum_b == "absolute" else -ambient
+    return (value * factor_a + shift) / factor_b
 
 
 def examples(role: str) -> str:

@@ -1,21 +1,6 @@
-"""The catalogue: one row for each worksheet function, and all that follows from it."""
+"""The catalogue: one row for each worksheet function, and all that follows from it.
 
-from __future__ import annotations
-
-from collections.abc import Mapping
-from types import MappingProxyType
-from typing import Final
-
-from .glossary import GLOSSARY
-from .types import Arg, Row
-
-FAMILIES: Final[tuple[tuple[Row, ...], ...]] = ()
-
-CATALOGUE: Final[Mapping[str, Row]] = MappingProxyType(
-    {row.name: row for family in FAMILIES for row in family}
-)
-
-
-def wording(arg: Arg) -> str:
-    """Give the wording of an argument: its own, or the glossary's."""
-    return arg.text or GLOSSARY[arg.name]
+``registry.py`` assembles the families into ``CATALOGUE``; ``types.py`` says what a
+row is. Nothing is imported here, so that a table reader may use the row types
+while the registry, which needs the readers, is still being assembled.
+"""
