@@ -6,7 +6,8 @@ body it does what would otherwise be written in every routine:
 - bad arguments of a scalar call are collected and raised together;
 - array arguments are broadcast, worked in pieces that fit the cache, and a bad
   element spoils only itself: its results are NaN and ``status`` says so;
-- a result that is not finite is no result: NoSolution, or its status.
+- a result that is not finite is no result: NoSolution, or its status (except a
+  result that the routine declares undefined without some optional argument).
 
 The ranges are kept on the routine (``bounds``), so the worksheet catalogue, the
 reference page and the tests read them from here and nowhere else.
@@ -75,7 +76,9 @@ class Parameter(NamedTuple):
 class Routine(Generic[P, R]):
     """A guarded routine: call it with floats or with arrays."""
 
-    def __init__(self, body: Callable[P, R], bounds: dict[str, Bound]) -> None:
+    def __init__(
+        self, body: Callable[P, R], bounds: dict[str, Bound], undefined: frozenset[str] = frozenset()
+    ) -> None:
         functools.update_wrapper(self, body)
         self.body: Callable[..., R] = body
         self.name = body.__name__
@@ -90,9 +93,10 @@ class Routine(Generic[P, R]):
             )
             for name, parameter in inspect.signature(body).parameters.items()
         )
-        unknown = set(bounds) - {p.name for p in self.parameters}
+        unknown = (set(bounds) - {p.name for p in self.parameters}) | (undefined - set(self.fields))
         if unknown:
-            raise TypeError(f"{self.name}: bounds for unknown arguments {sorted(unknown)}")
+            raise TypeError(f"{self.name}: unknown arguments or results {sorted(unknown)}")
+        self._may_be_undefined = tuple(name in undefined for name in self.fields)
         self._names = tuple(p.name for p in self.parameters)
         self._defaults = tuple(p.default for p in self.parameters)
         # Plain tuples for the scalar path, which runs once a worksheet cell.
@@ -151,6 +155,13 @@ class Routine(Generic[P, R]):
             raise NoSolution("no finite result for these arguments", self.name) from error
         for x in result:
             if x - x != 0:
+                return self._undefined(result)
+        return result
+
+    def _undefined(self, result: R) -> R:
+        """Pass results of which some are not finite, where the routine allows that."""
+        for x, allowed in zip(result, self._may_be_undefined, strict=True):
+            if x - x != 0 and not (allowed and x != x):
                 raise NoSolution("no finite result for these arguments", self.name)
         return result
 
@@ -205,9 +216,10 @@ class Routine(Generic[P, R]):
             # A scalar argument shared by all elements makes every one of them fail.
             results = self._pack([math.nan] * len(out))
         finite: Any = 0.0
-        for target, x in zip(out, results, strict=True):
+        for target, x, may_be_nan in zip(out, results, self._may_be_undefined, strict=True):
             target[piece] = x
-            finite = finite + (x - x)
+            wrong = x - x
+            finite = finite + (np.where(np.isnan(x), 0.0, wrong) if may_be_nan else wrong)
         failed = bad | np.isnan(finite)
         if np.any(failed):
             status[piece] = np.where(failed, Status.NO_SOLUTION, Status.OK)
@@ -232,16 +244,17 @@ class Routine(Generic[P, R]):
         return self.result_type(*values)
 
 
-def routine(**bounds: Bound) -> Callable[[Callable[P, R]], Routine[P, R]]:
+def routine(*undefined: str, **bounds: Bound) -> Callable[[Callable[P, R]], Routine[P, R]]:
     """Guard a routine whose body returns a NamedTuple of results.
 
     Keyword arguments give the range of each numeric argument, in SI units; one
     that is not named may be any number. An optional quantity has the default
     ``NOT_GIVEN`` (or a number) and may be NaN; an argument whose default is a
-    word is passed on unchecked.
+    word is passed on unchecked. ``undefined`` names results that are NaN where an
+    optional argument they need is not given; the other results then stand.
     """
 
     def decorate(body: Callable[P, R]) -> Routine[P, R]:
-        return Routine(body, bounds)
+        return Routine(body, bounds, frozenset(undefined))
 
     return decorate
