@@ -1,0 +1,105 @@
+"""Defined names: which text a name stands for, and names written out in formulas."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+
+from .formulas import Kind, Part, Unreadable, calls, join, take_apart
+from .formulashift import MovableFormula
+from .package import NameRef
+
+_DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
+
+
+def split_sheet(text: str) -> tuple[str | None, str]:
+    """``('My sheet', 'A1')`` for ``'My sheet'!A1``; None when no sheet is named."""
+    place, mark, rest = text.rpartition("!")
+    if not mark:
+        return None, text
+    if place.startswith("'") and place.endswith("'"):
+        place = place[1:-1].replace("''", "'")
+    return place, rest
+
+
+class Names:
+    """The defined names of a workbook; a sheet's own name goes before the workbook's."""
+
+    def __init__(self, names: Iterable[NameRef]) -> None:
+        self._names: dict[tuple[str, str], NameRef] = {}
+        for name in names:
+            self._names[(name.sheet or "").casefold(), name.name.casefold()] = name
+        self._parts: dict[NameRef, list[Part]] = {}
+        self._calling: dict[NameRef, bool] = {}
+
+    def find(self, operand: str, sheet: str) -> NameRef | None:
+        """The name that an operand (``Q`` or ``Sheet1!Q``) means in a formula on that sheet."""
+        place, name = split_sheet(operand)
+        key = name.casefold()
+        local = self._names.get(((place or sheet).casefold(), key))
+        return local or self._names.get(("", key))
+
+    def parts(self, name: NameRef) -> list[Part]:
+        """The text of a name, taken apart. Raises :class:`Unreadable`."""
+        parts = self._parts.get(name)
+        if parts is None:
+            parts = self._parts[name] = take_apart(name.text.removeprefix("="))
+        return parts
+
+    def calling(self, name: NameRef, depth: int = 0) -> bool:
+        """Whether a TB_ function is called in the name, or in a name that it refers to."""
+        known = self._calling.get(name)
+        if known is not None:
+            return known
+        if depth > _DEEPEST:
+            return False
+        try:
+            parts = self.parts(name)
+        except Unreadable:
+            return False
+        found = bool(calls(parts))
+        for part in parts:
+            if found:
+                break
+            if part.kind is Kind.REFERENCE:
+                inner = self.find(part.text, name.sheet or "")
+                found = inner is not None and self.calling(inner, depth + 1)
+        if depth == 0:
+            self._calling[name] = found
+        return found
+
+    def written_out(self, parts: list[Part], sheet: str, row: int, col: int, depth: int = 0) -> list[Part]:
+        """The parts of a formula with every name that calls a TB_ function replaced by its text.
+
+        The evaluator drops such names. Raises :class:`Unreadable` for names in a circle.
+        """
+        if not self._names:
+            return parts
+        out: list[Part] = []
+        changed = False
+        for part in parts:
+            name = self.find(part.text, sheet) if part.kind is Kind.REFERENCE else None
+            if name is None or not self.calling(name):
+                out.append(part)
+                continue
+            if depth > _DEEPEST:
+                raise Unreadable(f"the name {name.name} refers to itself")
+            changed = True
+            inner = self._at(name, row, col)
+            inner = self.written_out(inner, name.sheet or sheet, row, col, depth + 1)
+            out += [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
+        return out if changed else parts
+
+    def _at(self, name: NameRef, row: int, col: int) -> list[Part]:
+        """The text of a name as it reads in one cell: its free references count from A1."""
+        parts = self.parts(name)
+        if all(part.kind is not Kind.REFERENCE or "$" in part.text for part in parts):
+            return parts
+        return take_apart(MovableFormula(join(parts), 1, 1).at(row, col))
+
+
+def uses_names(parts: Sequence[Part]) -> bool:
+    """Whether a formula declares variables of its own, which are no defined names."""
+    return any(
+        part.kind is Kind.OPEN and part.text.upper().rsplit(".", 1)[-1] in ("LET(", "LAMBDA(")
+        for part in parts
+    )
