@@ -1,0 +1,1 @@
+"""Checking sheets: beside every cell of ours its working in ordinary formulas."""
