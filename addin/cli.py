@@ -25,7 +25,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
     parser = argparse.ArgumentParser(
         prog="thrustbook",
         description="Forces of flowing fluid on pipework, as functions in calculation workbooks.",
-        epilog="Results are hydraulic forces from a stated idealisation; local codes and licensed practice govern.",
+        epilog="Results are hydraulic forces from a stated idealisation; "
+        "local codes and licensed practice govern.",
     )
     parser.add_argument("--version", action="store_true", help="print the version and stop")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND")

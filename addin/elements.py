@@ -126,12 +126,20 @@ def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
         _read_scalars(plan, cells, values)
     result = plan.routine.scalar(values)
     if plan.divisor:
-        return result[plan.wanted] / plan.divisor + 0.0  # type: ignore[no-any-return]
+        value = result[plan.wanted]
+        if value != value:
+            raise Refused("NUM", _undefined(plan.result))
+        return value / plan.divisor + 0.0  # type: ignore[no-any-return]
     out = np.empty((1, len(row.results)), dtype=object)
     ambient = _ambient(plan, values)
     for j, r in enumerate(row.results):
-        out[0, j] = float(column_from_si(np.float64(result[j]), r.role, plan.units, ambient))  # type: ignore[arg-type]
+        value = float(column_from_si(result[j], r.role, plan.units, ambient))
+        out[0, j] = CellError("NUM", _undefined(r.name)) if value != value else value
     return out if plan.wanted < 0 else out[0, plan.wanted]
+
+
+def _undefined(result: str) -> str:
+    return f"{result} is not defined without an optional argument that it needs"
 
 
 def _single(cell: Cell) -> Cell:
@@ -193,10 +201,14 @@ def _grid(plan: _Plan, cells: Sequence[Cell]) -> Grid:
     results, status = plan.routine.evaluate(values)
     ambient = _ambient(plan, values)
     wanted = range(len(plan.row.results)) if plan.wanted < 0 else [plan.wanted]
-    columns = []
+    columns: list[Grid] = []
     for j in wanted:
         si = np.broadcast_to(results[j], status.shape)
-        columns.append(column_from_si(si, plan.row.results[j].role, plan.units, ambient).astype(object))
+        column = column_from_si(si, plan.row.results[j].role, plan.units, ambient)
+        columns.append(column.astype(object))
+        undefined = np.isnan(column)
+        if undefined.any():
+            columns[-1][undefined] = CellError("NUM", _undefined(plan.row.results[j].name))
     failed = failures(plan.routine, values, status, errors)
     for column in columns:
         for i, error in failed.items():

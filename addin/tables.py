@@ -286,10 +286,8 @@ def read_pairs(
     return out
 
 
-def column_from_si(
-    values: npt.NDArray[np.float64], role: str, units: UnitSet, ambient: float = P_ATM
-) -> npt.NDArray[np.float64]:
-    """Turn SI results into the unit set's unit."""
+def column_from_si(values: Any, role: str, units: UnitSet, ambient: Any = P_ATM) -> Any:
+    """Turn SI results, a float or an array, into the unit set's unit."""
     given = units.unit(role)
     out = (values - given.shift * ambient) / given.factor if given.shift else values / given.factor
     return out + 0.0  # no negative zero reaches a cell

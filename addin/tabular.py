@@ -63,7 +63,7 @@ def _cells(answer: TableAnswer, name: str, role: str, units: UnitSet) -> Grid:
         out[:] = list(source)
         return out
     values = column_from_si(np.asarray(source, dtype=float), role, units)
-    out = values.astype(object)
+    out: Grid = values.astype(object)
     hidden = np.isnan(values)
     if hidden.any():
         out[hidden] = ""

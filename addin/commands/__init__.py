@@ -1,1 +1,1 @@
-"""The commands of ``thrustbook``, one module each: ``configure(parser)`` and ``run(options) -> exit status``."""
+"""The commands of ``thrustbook``, a module each: ``configure(parser)``, ``run(options) -> exit status``."""
