@@ -61,7 +61,7 @@ def longhand_note(row: Row) -> str:
     return "as a table, a row for each row of the input" if row.longhand else ""
 
 
-def in_columns(rows: Sequence[Sequence[str]], indent: str = "  ", widest: int = 60) -> list[str]:
+def in_columns(rows: Sequence[Sequence[str]], indent: str = "  ", widest: int = 78) -> list[str]:
     """Align texts in columns; the last column wraps."""
     if not rows:
         return []

@@ -59,9 +59,9 @@ def _cells(answer: TableAnswer, name: str, role: str, units: UnitSet) -> Grid:
     if source is None:  # the note column is filled from errors and notes
         return np.full(len(next(iter(answer.columns.values()))), "", dtype=object)
     if role == "text":
-        out = np.empty(len(source), dtype=object)
-        out[:] = list(source)
-        return out
+        texts = np.empty(len(source), dtype=object)
+        texts[:] = list(source)
+        return texts
     values = column_from_si(np.asarray(source, dtype=float), role, units)
     out: Grid = values.astype(object)
     hidden = np.isnan(values)
