@@ -117,10 +117,10 @@ def nozzle(
 
     Source: derived from continuity, Bernoulli's equation and the momentum balance.
     """
-    A1 = circle(D1)
+    # A refused row is marked on the area: a mark on p1 would read as "not given".
+    A1 = refuse(count_given(p1, Q) != 1, circle(D1), "give exactly one of p1 and Q")
+    A1 = refuse(is_given(Cv) & (K > 0), A1, "give K or Cv, not both")
     A2 = circle(D2)
-    p1 = refuse(count_given(p1, Q) != 1, p1, "give exactly one of p1 and Q")
-    K = refuse(is_given(Cv) & (K > 0), K, "give K or Cv, not both")
     loss = alpha2 + choose(is_given(Cv), 1 / (Cv * Cv) - 1, K)
     ratio = A2 / A1
     # What is left of the jet's kinetic energy when the approach velocity has helped.

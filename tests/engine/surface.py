@@ -63,17 +63,14 @@ class Disc:
         r, shape, weights = profile(self.exponent)
         radius = self.D / 2
         scale = self.Q / (2 * math.pi * radius**2 * np.sum(weights * shape))
-        total = np.zeros(3)
-        for angle in _ANGLES:
-            outwards = math.cos(angle) * a + math.sin(angle) * b
-            for ri, ui, wi in zip(r, shape, weights, strict=True):
-                area = wi * radius**2 * 2 * math.pi / len(_ANGLES)
-                p = self.p - rho * g * radius * ri * outwards[2]
-                velocity = scale * ui * n
-                total -= (p * n + rho * velocity * float(velocity @ n)) * area
-        return total
+        # Points of the disc: a row for each angle, a column for each radius.
+        height = radius * r * (np.cos(_ANGLES) * a[2] + np.sin(_ANGLES) * b[2])[:, None]
+        area = np.broadcast_to(weights * radius**2 * 2 * math.pi / len(_ANGLES), height.shape)
+        speed = scale * shape
+        return -n * float(np.sum((self.p - rho * g * height + rho * speed * speed) * area))
 
 
 def thrust(discs: list[Disc], rho: float) -> Vector:
     """Thrust of the fluid on a fitting without weight, by direct integration over its ports."""
-    return np.sum([disc.force(rho) for disc in discs], axis=0)
+    total: Vector = np.sum([disc.force(rho) for disc in discs], axis=0)
+    return total

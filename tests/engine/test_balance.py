@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -14,6 +15,8 @@ from thrustbook.engine.balance import balance, evaluate_balance
 from thrustbook.engine.errors import NoSolution, NotClosed, OutOfRange, Status
 
 from .surface import Disc, corrections, thrust
+
+Drawn = list[tuple[tuple[float, float, float], float, float, float, float]]
 
 bounded = settings(max_examples=40, deadline=None, derandomize=True)
 diameters = st.floats(0.02, 3.0)
@@ -27,7 +30,7 @@ ports = st.lists(
 )
 
 
-def closed_discs(drawn: list[tuple[tuple[float, float, float], float, float, float, float]]) -> list[Disc]:
+def closed_discs(drawn: Drawn) -> list[Disc]:
     """Make discs of drawn values; the last one takes the flow that closes."""
     discs = [Disc(*values) for values in drawn]
     last = discs[-1]
@@ -35,7 +38,7 @@ def closed_discs(drawn: list[tuple[tuple[float, float, float], float, float, flo
     return [*discs[:-1], Disc(last.normal, last.D, last.p, out, last.exponent)]
 
 
-def of_discs(discs: list[Disc], rho: float, **more: object) -> npt.NDArray[np.float64]:
+def of_discs(discs: list[Disc], rho: float, **more: Any) -> npt.NDArray[np.float64]:
     f = balance(
         [d.normal for d in discs],
         [math.pi / 4 * d.D**2 for d in discs],
@@ -50,7 +53,7 @@ def of_discs(discs: list[Disc], rho: float, **more: object) -> npt.NDArray[np.fl
 
 @bounded
 @given(ports, st.floats(0.5, 2000.0))
-def test_balance_is_the_integral_over_the_ports(drawn: list, rho: float) -> None:
+def test_balance_is_the_integral_over_the_ports(drawn: Drawn, rho: float) -> None:
     discs = closed_discs(drawn)
     largest = max(np.linalg.norm(d.force(rho, g=0.0)) for d in discs)
     hydrostatic = rho * 9.80665 * max(d.D for d in discs) ** 3
@@ -60,7 +63,7 @@ def test_balance_is_the_integral_over_the_ports(drawn: list, rho: float) -> None
 
 @bounded
 @given(ports, st.floats(0.5, 2000.0), st.tuples(parts, parts, parts, parts))
-def test_thrust_turns_with_the_axes(drawn: list, rho: float, q: tuple[float, float, float, float]) -> None:
+def test_thrust_turns_with_the_axes(drawn: Drawn, rho: float, q: tuple[float, float, float, float]) -> None:
     discs = closed_discs(drawn)
     w, x, y, z = np.array([*q[:3], q[3] + 2.0]) / np.linalg.norm([*q[:3], q[3] + 2.0])
     turn = np.array(
@@ -77,7 +80,7 @@ def test_thrust_turns_with_the_axes(drawn: list, rho: float, q: tuple[float, flo
 
 @bounded
 @given(ports, st.floats(0.5, 2000.0))
-def test_reversing_every_flow_changes_nothing(drawn: list, rho: float) -> None:
+def test_reversing_every_flow_changes_nothing(drawn: Drawn, rho: float) -> None:
     discs = closed_discs(drawn)
     reversed_ = [Disc(d.normal, d.D, d.p, -d.Q, d.exponent) for d in discs]
     assert np.array_equal(of_discs(discs, rho), of_discs(reversed_, rho))
@@ -85,7 +88,7 @@ def test_reversing_every_flow_changes_nothing(drawn: list, rho: float) -> None:
 
 @bounded
 @given(ports, st.floats(0.5, 2000.0), st.floats(0.01, 100.0), st.floats(0.01, 100.0), st.floats(0.01, 100.0))
-def test_other_units_give_the_same_thrust(drawn: list, rho: float, m: float, kg: float, s: float) -> None:
+def test_other_units_give_the_same_thrust(drawn: Drawn, rho: float, m: float, kg: float, s: float) -> None:
     """Measure in other units of length, mass and time: the force scales by kg m / s2."""
     discs = closed_discs(drawn)
     other = [Disc(d.normal, d.D * m, d.p * kg / (m * s * s), d.Q * m**3 / s, d.exponent) for d in discs]
@@ -146,7 +149,7 @@ def test_every_bad_argument_is_named_with_its_port() -> None:
     [([1, 0, 0], [0.1], [0, 0, 0]), ([[1, 0]], [0.1], [0, 0, 0]), ([[1, 0, 0]], [0.1, 0.2], [0, 0, 0]),
      ([[1, 0, 0]], [0.1], [0, 0])],
 )  # fmt: skip
-def test_shapes_that_do_not_fit_are_refused(n: list, A: list, dMdt: list) -> None:
+def test_shapes_that_do_not_fit_are_refused(n: list[Any], A: list[float], dMdt: list[float]) -> None:
     with pytest.raises(ValueError, match="shape"):
         balance(n, A, 0.0, 0.0, 1000.0, dMdt=dMdt)
 
