@@ -307,7 +307,8 @@ def _jet_flow(geometry: Geometry, start: RunStart, Qo: Array, Hp: Array) -> floa
     if available == 0:
         return 0.0
     high = float(geometry.area2[-1]) * math.sqrt(2 * G * available)
-    for _ in range(60):
+    # Beyond a million times the lossless velocity only rounding could balance the heads.
+    for _ in range(20):
         if surplus(high) <= 0:
             return root(surplus, 0.0, high)
         high *= 2

@@ -172,12 +172,12 @@ def read_columns(table: RunTable) -> tuple[dict[str, Array], list[Problem]]:
     columns: dict[str, Array] = {}
     for name, values in given.items():
         column = np.broadcast_to(values, (count,)).copy()
-        last_is_optional = name == "D"
-        wrong = ~COLUMN_BOUNDS[name].allows(column)
+        with np.errstate(invalid="ignore"):
+            wrong = ~COLUMN_BOUNDS[name].allows(column)
         if name not in REQUIRED_COLUMNS:
             wrong &= ~np.isnan(column)
-        elif last_is_optional and np.isnan(column[-1]):
-            wrong[-1] = False
+        elif name == "D" and np.isnan(column[-1]):
+            wrong[-1] = False  # the diameter beyond the last node has a default
         problems += [
             Problem(f"{name}[{j}]", float(column[j]), str(COLUMN_BOUNDS[name])) for j in np.flatnonzero(wrong)
         ]
@@ -205,7 +205,8 @@ def build(table: RunTable, start: str, end: str) -> tuple[Geometry | None, list[
     if not c:
         return None, problems
     n = len(c["x"])
-    legs = np.diff(np.stack([c["x"], c["y"], c["z"]], axis=1), axis=0)
+    with np.errstate(invalid="ignore"):  # coordinates that are not finite are reported already
+        legs = np.diff(np.stack([c["x"], c["y"], c["z"]], axis=1), axis=0)
     L = np.sqrt((legs**2).sum(axis=1))
     problems += [
         Problem(f"x[{j + 1}], y[{j + 1}], z[{j + 1}]", f"{L[j]:.3g} m from the node before", "a node apart")
@@ -213,7 +214,8 @@ def build(table: RunTable, start: str, end: str) -> tuple[Geometry | None, list[
     ]
     for j in np.flatnonzero(np.isnan(c["e"][:-1]) & np.isnan(c["f"][:-1])):
         problems.append(Problem(f"e[{j}]", float(c["e"][j]), "a roughness, or a friction factor f"))
-    too_rough = np.isnan(c["f"][:-1]) & (c["e"][:-1] > MAX_ROUGHNESS * c["D"][:-1])
+    D = c["D"][:-1]
+    too_rough = np.isnan(c["f"][:-1]) & (D > 0) & (c["e"][:-1] > MAX_ROUGHNESS * D)
     for j in np.flatnonzero(too_rough):
         problems.append(Problem(f"e[{j}]", float(c["e"][j]), f"at most {MAX_ROUGHNESS:g} of the diameter"))
     if end == "jet" and np.isnan(c["D"][-1]):
