@@ -233,12 +233,16 @@ def _sheets(
 def _defined_names(root: etree._Element, tabs: Sequence[str]) -> tuple[NameRef, ...]:
     names = []
     for node in root.iterfind(f"{{{MAIN}}}definedNames/{{{MAIN}}}definedName"):
-        local = node.get("localSheetId")
-        sheet = tabs[int(local)] if local is not None and int(local) < len(tabs) else None
+        local = _count(node.get("localSheetId"), len(tabs))
+        sheet = tabs[local] if local < len(tabs) else None
         names.append(
             NameRef(unescape_xstring(node.get("name", "")), unescape_xstring(node.text or ""), sheet)
         )
     return tuple(names)
+
+
+def _count(text: str | None, default: int) -> int:
+    return int(text) if text is not None and text.isascii() and text.isdigit() else default
 
 
 def _tables(archive: ZipArchive, sheet: SheetRef, label: str) -> list[TableRef]:
@@ -252,7 +256,7 @@ def _tables(archive: ZipArchive, sheet: SheetRef, label: str) -> list[TableRef]:
             unescape_xstring(node.get("name", ""))
             for node in root.iterfind(f"{{{MAIN}}}tableColumns/{{{MAIN}}}tableColumn")
         )
-        header, totals = int(root.get("headerRowCount", "1")), int(root.get("totalsRowCount", "0"))
+        header, totals = _count(root.get("headerRowCount"), 1), _count(root.get("totalsRowCount"), 0)
         tables.append(
             TableRef(unescape_xstring(name), sheet.name, root.get("ref", ""), columns, header, totals)
         )

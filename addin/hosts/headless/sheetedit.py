@@ -57,6 +57,8 @@ class Editor(Generic[Change]):
 
     ``rewrite`` returns the bytes of the whole cell; ``fresh`` returns the text of a new
     cell from its change, its reference and its style attribute, or an empty text.
+    ``whole_row`` may take a row's body, its number and its changes and return the new body,
+    when every change meets a cell that is there; it saves time in large blocks.
     """
 
     def __init__(
@@ -64,11 +66,13 @@ class Editor(Generic[Change]):
         frame: Frame,
         rewrite: Callable[[CellMark, Change], bytes],
         fresh: Callable[[Change, str, str], str],
+        whole_row: Callable[[bytes, int, Mapping[int, Change]], bytes | None] | None = None,
     ) -> None:
         self._frame = frame
         self._prefix = frame.prefix.decode()
         self._rewrite = rewrite
         self._fresh = fresh
+        self._whole_row = whole_row
         self._styles: dict[int, str] = {}
 
     def edited(
@@ -154,6 +158,10 @@ class Editor(Generic[Change]):
 
     def _row(self, row: Row, changes: Mapping[int, Change]) -> bytes:
         xml = self._frame.xml
+        if self._whole_row is not None:
+            whole = self._whole_row(xml[row.body : row.body_end], row.number, changes)
+            if whole is not None:
+                return xml[row.start : row.body] + whole + xml[row.body_end : row.stop]
         style = None
         if b"customFormat" in row.attrs:
             found = attributes(row.attrs)

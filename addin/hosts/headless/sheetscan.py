@@ -41,7 +41,12 @@ def refused(what: str) -> Refusal:
 
 def attributes(raw: bytes) -> dict[str, str]:
     """Attributes of a tag by name, as they stand (no entity occurs in those that are used)."""
-    return {m[1].decode(): (m[2] if m[2] is not None else m[3]).decode() for m in _ATTRIBUTE.finditer(raw)}
+    try:
+        return {
+            m[1].decode(): (m[2] if m[2] is not None else m[3]).decode() for m in _ATTRIBUTE.finditer(raw)
+        }
+    except UnicodeDecodeError as error:
+        raise refused("holds text that is not UTF-8") from error
 
 
 class Grammar(NamedTuple):
@@ -170,7 +175,7 @@ class Frame:
                 dimension = node.span()
             if own and depth == 2 and node[3] == b"col" and not node[1]:
                 found = attributes(node[4])
-                if "style" in found:
+                if all(found.get(name, "").isdecimal() for name in ("min", "max", "style")):
                     columns.append((int(found["min"]), int(found["max"]), found["style"]))
             if node[1]:
                 depth -= 1
@@ -225,7 +230,8 @@ class Frame:
         at_row, at_col = row, before + 1
         if "r" in found:
             letters = found["r"].rstrip("0123456789")
-            at_row, at_col = int(found["r"][len(letters) :] or 0), _column(letters.encode())
+            digits = found["r"][len(letters) :]
+            at_row, at_col = int(digits) if len(digits) < 8 and digits else 0, _column(letters.encode())
         if at_row < 1 or (row and at_row != row) or at_col > MAX_COLUMN:
             raise refused(f"has a cell {found.get('r', '')!r} in row {row}")
         return CellMark(at_row, at_col, start, match.end(), attrs, found.get("t", "n"), content)
@@ -259,7 +265,7 @@ def _column(letters: bytes) -> int:
     try:
         return column_number(letters.decode())
     except ValueError as error:
-        raise refused(f"has a cell in a column {letters.decode()!r}") from error
+        raise refused(f"has a cell in a column {letters!r}") from error
 
 
 def _check_encoding(xml: bytes) -> None:

@@ -7,6 +7,7 @@ import re
 from collections.abc import Callable, Mapping, Sequence
 
 from ...cells import Grid, Scalar
+from .a1 import column_number
 from .cellvalues import encode, value_element
 from .sheetedit import Editor, Extent, Place, bounds, range_text, with_ref, with_type
 from .sheetscan import CellMark, Frame, attributes
@@ -44,7 +45,9 @@ def store(
     frame = Frame.locate(xml)
     cells = _NewValues(values, blocks, array_refs)
     done: set[Place] = set()
-    editor: Editor[_New] = Editor(frame, _rewriter(frame, array_refs, done), _writer(frame))
+    editor: Editor[_New] = Editor(
+        frame, _rewriter(frame, array_refs, done), _writer(frame), _overwriter(frame.prefix.decode())
+    )
     result = editor.edited(cells.numbers(), cells.of_row, cells.extent)
     missed = sorted(set(array_refs) - done)
     if missed:
@@ -108,8 +111,13 @@ class _NewValues:
 
 def _writer(frame: Frame) -> Callable[[_New, str, str], str]:
     prefix = frame.prefix.decode()
+    start, open_value, end = f'<{prefix}c r="', f"><{prefix}v>", f"</{prefix}v></{prefix}c>"
 
     def fresh(value: _New, place: str, style: str) -> str:
+        if type(value) is float:  # by far the most frequent
+            kind, text = encode(value)
+            if not kind:
+                return f'{start}{place}"{style}{open_value}{text}{end}'
         if value is None or isinstance(value, _Keep):
             return ""
         kind, text = encode(value)
@@ -143,6 +151,52 @@ def _rewriter(
     return rewrite
 
 
+def _overwriter(prefix: str) -> Callable[[bytes, int, Mapping[int, _New]], bytes | None]:
+    """Rows of plain values, one after the other and without formulas, written in one go."""
+    c, v = f"{prefix}c", f"{prefix}v"
+    plain = re.compile(
+        rf'(<{c} r="([A-Z]{{1,3}})([0-9]+)"((?: s="[0-9]+")?)(?: t="([a-zA-Z]+)")?'
+        rf'(?:/>|><{v}(?: xml:space="preserve")?>([^<]*)</{v}></{c}>))'
+    )
+
+    def overwrite(body: bytes, number: int, changes: Mapping[int, _New]) -> bytes | None:
+        try:
+            old_body = body.decode()
+        except UnicodeDecodeError:
+            return None
+        out: list[str] = []
+        digits = str(number)
+        met = length = before = 0
+        for whole, letters, row, style, kind, text in plain.findall(old_body):
+            col = column_number(letters)
+            if row != digits or col <= before:
+                return None
+            before = col
+            length += len(whole)
+            if col not in changes:
+                out.append(whole)
+                continue
+            met += 1
+            value = changes[col]
+            if isinstance(value, _Keep):
+                return None
+            new_kind, new = encode(value)
+            if new_kind == kind and new == text:
+                out.append(whole)
+            elif new is None:
+                out.append(f'<{c} r="{letters}{row}"{style}/>')
+            elif not kind and not new_kind and text and _equal(text, new):
+                out.append(whole)
+            else:
+                typed = f' t="{new_kind}"' if new_kind else ""
+                out.append(
+                    f'<{c} r="{letters}{row}"{style}{typed}>{value_element(prefix, new_kind, new)}</{c}>'
+                )
+        return "".join(out).encode() if met == len(changes) and length == len(old_body) else None
+
+    return overwrite
+
+
 def _is_array(parts: re.Match[bytes]) -> bool:
     return attributes(parts["fattrs"] or b"").get("t") == "array"
 
@@ -167,10 +221,13 @@ def _same(cell: CellMark, parts: re.Match[bytes], kind: str, text: str | None) -
         return False
     if old == text.encode():
         return True
-    if kind:
-        return False
+    return not kind and _equal(old, text)
+
+
+def _equal(old: bytes | str, new: str) -> bool:
+    """Whether two texts are the same number, a negative zero being another than zero."""
     try:
-        was, now = float(old), float(text)
+        was, now = float(old), float(new)
     except ValueError:
         return False
     return was == now and math.copysign(1, was) == math.copysign(1, now)
