@@ -60,7 +60,7 @@ class Functions:
     def of_catalogue(cls) -> Functions:
         """Every function of the catalogue, through the one dispatcher."""
         from ... import dispatch
-        from ...catalogue import CATALOGUE
+        from ...catalogue.registry import CATALOGUE
 
         return cls(dispatch.call, {name: row.block for name, row in CATALOGUE.items()})
 
@@ -192,6 +192,8 @@ class Host:
     def __init__(self, functions: Functions, tick: Callable[[], None] | None = None) -> None:
         self.functions = functions
         self.last_error: tuple[str, CellError] | None = None
+        self.gave_grid: set[str] = set()
+        self.looking = False  # for the first error inside an array as well
         self._tick = tick
 
     def register(self, workbook: Workbook) -> None:
@@ -211,6 +213,13 @@ class Host:
             self.last_error = (name, answer)
         return answer
 
+    def _note(self, name: str, grid: Grid) -> None:
+        self.gave_grid.add(name)
+        if self.looking:
+            error = next((item for item in grid.flat if type(item) is CellError), None)
+            if error is not None:
+                self.last_error = (name, error)
+
     def _callback(self, name: str) -> Callable[..., Any]:
         call, tick = self.functions.call, self._tick
 
@@ -227,6 +236,7 @@ class Host:
                 return _engine_error(answer)
             if isinstance(answer, (np.ndarray, list)):
                 grid = as_grid(answer)
+                self._note(name, grid)
                 return engine_rows(grid) if grid.size > 1 else engine_value(grid[0, 0])
             return engine_value(answer)
 
