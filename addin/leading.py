@@ -41,8 +41,9 @@ def read_units(cell: Cell) -> UnitSet:
 
 
 def heading_row(row: Row, result: str, units: UnitSet) -> Grid:
-    out = np.empty((1, len(row.results)), dtype=object)
-    for j, r in enumerate(row.results):
+    columns = [r for r in row.results if not r.alone]
+    out = np.empty((1, len(columns)), dtype=object)
+    for j, r in enumerate(columns):
         text = "" if r.role == "text" else units.symbol(r.role)
         out[0, j] = r.name if result == "labels" else text
     return out

@@ -33,7 +33,7 @@ def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
             raise Refused("VALUE", f"{arg.name} is empty (it is required)")
     answer: TableAnswer = row.routine(request)
     roles = {r.name: r.role for r in row.results}
-    names = list(roles) if name == "all" else [name]
+    names = [r.name for r in row.results if not r.alone] if name == "all" else [name]
     columns = [_cells(answer, n, roles[n], request.units) for n in names]
     for error_row, error in answer.errors.items():
         for n, column in zip(names, columns, strict=True):
@@ -62,7 +62,7 @@ def _cells(answer: TableAnswer, name: str, role: str, units: UnitSet) -> Grid:
         texts = np.empty(len(source), dtype=object)
         texts[:] = list(source)
         return texts
-    values = column_from_si(np.asarray(source, dtype=float), role, units)
+    values = column_from_si(np.asarray(source, dtype=float), role, units, answer.ambient)
     out: Grid = values.astype(object)
     hidden = np.isnan(values)
     if hidden.any():

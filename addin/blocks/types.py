@@ -8,6 +8,8 @@ from dataclasses import dataclass, field
 import numpy as np
 import numpy.typing as npt
 
+from thrustbook.engine.constants import P_ATM
+
 from ..cells import Cell, CellError
 from ..units import UnitSet
 
@@ -38,5 +40,7 @@ class TableAnswer:
     blank: npt.NDArray[np.bool_] | None = None
     single: bool = False
     """True where the answer is one row by nature: a single result is then a plain value."""
+    ambient: float = P_ATM
+    """Ambient pressure of the call [Pa], between gauge results and a unit that is absolute."""
     general: Sequence[str] = ()
     """Remarks on the whole answer, for TB_WHY."""

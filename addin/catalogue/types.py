@@ -60,6 +60,8 @@ class Result:
     name: str
     role: str
     text: str
+    alone: bool = False
+    """Given when asked for by name, but no column of "all": it has a shape of its own."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,13 +76,14 @@ class Caution:
     test: Callable[[Mapping[str, Any]], Any]
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, slots=True)
 class Step:
     """A step of the long-hand working.
 
     ``formula`` is an ordinary worksheet formula without "=", in SI units, in
-    which {name} stands for an argument or an earlier step. An argument left
-    empty reads as an empty cell there.
+    which {name} stands for an argument or an earlier step. An optional argument left
+    empty reads there as its default number or word, or as "" where it has none.
+    ``role`` is a unit role, "text", or a unit where no role has it ("m/s2").
     """
 
     symbol: str
@@ -100,6 +103,36 @@ class Longhand:
 
     steps: tuple[Step, ...]
     results: Mapping[str, str] = field(default_factory=dict)
+    method: Literal["", "unrolled", "residual"] = ""
+
+
+@dataclass(frozen=True, slots=True)
+class RowStep(Step):
+    """A step worked on every row of a table.
+
+    In its formula {name} is a column or an earlier step on the same row, {name.prev}
+    and {name.next} the same on the row before and after, {name.column} all rows of it,
+    {start.name} a single step, or an entry of a start block. ``first`` and ``last``
+    are the formulas of the first and the last row where those differ.
+    """
+
+    first: str = ""
+    last: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TableLonghand:
+    """The long-hand working of a table function: one row a port, fitting or node.
+
+    ``single`` are steps worked once, in front of the rows or after them as their
+    formulas need ({name.column}, {name.first}, {name.last} for a row step). Results are
+    row steps, or single ones where ``one_row`` says that the answer is one row.
+    """
+
+    rows: tuple[RowStep, ...]
+    single: tuple[Step, ...] = ()
+    results: Mapping[str, str] = field(default_factory=dict)
+    one_row: bool = False
     method: Literal["", "unrolled", "residual"] = ""
 
 
@@ -129,7 +162,7 @@ class Row:
     example: str
     """A call as it stands in a cell, without "="; all its arguments are constants."""
     since: str = "0.1"
-    longhand: Longhand | NoLonghand | None = None
+    longhand: Longhand | TableLonghand | NoLonghand | None = None
     cautions: tuple[Caution, ...] = ()
     has_units: bool = True
     block: bool = False
