@@ -6,11 +6,16 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Final
 
-from . import tools
+from . import bernoulli, energy, sections, tools
 from .glossary import GLOSSARY
 from .types import Arg, Row
 
-FAMILIES: Final[tuple[tuple[Row, ...], ...]] = (tools.ROWS,)
+FAMILIES: Final[tuple[tuple[Row, ...], ...]] = (
+    sections.ROWS,
+    energy.ROWS,
+    bernoulli.ROWS,
+    tools.ROWS,
+)
 
 CATALOGUE: Final[Mapping[str, Row]] = MappingProxyType(
     {row.name: row for family in FAMILIES for row in family}
