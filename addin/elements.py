@@ -114,7 +114,7 @@ def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
         factors = plan.factors
         for i in range(leading, len(args)):
             cell = args[i]
-            if type(cell) is float:
+            if type(cell) is float and cell == cell:
                 values[i - leading] = cell * factors[i - leading]
             elif cell is not None:
                 plain = False

@@ -38,6 +38,8 @@ def number(cell: Scalar, name: str, role: str, given: Unit, ambient: float = P_A
         #VALUE! for text or a logical value; the cell's own error for an error.
     """
     if type(cell) is float or type(cell) is int:
+        if cell != cell:
+            raise Refused("NUM", f"{name} is not a number")
         return cell * given.factor + given.shift * ambient if given.shift else cell * given.factor
     if is_blank(cell):
         return np.nan
