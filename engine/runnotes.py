@@ -88,7 +88,7 @@ def notes(geometry: Geometry, start: RunStart, flow: Flow, p1: Array, p2: Array,
         (fast1 | fast2, Note.FAST),
         (between & np.isnan(geometry.f), Note.TRANSITION),
         ((flow.Q1 < 0) | (flow.Q2 < 0), Note.REVERSE),
-        (geometry.theta > np.pi / 2 * +STRAIGHT, Note.SHARP),
+        (geometry.theta > np.pi / 2 + STRAIGHT, Note.SHARP),
         (geometry.offtake_fault, Note.OFFTAKE),
         (geometry.joint_fault, Note.JOINT),
     ):

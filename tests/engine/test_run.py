@@ -332,6 +332,8 @@ def test_notes() -> None:
     assert note_text(slow.note[3]) == "ok"
     assert fitting_text(slow.fitting[1]) == "bend"
     assert fitting_text(slow.fitting[0]) == "straight"
+    square = run(RunTable(x=[0, 10, 10], y=[0, 0, 9], z=0.0, D=0.2, e=0.0), replace(WATER, Q=0.0, p=1e5))
+    assert square.note.tolist() == [0, 0, 0]
     back = run(RunTable(x=[0, 10, 1], y=[0, 0, 1], z=0.0, D=0.2, e=0.0), replace(WATER, Q=0.0, p=1e5))
     assert back.note[1] == Note.SHARP
     assert run(table, replace(WATER, Q=0.0, p=0.0)).note[0] == 0
