@@ -15,7 +15,7 @@ from thrustbook.engine.guard import Routine
 from .catalogue.types import Row
 from .cells import Cell, CellError, Grid, Refused
 from .failures import failures, warnings
-from .leading import heading_row, read_units, result_name
+from .leading import Wanted, heading_row, read_units, wanted
 from .tables import column_from_si, is_blank, number, numbers
 from .units import Unit, UnitSet
 
@@ -35,7 +35,7 @@ class _Plan:
 
     row: Row
     routine: Routine[Any, Any]
-    result: str
+    asked: Wanted
     units: UnitSet
     inputs: list[_Input]
     factors: list[float]
@@ -43,10 +43,11 @@ class _Plan:
     ambient: int
     """Position of the ambient pressure among the arguments, -1 where there is none."""
     shifted: bool
-    wanted: int
-    """Position of the wanted result; -1 for all of them."""
+    columns: list[int]
+    """Positions of the wanted results among the routine's."""
+    first: int
     divisor: float
-    """Of the wanted result; 0 where it needs more than a division."""
+    """Of a single wanted result; 0 where it needs more than a division, or there are several."""
 
 
 _plans: dict[Any, _Plan] = {}
@@ -73,7 +74,7 @@ def _hashable(cell: Cell) -> Any:
 
 
 def _make_plan(row: Row, result: Cell, units: UnitSet) -> _Plan:
-    name = result_name(row, result) if row.has_result else row.results[0].name
+    asked = wanted(row, result) if row.has_result else Wanted("values", row.results[:1], True)
     routine: Routine[Any, Any] = row.routine
     inputs, factors = [], []
     for arg, parameter in zip(row.args, routine.parameters, strict=True):
@@ -82,29 +83,30 @@ def _make_plan(row: Row, result: Cell, units: UnitSet) -> _Plan:
         inputs.append(_Input(arg.name, arg.role, given, initial, arg.choices))
         factors.append(given.factor)
     names = [i.name for i in inputs]
-    wanted = -1 if name in ("all", "labels", "units") else [r.name for r in row.results].index(name)
+    columns = [row.results.index(r) for r in asked.results]
     divisor = 0.0
-    if wanted >= 0 and not units.unit(row.results[wanted].role).shift:
-        divisor = units.unit(row.results[wanted].role).factor
+    if asked.single and not units.unit(asked.results[0].role).shift:
+        divisor = units.unit(asked.results[0].role).factor
     return _Plan(
         row=row,
         routine=routine,
-        result=name,
+        asked=asked,
         units=units,
         inputs=inputs,
         factors=factors,
         defaults=[i.default for i in inputs],
         ambient=names.index("pamb") if "pamb" in names else -1,
         shifted=any(i.unit.shift for i in inputs),
-        wanted=wanted,
+        columns=columns,
+        first=columns[0],
         divisor=divisor,
     )
 
 
 def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
     plan = _plan(row, args)
-    if plan.result == "labels" or plan.result == "units":
-        return heading_row(row, plan.result, plan.units)
+    if plan.asked.form != "values":
+        return heading_row(plan.asked, plan.units)
     leading = row.leading
     if len(args) - leading > len(plan.inputs):
         raise Refused("VALUE", f"{row.name} takes at most {row.max_args} arguments, {len(args)} given")
@@ -126,16 +128,16 @@ def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
         _read_scalars(plan, cells, values)
     result = plan.routine.scalar(values)
     if plan.divisor:
-        value = result[plan.wanted]
+        value = result[plan.first]
         if value != value:
-            raise Refused("NUM", _undefined(plan.result))
+            raise Refused("NUM", _undefined(plan.asked.results[0].name))
         return value / plan.divisor + 0.0  # type: ignore[no-any-return]
-    out = np.empty((1, len(row.results)), dtype=object)
+    out = np.empty((1, len(plan.columns)), dtype=object)
     ambient = _ambient(plan, values)
-    for j, r in enumerate(row.results):
-        value = float(column_from_si(result[j], r.role, plan.units, ambient))
+    for j, (i, r) in enumerate(zip(plan.columns, plan.asked.results, strict=True)):
+        value = float(column_from_si(result[i], r.role, plan.units, ambient))
         out[0, j] = CellError("NUM", _undefined(r.name)) if value != value else value
-    return out if plan.wanted < 0 else out[0, plan.wanted]
+    return out[0, 0] if plan.asked.single else out
 
 
 def _undefined(result: str) -> str:
@@ -200,9 +202,8 @@ def _grid(plan: _Plan, cells: Sequence[Cell]) -> Grid:
     values, errors = _read_arrays(plan, flat, math.prod(shape))
     results, status = plan.routine.evaluate(values)
     ambient = _ambient(plan, values)
-    wanted = range(len(plan.row.results)) if plan.wanted < 0 else [plan.wanted]
     columns: list[Grid] = []
-    for j in wanted:
+    for j in plan.columns:
         si = np.broadcast_to(results[j], status.shape)
         column = column_from_si(si, plan.row.results[j].role, plan.units, ambient)
         columns.append(column.astype(object))
@@ -213,7 +214,7 @@ def _grid(plan: _Plan, cells: Sequence[Cell]) -> Grid:
     for column in columns:
         for i, error in failed.items():
             column[i] = error
-    if plan.wanted >= 0:
+    if plan.asked.single:
         return columns[0].reshape(shape)
     grid = np.stack(columns, axis=1)
     return grid if shape[1] == 1 else grid.T
@@ -226,8 +227,8 @@ def _broadcast(plan: _Plan, cells: Sequence[Cell]) -> tuple[tuple[int, int], lis
     except ValueError:
         sizes = ", ".join(f"{r} x {c}" for r, c in dict.fromkeys(shapes))
         raise Refused("VALUE", f"the ranges do not fit together: {sizes}") from None
-    if plan.wanted < 0 and min(rows, columns) > 1:
-        raise Refused("VALUE", 'result "all" takes ranges of one row or one column')
+    if not plan.asked.single and min(rows, columns) > 1:
+        raise Refused("VALUE", "more than one result takes ranges of one row or one column")
     flat: list[Any] = []
     for cell, given in zip(cells, plan.inputs, strict=False):
         if not isinstance(cell, list):

@@ -7,51 +7,54 @@ from collections.abc import Sequence
 import numpy as np
 
 from .blocks.types import TableAnswer, TableCall
-from .catalogue.types import Row
+from .catalogue.types import Result, Row
 from .cells import Cell, Grid, Refused
-from .leading import heading_row, read_units, result_name
+from .leading import Wanted, heading_row, read_units, wanted
 from .tables import column_from_si, is_blank
 from .units import UnitSet
 
 
-def _table_call(row: Row, args: Sequence[Cell]) -> tuple[str, TableCall]:
+def _table_call(row: Row, args: Sequence[Cell]) -> tuple[Wanted, TableCall]:
     if row.max_args is not None and len(args) > row.max_args:
         raise Refused("VALUE", f"{row.name} takes at most {row.max_args} arguments, {len(args)} given")
     padded = [*args, *[None] * (row.leading + len(row.args) - len(args))]
-    name = result_name(row, padded[0]) if row.has_result else row.results[0].name
+    asked = wanted(row, padded[0]) if row.has_result else Wanted("values", row.results[:1], True)
     units = read_units(padded[row.leading - 1])
-    cells = padded[row.leading :]
-    return name, TableCall(result=name, units=units, cells=cells)
+    result = asked.results[0].name if asked.single else "all"
+    return asked, TableCall(result=result, units=units, cells=padded[row.leading :])
 
 
 def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
-    name, request = _table_call(row, args)
-    if name in ("labels", "units"):
-        return heading_row(row, name, request.units)
+    """Answer one call of a table function."""
+    asked, request = _table_call(row, args)
+    if asked.form != "values":
+        return heading_row(asked, request.units)
     for arg, cell in zip(row.args, request.cells, strict=True):
         if row.required(arg) and is_blank(cell):
             raise Refused("VALUE", f"{arg.name} is empty (it is required)")
     answer: TableAnswer = row.routine(request)
-    roles = {r.name: r.role for r in row.results}
-    names = [r.name for r in row.results if not r.alone] if name == "all" else [name]
-    columns = [_cells(answer, n, roles[n], request.units) for n in names]
-    for error_row, error in answer.errors.items():
-        for n, column in zip(names, columns, strict=True):
-            if n == "note":
-                column[error_row] = error.message
-            elif roles[n] != "text":
-                column[error_row] = error
-    for i, note in answer.notes.items():
-        if "note" in names and i not in answer.errors:
-            columns[names.index("note")][i] = note
-    if answer.blank is not None and answer.blank.any():
-        for column in columns:
-            column[answer.blank] = ""
-    if answer.single and name != "all":
+    columns = [_column(answer, r, request.units) for r in asked.results]
+    if answer.single and asked.single:
         return columns[0].reshape(-1)[0]  # type: ignore[no-any-return]
     if columns[0].ndim == 2:
         return columns[0]
     return np.stack(columns, axis=1)
+
+
+def _column(answer: TableAnswer, result: Result, units: UnitSet) -> Grid:
+    """Give one result as cells: values, the errors of the rows that failed, remarks in the note."""
+    column = _cells(answer, result.name, result.role, units)
+    if result.name == "note":
+        for i, note in answer.notes.items():
+            column[i] = note
+        for i, error in answer.errors.items():
+            column[i] = error.message
+    elif result.role != "text":
+        for i, error in answer.errors.items():
+            column[i] = error
+    if answer.blank is not None and answer.blank.any():
+        column[answer.blank] = ""
+    return column
 
 
 def _cells(answer: TableAnswer, name: str, role: str, units: UnitSet) -> Grid:
@@ -71,8 +74,9 @@ def _cells(answer: TableAnswer, name: str, role: str, units: UnitSet) -> Grid:
 
 
 def remarks(row: Row, args: Sequence[Cell]) -> list[str]:
-    name, request = _table_call(row, args)
-    if name in ("labels", "units"):
+    """List what TB_WHY tells of a call that was answered."""
+    asked, request = _table_call(row, args)
+    if asked.form != "values":
         return []
     answer: TableAnswer = row.routine(request)
     remarks = [f"row {i + 1}: {e.message or e}" for i, e in sorted(answer.errors.items())]

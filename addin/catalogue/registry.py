@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Final
 
-from . import bernoulli, energy, runs, sections, tools
+from . import bernoulli, ends, energy, fittings, runs, schedule, sections, tools
 from .glossary import GLOSSARY
 from .types import Arg, Row
 
@@ -14,6 +14,9 @@ FAMILIES: Final[tuple[tuple[Row, ...], ...]] = (
     sections.ROWS,
     energy.ROWS,
     bernoulli.ROWS,
+    fittings.ROWS,
+    ends.ROWS,
+    schedule.ROWS,
     runs.ROWS,
     tools.ROWS,
 )

@@ -105,6 +105,18 @@ def test_a_result_is_found_without_regard_to_case() -> None:
     assert call("TB_BEND", ["FX", *BEND[1:]]) == call("TB_BEND", BEND)
 
 
+def test_several_results_are_asked_for_by_name() -> None:
+    some = call("TB_BEND", ["Fy, fx", *BEND[1:]])
+    assert isinstance(some, np.ndarray)
+    assert some.shape == (1, 2)
+    assert some[0, 1] == call("TB_BEND", BEND)
+    assert call("TB_BEND", ["labels: Fy, fx", *BEND[1:]]).tolist() == [["Fy", "Fx"]]
+    assert call("TB_BEND", ["units:Fy,V1", *BEND[1:]]).tolist() == [["kN", "m/s"]]
+    table = call("TB_BEND", ["V1,F", "metric", 1000.0, [[300.0], [200.0]], 400.0, 120.0, 90.0])
+    assert isinstance(table, np.ndarray)
+    assert table.shape == (2, 2)
+
+
 def test_too_many_arguments_and_unknown_functions_are_errors() -> None:
     outcome = call("TB_BEND", [*BEND, *[1.0] * 30])
     assert isinstance(outcome, CellError)
