@@ -199,14 +199,13 @@ class AccelForces(NamedTuple):
     """Pressure difference p1 - p2 that accelerates the column [Pa]."""
 
 
-@routine(rho=POSITIVE, D=POSITIVE, L=NON_NEGATIVE, dt=POSITIVE)
-def accel(rho: Num, D: Num, L: Num, dQ: Num, dt: Num) -> AccelForces:
+@routine(rho=POSITIVE, D=POSITIVE, L=NON_NEGATIVE)
+def accel(rho: Num, D: Num, L: Num, dQdt: Num) -> AccelForces:
     """Pressure difference and thrust of a column of fluid that speeds up or slows down.
 
     Assumptions, axes and signs: see the module. Rigid column: the change is slow
-    compared with the travel of a pressure wave along the pipe and back (dt much
-    longer than 2 L/a; otherwise use the surge functions). The flow changes evenly
-    over dt. Friction acts besides and is not included in dp.
+    compared with the travel of a pressure wave along the pipe and back (2 L/a;
+    otherwise use the surge functions). Friction acts besides and is not included in dp.
     Control volume: the fluid of a straight leg between two fittings that turn the
     flow off its axis or close it, so that no momentum leaves along x. The fittings
     at its ends take p1 A and p2 A; what is left over for the leg is Fx, and
@@ -215,16 +214,15 @@ def accel(rho: Num, D: Num, L: Num, dQ: Num, dt: Num) -> AccelForces:
 
     Formula::
 
-        dp = rho L (dQ/dt) / A
-        Fx = - dM/dt = - rho L dQ/dt
+        dp = rho L dQdt / A
+        Fx = - dM/dt = - rho L dQdt
 
     Parameters
     ----------
     rho : density [kg/m3]
     D : inside diameter [m]
     L : length of the leg [m]
-    dQ : change of the flow along x [m3/s]; negative where a flow along x slows down
-    dt : time of the change [s]
+    dQdt : rate of change of the flow along x [m3/s2]; negative where a flow along x slows down
 
     All are floats or arrays that broadcast together.
 
@@ -242,13 +240,13 @@ def accel(rho: Num, D: Num, L: Num, dQ: Num, dt: Num) -> AccelForces:
     --------
     A flow of 0.1 m3/s is stopped evenly in 20 s:
 
-    >>> f = accel(1000.0, 0.3, 500.0, -0.1, 20.0)
+    >>> f = accel(1000.0, 0.3, 500.0, -0.1 / 20.0)
     >>> print(f"{f.dp:.0f} Pa, {f.Fx:.0f} N")
     -35368 Pa, 2500 N
 
     Source: derived from the momentum balance (its unsteady term).
     """
-    rate = rho * L * (dQ / dt)
+    rate = rho * L * dQdt
     Fx = 0.0 - rate
     F = abs(rate)
     return AccelForces(Fx, F, rate, F, rate / circle(D))

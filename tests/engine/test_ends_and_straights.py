@@ -194,7 +194,7 @@ def test_accelerating_leg_is_the_unsteady_balance(
     rho: float, D: float, L: float, dQ: float, dt: float, Q: float, p1: float
 ) -> None:
     """A leg along x between two ports along y: the balance has only its unsteady term along x."""
-    f = accel(rho, D, L, dQ, dt)
+    f = accel(rho, D, L, dQ / dt)
     A = disc_area(D)
     momentum_rate = rho * A * L * (dQ / A) / dt
     b = balance([[0, 1, 0], [0, -1, 0]], [A, A], [p1, p1 - f.dp], [-Q, Q], rho, dMdt=[momentum_rate, 0, 0])
@@ -213,7 +213,7 @@ def test_accelerating_leg_is_the_unsteady_balance(
         (lambda: closed(0.0, math.nan), {"D", "p"}),
         (lambda: inline(1000.0, 0.2, 1e5, 0.1, K=-1.0), {"K"}),
         (lambda: straight(1000.0, 0.2, 0.0, 0.1, f=-0.02), {"L", "f"}),
-        (lambda: accel(1000.0, 0.2, 10.0, 0.1, 0.0), {"dt"}),
+        (lambda: accel(1000.0, 0.2, -10.0, math.inf), {"L", "dQdt"}),
     ],
 )
 def test_every_bad_argument_is_named(call: Any, named: set[str]) -> None:
