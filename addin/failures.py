@@ -58,6 +58,7 @@ def explain(routine: Routine[Any, Any], values: Sequence[Any], i: int) -> CellEr
 def warnings(row: Row, values: Sequence[Any], results: Sequence[Any]) -> list[str]:
     """List the cautions of a row that apply anywhere to these arguments (SI) and results (SI)."""
     known = dict(zip((a.name for a in row.args), values, strict=True))
-    known |= {r.name: x for r, x in zip(row.results, results, strict=True) if r.name not in known}
+    # A name that is both, such as p2, is the result: the same where it was given, found where it was not.
+    known |= {r.name: x for r, x in zip(row.results, results, strict=True)}
     with np.errstate(invalid="ignore"):
         return [c.text for c in row.cautions if bool(np.any(c.test(known)))]

@@ -132,7 +132,7 @@ def _note(
     notes: dict[int, str],
 ) -> None:
     known = dict(zip((a.name for a in row.args), values, strict=True))
-    known |= {r.name: x for r, x in zip(row.results, results, strict=True) if r.name not in known}
+    known |= {r.name: x for r, x in zip(row.results, results, strict=True)}
     with np.errstate(invalid="ignore"):
         for caution in row.cautions:
             applies = np.broadcast_to(np.asarray(caution.test(known), dtype=bool), places.shape)
