@@ -10,6 +10,7 @@ import difflib
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from operator import itemgetter
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -184,33 +185,42 @@ def read_table(
     if missing:
         raise Refused("VALUE", f"{what}: column {', '.join(missing)} is missing")
     out = Table(size=len(rows))
-    cells = list(zip(*rows, strict=True))
-    blank: Any = np.ones(len(rows), bool)
-    for entry, values in zip(found, cells, strict=True):
+    for j, entry in enumerate(found):
         if entry is None:
             continue
         column, own = entry
+        values = list(map(itemgetter(j), rows))
         if column.role == "text":
             out.texts[column.name] = _texts(values, out.errors)
-            blank &= np.fromiter(map(is_blank, values), bool, len(values))
             continue
         given = _column_unit(column, own, units, what)
         out.numbers[column.name], errors = numbers(values, column.name, column.role, given, ambient)
         for i, error in errors.items():
             out.errors.setdefault(i, error)
-        blank &= np.isnan(out.numbers[column.name])
-    for i in out.errors:
-        blank[i] = False
-    out.blank = blank
-    if blank.all():
+    out.blank = _blank_rows(out)
+    if out.blank.all():
         raise Refused("VALUE", f"{what} is empty")
     return out
 
 
+def _blank_rows(table: Table) -> npt.NDArray[np.bool_]:
+    blank = np.ones(table.size, bool)
+    for values in table.numbers.values():
+        blank &= np.isnan(values)
+    blank[list(table.errors)] = False
+    for i in np.flatnonzero(blank).tolist():  # few: most rows have a number
+        blank[i] = all(not texts[i].strip() for texts in table.texts.values())
+    return blank
+
+
 def _texts(values: Sequence[Scalar], errors: dict[int, CellError]) -> list[str]:
-    for i, value in enumerate(values):
-        if isinstance(value, CellError):
-            errors.setdefault(i, value)
+    kinds = set(map(type, values))
+    if kinds == {str}:
+        return list(values)  # type: ignore[arg-type]
+    if CellError in kinds:
+        for i, value in enumerate(values):
+            if isinstance(value, CellError):
+                errors.setdefault(i, value)
     return ["" if v is None else v if isinstance(v, str) else _plain_text(v) for v in values]
 
 

