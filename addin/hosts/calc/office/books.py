@@ -1,0 +1,155 @@
+"""Documents of the office: formulas bound to our functions after loading, plain names after saving.
+
+Some releases of the office read TB_X( in an .xlsx as an unknown name, and write its
+full programmatic name when saving. What is met decides, not the number of a release.
+"""
+
+from __future__ import annotations
+
+import os
+import re
+from typing import Any, Callable, Iterator, List, Tuple
+
+from .settings import FUNCTIONS
+
+FULL = FUNCTIONS.upper() + "."
+FORMULA = 16
+"""com.sun.star.sheet.CellFlags.FORMULA"""
+
+# A name of ours that is not preceded by the full name's point, a letter, or a quotation mark.
+UNBOUND = re.compile(r"(?<![\w.\"])TB_[A-Z][A-Z0-9_]*\(", re.IGNORECASE)
+_TEXTS = re.compile(r'"[^"]*"')
+
+
+def unbound(formula: str) -> bool:
+    """Tell whether a formula, as the office gives it, calls a function of ours by an unknown name."""
+    if not UNBOUND.search(formula):
+        return False
+    return UNBOUND.search(_TEXTS.sub('""', formula)) is not None
+
+
+def relink(document: Any) -> int:
+    """Bind the TB_ formulas of a spreadsheet that the office did not recognise; gives their number."""
+    sheets = document.getSheets()
+    found = [(sheet, list(_unbound_areas(sheet))) for sheet in map(sheets.getByIndex, range(sheets.getCount()))]
+    names = _unbound_names(document)
+    if not names and not any(areas for _, areas in found):
+        return 0
+    modified = document.isModified()
+    undo = document.getUndoManager()
+    document.lockControllers()
+    undo.lock()
+    automatic = document.isAutomaticCalculationEnabled()
+    document.enableAutomaticCalculation(False)
+    count = 0
+    try:
+        for name, content in names:
+            name.setContent(content)
+            count += 1
+        for sheet, areas in found:
+            for area in areas:
+                count += _bind(sheet, area)
+    finally:
+        document.enableAutomaticCalculation(automatic)
+        undo.unlock()
+        document.unlockControllers()
+    if automatic:
+        document.calculate()
+    if not modified:
+        document.setModified(False)
+    return count
+
+
+def _unbound_names(document: Any) -> List[Tuple[Any, str]]:
+    found = []
+    names = document.NamedRanges
+    for word in names.getElementNames():
+        name = names.getByName(word)
+        content = name.getContent()
+        if unbound(content):
+            found.append((name, content))
+    return found
+
+
+def _unbound_areas(sheet: Any) -> Iterator[Tuple[Any, Any]]:
+    """Give the formula areas of a sheet that hold an unbound call, with their formulas."""
+    areas = sheet.queryContentCells(FORMULA)
+    for index in range(areas.getCount()):
+        area = areas.getByIndex(index)
+        formulas = area.getFormulaArray()
+        if any(unbound(text) for line in formulas for text in line):
+            yield area, formulas
+
+
+def _bind(sheet: Any, found: Tuple[Any, Any]) -> int:
+    area, formulas = found
+    count = sum(unbound(text) for line in formulas for text in line)
+    arrays = any(text.startswith("{") for line in formulas for text in line)
+    if not arrays:
+        area.setFormulaArray(formulas)
+        return count
+    place = area.getRangeAddress()
+    done = set()
+    for i, line in enumerate(formulas):
+        for j, text in enumerate(line):
+            row, column = place.StartRow + i, place.StartColumn + j
+            if (row, column) in done or not unbound(text):
+                continue
+            cell = sheet.getCellByPosition(column, row)
+            if not text.startswith("{"):
+                cell.setFormula(text)
+                continue
+            cursor = sheet.createCursorByRange(cell)
+            cursor.collapseToCurrentArray()
+            inside = cursor.getRangeAddress()
+            done.update(
+                (r, c)
+                for r in range(inside.StartRow, inside.EndRow + 1)
+                for c in range(inside.StartColumn, inside.EndColumn + 1)
+            )
+            cursor.setArrayFormula(text[1:-1])
+    return count
+
+
+def is_spreadsheet(document: Any) -> bool:
+    """Tell whether a component of the office is a spreadsheet document."""
+    try:
+        return document is not None and document.supportsService("com.sun.star.sheet.SpreadsheetDocument")
+    except Exception:
+        return False
+
+
+LOADED = ("OnLoad", "OnLoadFinished")
+SAVED = ("OnSaveDone", "OnSaveAsDone")
+
+
+def after_event(name: str, document: Any, system_path: Callable[[str], str], plain: Callable[[str], str]) -> str:
+    """Do what is due after an event of a document; gives "" or what went wrong."""
+    if name not in LOADED and name not in SAVED or not is_spreadsheet(document):
+        return ""
+    if name in LOADED:
+        relink(document)
+        return ""
+    url = document.getURL()
+    if not url.startswith("file:") or not url.lower().endswith((".xlsx", ".xlsm")):
+        return ""
+    path = system_path(url)
+    if not holds_full_names(path):
+        return ""
+    return plain(path)
+
+
+def holds_full_names(path: str) -> bool:
+    """Tell whether a saved .xlsx holds a full programmatic name of ours."""
+    import zipfile
+
+    needle = FULL.encode("ascii")
+    try:
+        with zipfile.ZipFile(path) as archive:
+            for entry in archive.infolist():
+                if entry.filename.startswith("xl/") and entry.filename.endswith(".xml"):
+                    if needle in archive.read(entry).upper():
+                        return True
+    except (OSError, zipfile.BadZipFile):
+        return False
+    return False
