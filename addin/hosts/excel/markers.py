@@ -103,11 +103,11 @@ def write_answer(outcome: Cell | Grid) -> Any:
 def _write(cell: Any) -> float | str | bool:
     kind = type(cell)
     if kind is float:
-        return cell if math.isfinite(cell) else MARKER["NUM"]  # type: ignore[no-any-return]
+        return cell if math.isfinite(cell) else MARKER["NUM"]
     if kind is str:
         return cell[:LONGEST_TEXT]  # type: ignore[no-any-return]
     if kind is CellError:
-        return MARKER[cell.kind]  # type: ignore[no-any-return]
+        return MARKER[cell.kind]
     if isinstance(cell, bool | np.bool_):
         return bool(cell)
     if isinstance(cell, int | float | np.number):

@@ -16,8 +16,7 @@ WIZARD_LIMIT = 255
 
 # Words that VBA does not take for a parameter, and those that the generated code itself uses:
 # a parameter of that name would hide them.
-VBA_WORDS = frozenset(
-    """
+_VBA_WORDS = """
     addressof alias and any array as attribute base binary boolean byref byte byval call case cbool cbyte
     ccur cdate cdbl cint class clng close compare const csng cstr currency cvar cverr date debug decimal
     declare defbool defdbl defint deflng defobj defstr defvar delete dim do double each else elseif empty
@@ -28,8 +27,8 @@ VBA_WORDS = frozenset(
     resume return rset scale seek select set shared single spc static step stop string sub tab text then
     time timer to true type typeof typename ubound unlock until userform variant vartype vb_name wend while
     width with withevents write xor ismissing isarray isempty isnull err application xlpy caller
-    """.split()
-)
+"""
+VBA_WORDS = frozenset(_VBA_WORDS.split())
 
 
 class Parameter(NamedTuple):

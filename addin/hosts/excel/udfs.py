@@ -58,7 +58,7 @@ def _function(row: Row) -> Callable[..., Any]:
     for parameter in parameters(row):
         function = xlwings.arg(parameter.name, ndim=2, err_to_str=True, doc=parameter.text)(function)
     # Last, because every xlwings.arg puts the category back to its default.
-    return xlwings.func(category=category(row))(function)  # type: ignore[no-any-return]
+    return xlwings.func(category=category(row))(function)
 
 
 globals().update({row.name: _function(row) for row in CATALOGUE.values()})
