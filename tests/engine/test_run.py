@@ -12,6 +12,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.optimize import brentq
 
+from tests.published import load
 from thrustbook.engine.balance import balance
 from thrustbook.engine.constants import G
 from thrustbook.engine.errors import NoSolution
@@ -183,6 +184,26 @@ def test_static_thrust_of_a_bend(degrees: float) -> None:
     assert result.F[1] == pytest.approx(2 * 1.2e6 * area * math.sin(theta / 2), rel=1e-9)
     # Turning north from an easterly run, the bend is pushed south-east.
     assert result.bearing[1] == pytest.approx(math.pi / 2 + (math.pi - theta) / 2, rel=1e-6)
+
+
+PUBLISHED = [
+    c
+    for c in load("thrust")
+    if c["routine"] == "bend" and set(c["inputs"]) == {"rho", "D1", "p1", "Q", "theta"}
+]
+
+
+@pytest.mark.parametrize("published", PUBLISHED, ids=lambda c: c["topic"])
+def test_published_bends_as_the_middle_of_a_run(published: dict[str, Any]) -> None:
+    """With no flow the printed diameter is the joint's: the bore does not matter."""
+    given = published["inputs"]
+    theta, D1 = math.radians(given["theta"]), given["D1"]
+    bore = D1 if given["Q"] else 0.8 * D1
+    table = RunTable(x=[0, 1, 1 + math.cos(theta)], y=[0, 0, math.sin(theta)], z=0.0, D=bore, Dj=D1, f=0.0)
+    result = run(table, RunStart(rho=given["rho"], Q=given["Q"], p=given["p1"]))
+    expected = published["expected"]
+    printed = expected["F"] if "F" in expected else expected["R"]
+    assert result.F[1] == pytest.approx(printed, rel=published["tolerance"])
 
 
 def test_vertical_bend_pushes_up_over_a_summit_and_down_in_a_sag() -> None:
