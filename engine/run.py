@@ -217,7 +217,7 @@ def assemble(geometry: Geometry, start: RunStart, flow: Flow, rise: Array | floa
     legs = slice(0, n - 1)
     V, area = flow.V2[legs], geometry.area2[legs]
     drag = flow.f / 8 * rho * V * np.abs(V) * np.pi * geometry.D2[legs] * geometry.L
-    W = rho * G * area * geometry.L
+    W = rho * G * area * geometry.L * flow.full
     head = np.zeros(n) if rho == 0 else rise / (rho * G)
     return Run(
         s=geometry.s,

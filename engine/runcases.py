@@ -15,7 +15,7 @@ from .errors import EngineError, OutOfRange, Problem
 from .guard import ANY, NON_NEGATIVE, POSITIVE, Bound
 from .numeric import NOT_GIVEN
 from .run import Run, assemble, run_geometry
-from .runflow import ENDS, Flow, RunStart, check_start
+from .runflow import ENDS, Flow, RunStart, check_start, flow_at_end, solve_flow
 from .runshape import Array, Geometry, RunTable, build
 
 KINDS: Final = ("operating", "peak", "shut", "test", "surge", "empty")
@@ -34,6 +34,7 @@ CASE_BOUNDS: Final[dict[str, Bound]] = {
     "dp": ANY,
     "dp2": ANY,
     "rho": POSITIVE,
+    "H2": ANY,
 }
 """Range of each number of a load case, SI units."""
 
@@ -53,7 +54,9 @@ class LoadCase:
         - "operating", "peak": steady flow;
         - "surge": steady flow with ``dp`` on top of its pressures;
         - "shut": no flow at the head ``H`` (or pressure ``p``) given; an end that is
-          a jet is shut and becomes a closed end;
+          a jet is shut and becomes a closed end. With ``valve`` it is a valve at that
+          node which is shut: the head stands on the side of the end ``at``, and ``H2``
+          on the other;
         - "test": hydrostatic test, no flow, pressure ``p`` at the level ``zp`` (at
           the lowest node if no level is given); a jet is closed; pumps do nothing;
         - "empty": no fluid, no force. The grade lines lie on the pipe.
@@ -67,6 +70,9 @@ class LoadCase:
         chainage between [Pa]; ``dp2`` not given: ``dp`` all along. It does not act
         on a jet, which stands in the open.
     rho : density [kg/m3].
+    valve : index of the node, from 0, whose valve is shut; -1: none.
+    H2 : head on the far side of that valve [m], pumps there standing still; not given:
+        the pipe beyond is drained, without pressure or weight, which loads the valve most.
     """
 
     name: str
@@ -81,6 +87,8 @@ class LoadCase:
     dp: float = NOT_GIVEN
     dp2: float = NOT_GIVEN
     rho: float = NOT_GIVEN
+    valve: int = -1
+    H2: float = NOT_GIVEN
 
 
 @dataclass(frozen=True)
@@ -167,6 +175,8 @@ def run_cases(table: RunTable, start: RunStart, cases: Sequence[LoadCase]) -> Ru
     plans = []
     for i, case in enumerate(cases):
         problems += check_case(case, i)
+        if geometry is not None and not -1 <= case.valve < geometry.size:
+            problems.append(Problem(f"valve[{i}]", case.valve, f"a node, 0 to {geometry.size - 1}"))
         plans.append(_case_start(start, case))
     if geometry is None or problems:
         raise OutOfRange(problems, "run_cases")
@@ -230,6 +240,10 @@ def check_case(case: LoadCase, i: int) -> list[Problem]:
         refuse("dp", "the surge pressure")
     if case.kind == "test" and not given["p"]:
         refuse("p", "the test pressure")
+    if case.valve != -1 and case.kind != "shut":
+        refuse("valve", "only in kind shut")
+    if given["H2"] and case.valve == -1:
+        refuse("H2", "only with a valve")
     for name, kinds in _ONLY.items():
         if given[name] and case.kind not in kinds:
             refuse(name, f"only in kind {' or '.join(kinds)}")
@@ -243,6 +257,7 @@ _ONLY: Final[dict[str, tuple[str, ...]]] = {
     "p": ("operating", "peak", "shut", "surge", "test"),
     "H": ("operating", "peak", "shut", "surge"),
     "pump": ("operating", "peak", "shut", "surge"),
+    "H2": ("shut",),
 }
 
 
@@ -278,6 +293,12 @@ def _run_case(geometry: Geometry, start: RunStart, case: LoadCase) -> Run:
         return assemble(geometry, start, _no_fluid(geometry))
     Hp = geometry.Hp * (1.0 if math.isnan(pump) else pump)
     Qo = geometry.Qo * (1.0 if math.isnan(offtakes) else offtakes)
+    if case.valve >= 0:
+        at_end, problems = flow_at_end(geometry, start, Qo)
+        if problems:
+            raise OutOfRange(problems)
+        flow = solve_flow(geometry, start, at_end, Qo, Hp)
+        return assemble(geometry, start, _behind_valve(geometry, flow, case, start.at == "start"))
     rise: Array | float = 0.0
     if case.kind == "surge":
         last = case.dp if math.isnan(case.dp2) else case.dp2
@@ -292,6 +313,27 @@ def _shut_jet(geometry: Geometry, start: RunStart) -> tuple[Geometry, RunStart]:
     area2, joint2 = geometry.area2.copy(), geometry.joint2.copy()
     area2[-1] = joint2[-1] = 0.0
     return replace(geometry, end="closed", area2=area2, joint2=joint2), replace(start, end="closed")
+
+
+def _behind_valve(geometry: Geometry, flow: Flow, case: LoadCase, onwards: bool) -> Flow:
+    """Put the far side of a shut valve under its own head, or drain it."""
+    nodes, legs = np.arange(geometry.size), np.arange(geometry.size - 1)
+    v = case.valve
+    far1, far2 = (nodes > v, nodes >= v) if onwards else (nodes <= v, nodes < v)
+    far_legs = legs >= v if onwards else legs < v
+    drained = math.isnan(case.H2)
+    head = geometry.z if drained else np.full(geometry.size, case.H2)
+    pressure = flow.rho * G * (head - geometry.z)
+    beyond = far1 & far2 & geometry.offtake  # an offtake at the valve stands on its near side
+    return replace(
+        flow,
+        EGL1=np.where(far1, head, flow.EGL1),
+        EGL2=np.where(far2, head, flow.EGL2),
+        p1=np.where(far1, pressure, flow.p1),
+        p2=np.where(far2, pressure, flow.p2),
+        po=np.where(beyond, pressure, flow.po),
+        full=np.where(far_legs & drained, 0.0, 1.0),
+    )
 
 
 def _no_fluid(geometry: Geometry) -> Flow:

@@ -109,6 +109,8 @@ class Flow:
     f: Array
     hf: Array
     hK: Array
+    full: Array | float = 1.0
+    """1 where a leg holds water, 0 where it is drained."""
 
 
 @dataclass(frozen=True)

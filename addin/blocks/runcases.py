@@ -13,7 +13,16 @@ from thrustbook.engine.runnotes import note_text
 from ..catalogue.types import Result
 from ..cells import Refused
 from .run import spoilt_answer
-from .runread import Nodes, RunFault, from_engine, read_cases, read_nodes, read_start, thrust_faults
+from .runread import (
+    Nodes,
+    RunFault,
+    from_engine,
+    place_valves,
+    read_cases,
+    read_nodes,
+    read_start,
+    thrust_faults,
+)
 from .types import TableAnswer, TableCall
 
 _QUANTITIES: Final = {
@@ -55,10 +64,11 @@ def runcases(call: TableCall) -> TableAnswer:
     """Read start block, nodes and cases, work every case, and give the envelope row by row."""
     start_cell, headings, table_cell, cases_cell = call.cells
     start, ambient = read_start(start_cell, call.units)
-    cases = read_cases(cases_cell, call.units, ambient)
+    cases, valves = read_cases(cases_cell, call.units, ambient)
     wide = call.result.endswith("_by_case")
     try:
         nodes = read_nodes(headings, table_cell, call.units, ambient)
+        cases = place_valves(nodes, cases, valves)
         try:
             result = run_cases(nodes.run_table, start, cases)
         except EngineError as refusal:

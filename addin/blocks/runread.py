@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Final
 
 import numpy as np
@@ -87,6 +87,10 @@ CASE_COLUMNS: Final = (
     Column(name="dp", role="loss", text="surge pressure at the start of the run", empty="none"),
     Column(name="dp2", role="loss", text="surge pressure at the end, linear between", empty="as dp"),
     Column(name="rho", role="density", text="density", empty="as start block"),
+    Column(
+        name="valve", role="text", text="in kind shut, name of the node whose valve is shut", empty="none"
+    ),
+    Column(name="H2", role="level", text="head beyond that valve", empty="pipe beyond is drained"),
 )
 
 _WORDS: Final = ("at", "flow_at", "start", "end", "method", "kind")
@@ -163,8 +167,8 @@ def read_nodes(headings: Cell, table: Cell, units: UnitSet, ambient: float) -> N
     return nodes
 
 
-def read_cases(cell: Cell, units: UnitSet, ambient: float) -> list[LoadCase]:
-    """Read the headed table of load cases; empty rows are none."""
+def read_cases(cell: Cell, units: UnitSet, ambient: float) -> tuple[list[LoadCase], list[str]]:
+    """Read the headed table of load cases; empty rows are none. With it the name of each case's valve."""
     rows = as_range(cell, "cases")
     if len(rows) < 2:
         raise Refused("VALUE", "cases has one row (allowed: a row of headings and a row for each case)")
@@ -172,8 +176,9 @@ def read_cases(cell: Cell, units: UnitSet, ambient: float) -> list[LoadCase]:
     for i, error in sorted(read.errors.items()):
         raise Refused(error.kind, f"cases, row {i + 1}: {error.message or error}")
     numbers = {name: values.tolist() for name, values in read.numbers.items()}
-    out = []
+    out, valves = [], []
     for i in np.flatnonzero(~read.blank).tolist():
+        valves.append(read.text("valve")[i].strip())
         values = {name: column[i] for name, column in numbers.items()}
         out.append(
             LoadCase(
@@ -183,6 +188,18 @@ def read_cases(cell: Cell, units: UnitSet, ambient: float) -> list[LoadCase]:
                 **values,
             )
         )
+    return out, valves
+
+
+def place_valves(nodes: Nodes, cases: Sequence[LoadCase], valves: Sequence[str]) -> list[LoadCase]:
+    """Find the nodes whose valves the cases shut."""
+    names = [nodes.table.text("name")[row].strip() for row in nodes.rows.tolist()]
+    out = []
+    for case, valve in zip(cases, valves, strict=True):
+        if valve and names.count(valve) != 1:
+            count = "several nodes have" if valve in names else "no node has"
+            raise Refused("VALUE", f'case {case.name}: {count} the name of the valve, "{valve}"')
+        out.append(replace(case, valve=names.index(valve)) if valve else case)
     return out
 
 

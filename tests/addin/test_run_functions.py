@@ -242,6 +242,21 @@ def test_cases_give_what_governs() -> None:
     assert column("case_p", everything, "TB_RUNCASES")[3] == "test"
 
 
+def test_the_shut_valve_is_found_by_its_name() -> None:
+    cases: list[list[Any]] = [
+        ["case", "kind", "H", "valve"],
+        ["shut", "shut", 80.0, "C"],
+        ["all", "shut", 80.0, None],
+    ]
+    pressures = tb_runcases("p_by_case", cases=cases).astype(float)
+    assert pressures[3, 0] == 0.0  # drained behind the valve
+    assert pressures[3, 1] > 0.0
+    cases[1][3] = "X"
+    outcome = tb_runcases("F", cases=cases)
+    assert isinstance(outcome, CellError)
+    assert 'no node has the name of the valve, "X"' in outcome.message
+
+
 def test_notes_name_their_cases() -> None:
     notes = tb_runcases("note")[:, 0].tolist()
     assert notes[0] == "ok"

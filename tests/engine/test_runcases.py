@@ -127,6 +127,34 @@ def test_jet_is_shut_where_nothing_flows() -> None:
     assert drawn.Q2[-1] == pytest.approx(0.04, rel=1e-12)
 
 
+@pytest.mark.parametrize("at", ["start", "end"])
+@pytest.mark.parametrize("H2", [math.nan, 30.0])
+def test_shut_valve_within_the_run(at: str, H2: float) -> None:
+    table = replace(TABLE, Hp=0.0)
+    case = LoadCase("v", "shut", H=80.0, at=at, valve=3, H2=H2)
+    result = run_cases(table, START, [case]).runs[0]
+    z = np.array(TABLE.z)
+    near = 1000 * G * (80 - z)
+    far = np.zeros(5) if math.isnan(H2) else 1000 * G * (H2 - z)
+    # Section 1 of the valve's node lies before the valve, section 2 behind it.
+    before, behind = (near, far) if at == "start" else (far, near)
+    np.testing.assert_allclose(result.p1, [*before[:4], behind[4]], rtol=1e-12)
+    np.testing.assert_allclose(result.p2, [*before[:3], *behind[3:]], rtol=1e-12)
+    assert result.closure.relative < 1e-9
+    if math.isnan(H2):
+        assert (
+            (result.W > 0)
+            == ([True, True, True, False, False] if at == "start" else [False] * 3 + [True, False])
+        ).all()
+    pressures = near if at == "start" else far
+    assert result.po[2] == pytest.approx(pressures[2], rel=1e-12)
+    # On its axis the valve carries the difference of the two sides over the bore.
+    straight = RunTable(x=[0, 10, 20], y=0.0, z=0.0, D=0.2, e=0.0)
+    pushed = run_cases(straight, START, [replace(case, valve=1)]).runs[0]
+    difference = 1000 * G * (80 - (0 if math.isnan(H2) else H2)) * math.pi / 4 * 0.04
+    assert pushed.Fx[1] == pytest.approx(difference if at == "start" else -difference, rel=1e-12)
+
+
 def test_case_at_the_other_end_and_other_density() -> None:
     case = LoadCase("x", "operating", Q=0.04, p=2e5, at="end", rho=1025.0)
     result = run_cases(TABLE, START, [case]).runs[0]
@@ -158,6 +186,9 @@ def test_closed_branch_in_every_kind() -> None:
         ({"kind": "operating", "zp": 3.0}, {"zp[0]"}),
         ({"kind": "test", "p": math.inf}, {"p[0]"}),
         ({"kind": "empty", "H": 3.0}, {"H[0]"}),
+        ({"kind": "peak", "valve": 2}, {"valve[0]"}),
+        ({"kind": "shut", "valve": 5}, {"valve[0]"}),
+        ({"kind": "shut", "H2": 5.0}, {"H2[0]"}),
     ],
 )
 def test_bad_cases_are_named(fields: dict[str, Any], expected: set[str]) -> None:
