@@ -8,6 +8,7 @@ from thrustbook.engine import bernoulli
 
 from .energy import FAMILY
 from .types import Arg, Caution, Result, Row
+from .workings import energy as workings_energy
 
 _DZ: Final = Arg(name="dz", role="level", empty="0")
 _K: Final = Arg(
@@ -47,6 +48,7 @@ ROWS: Final = (
         ),
         routine=bernoulli.pressure,
         sign="Flow, rise and pump head are positive from section 1 to section 2; losses act along the flow.",
+        longhand=workings_energy.TB_PRESSURE,
         reference="Bernoulli: p2 = p1 + rho/2 (alpha1 V1^2 - alpha2 V2^2) - rho g (dz - Hp + loss), "
         "loss = K V^2/(2 g) + hL",
         example='TB_PRESSURE("p2", "metric", 998, 300, 200, 400, 100, 2, 0.2)',
@@ -83,6 +85,7 @@ ROWS: Final = (
         ),
         routine=bernoulli.discharge,
         sign="Flow from section 1 to section 2; reverse flow is refused.",
+        longhand=workings_energy.TB_DISCHARGE,
         reference="Continuity and Bernoulli: p1 - p2 - rho g dz = rho/2 (Q/(Cd A2))^2 "
         "(alpha2 - alpha1 (A2/A1)^2 + K)",
         example='TB_DISCHARGE("Q", "metric", 998, 100, 50, 300)',
@@ -112,6 +115,7 @@ ROWS: Final = (
         ),
         routine=bernoulli.pumphead,
         sign="Positive where the pump drives from section 1 to section 2; losses act along the flow.",
+        longhand=workings_energy.TB_PUMPHEAD,
         reference="Bernoulli: Hp = (p2 - p1)/(rho g) + (alpha2 V2^2 - alpha1 V1^2)/(2 g) + dz + loss, "
         "loss = K V^2/(2 g) + hL",
         example='TB_PUMPHEAD("Hp", "metric", 998, 300, 300, 0, 200, 100, 10, 0, 3)',

@@ -21,6 +21,7 @@ from .fittings import (
     fast,
 )
 from .types import Arg, Caution, Result, Row
+from .workings import fittings as workings_fittings
 
 _SIGN: Final = (
     "x along the flow from section 1 to section 2. F is the thrust of the fluid, R the opposite reaction "
@@ -62,6 +63,7 @@ ROWS: Final = (
         routine=ends.nozzle,
         sign="x along the flow. F is the thrust of the fluid on the nozzle; positive, it pulls on the joint. "
         "R is the opposite reaction of the joint. Reverse flow is refused.",
+        longhand=workings_fittings.TB_NOZZLE,
         reference="Continuity and Bernoulli: p1 = p2 + rho g dz + rho/2 ((alpha2 + K) V2^2 - alpha1 V1^2), "
         "K = 1/Cv^2 - 1; balance: Fx = (p1 + beta1 rho V1^2) A1 - (p2 + beta2 rho V2^2) A2",
         example='TB_NOZZLE("F", "metric", 998, 100, 50, 300)',
@@ -91,6 +93,7 @@ ROWS: Final = (
         routine=ends.closed,
         sign="x outward along the pipe. F is the thrust of the fluid on the end, R the opposite reaction of "
         "the restraint.",
+        longhand=workings_fittings.TB_CLOSED,
         reference="Momentum balance without flow: Fx = p pi D^2 / 4; the same form in AWWA M11 and M23",
         example='TB_CLOSED("F", "metric", 300, 1000)',
         cautions=(boils("p"),),
@@ -124,6 +127,7 @@ ROWS: Final = (
         ),
         routine=straights.inline,
         sign=_SIGN,
+        longhand=workings_fittings.TB_INLINE,
         reference="Momentum balance: Fx = (p1 - p2) A + (beta1 - beta2) rho V^2 A, dp = K rho V |V| / 2",
         example='TB_INLINE("F", "metric", 998, 300, 400, 100, 2.5)',
         cautions=(
@@ -163,6 +167,7 @@ ROWS: Final = (
         routine=straights.straight,
         sign="x along the pipe. F is the drag of the fluid on the wall, along the flow whatever the slope of "
         "the pipe, R the opposite reaction of the restraint. W is not part of F.",
+        longhand=workings_fittings.TB_STRAIGHT,
         reference="Momentum balance: Fx = dp pi D^2/4 = tau pi D L; Darcy-Weisbach: dp = f L/D rho V |V| / 2",
         example='TB_STRAIGHT("F", "metric", 998, 300, 100, 100, 0.018)',
         cautions=(
@@ -192,6 +197,7 @@ ROWS: Final = (
         routine=straights.accel,
         sign="x along the leg. F is the thrust on the leg with the fittings at its ends, against the "
         "acceleration; R the opposite reaction of the restraint. Friction is not in dp.",
+        longhand=workings_fittings.TB_ACCEL,
         reference="Unsteady term of the momentum balance: Fx = - rho L dQ/dt, dp = rho L (dQ/dt) / A",
         example='TB_ACCEL("dp", "metric", 998, 300, 500, -5)',
     ),

@@ -8,6 +8,7 @@ from typing import Any, Final
 from thrustbook.engine import energy, friction, losses
 
 from .types import Arg, Caution, Result, Row
+from .workings import energy as workings_energy
 
 FAMILY: Final = "Energy"
 
@@ -70,6 +71,7 @@ ROWS: Final = (
         ),
         routine=friction.friction,
         sign="Positive for either direction of flow.",
+        longhand=workings_energy.TB_FRICTION,
         reference=_FRICTION_SOURCE,
         example='TB_FRICTION("f", "SI", 100000, 0.0001)',
         cautions=(
@@ -108,6 +110,7 @@ ROWS: Final = (
         ),
         routine=losses.pipeloss,
         sign="Loss, velocity and drag have the sign of the flow; Q = 0 loses nothing.",
+        longhand=workings_energy.TB_PIPELOSS,
         reference="Darcy-Weisbach: hL = f (L/D) V |V| / (2 g); F = dp A. " + _FRICTION_SOURCE,
         example='TB_PIPELOSS("hL", "metric", 998, 1, 300, 100, 0.1, 100)',
         cautions=(TRANSITION, FAST),
@@ -130,6 +133,7 @@ ROWS: Final = (
         ),
         routine=losses.fittingloss,
         sign="The loss has the sign of the flow.",
+        longhand=workings_energy.TB_FITTINGLOSS,
         reference="Definition of the loss coefficient: hL = K V |V| / (2 g)",
         example='TB_FITTINGLOSS("dp", "metric", 998, 300, 100, 0.5)',
         cautions=(FAST,),
@@ -143,6 +147,7 @@ ROWS: Final = (
         results=_STEP_RESULTS,
         routine=losses.expansion,
         sign="Flow from section 1 to section 2; reverse flow is refused. Losses are positive.",
+        longhand=workings_energy.TB_EXPANSION,
         reference="Borda-Carnot: hL = (V1 - V2)^2 / (2 g), K1 = (1 - A1/A2)^2",
         example='TB_EXPANSION("K1", "metric", 100, 200)',
     ),
@@ -155,6 +160,7 @@ ROWS: Final = (
         results=_STEP_RESULTS,
         routine=losses.contraction,
         sign="Flow from section 1 to section 2; reverse flow is refused. Losses are positive.",
+        longhand=workings_energy.TB_CONTRACTION,
         reference="K2 = (1 - (D2/D1)^2) / 2 on the small pipe, as in Crane Technical Paper 410 (from memory)",
         example='TB_CONTRACTION("K2", "metric", 300, 200)',
     ),
@@ -178,6 +184,7 @@ ROWS: Final = (
         ),
         routine=energy.head,
         sign="Heights above the datum of z, positive upwards.",
+        longhand=workings_energy.TB_HEAD,
         reference="Bernoulli: H = z + p/(rho g) + alpha V^2/(2 g)",
         example='TB_HEAD("H", "metric", 998, 400, 1.5, 12)',
     ),
@@ -198,6 +205,7 @@ ROWS: Final = (
         ),
         routine=energy.power,
         sign="Power given to the fluid is positive; a turbine's powers are negative.",
+        longhand=workings_energy.TB_POWER,
         reference="P = rho g Q H; pump Pshaft = P / eta, turbine Pshaft = P eta (definitions)",
         example='TB_POWER("Pshaft", "metric", 998, 100, 20, 0.8)',
     ),
@@ -221,6 +229,7 @@ ROWS: Final = (
         ),
         routine=energy.cavitation,
         sign="A negative margin means that the liquid boils; it is a result, not an error.",
+        longhand=workings_energy.TB_CAVITATION,
         reference="margin = p + pamb - pv, sigma = margin / (rho V^2/2); NPSH: ISO 17769-1 (from memory)",
         example='TB_CAVITATION("margin", "metric", -60, 2.339)',
         cautions=(

@@ -10,6 +10,7 @@ from thrustbook.engine.constants import G
 
 from ..blocks.balance import PORT_COLUMNS, balance
 from .types import Arg, Caution, Result, Row
+from .workings import fittings as workings_fittings
 
 FAMILY: Final = "Fittings"
 
@@ -186,6 +187,7 @@ ROWS: Final = (
         results=(*PLANE, *VELOCITIES, PRESSURE),
         routine=fittings.bend,
         sign=_PLANE_SIGN,
+        longhand=workings_fittings.TB_BEND,
         reference="Momentum balance: Fx = (p1 + beta1 rho V1^2) A1 - (p2 + beta2 rho V2^2) A2 cos theta, "
         f"Fy = - (p2 + beta2 rho V2^2) A2 sin theta; {_BERNOULLI} with V = V1",
         example='TB_BEND("Fx", "metric", 998, 300, 400, 100, 90)',
@@ -216,6 +218,7 @@ ROWS: Final = (
         results=(*ALONG, *VELOCITIES, PRESSURE),
         routine=fittings.reducer,
         sign=_ALONG_SIGN,
+        longhand=workings_fittings.TB_REDUCER,
         reference="Momentum balance: Fx = (p1 + beta1 rho V1^2) A1 - (p2 + beta2 rho V2^2) A2; "
         f"{_BERNOULLI} with V in the smaller pipe",
         example='TB_REDUCER("Fx", "metric", 998, 300, 200, 400, 100, 0.05)',
@@ -276,6 +279,7 @@ ROWS: Final = (
         sign="x along the run from section 1 to section 2, y towards the branch. Q1 is positive into the "
         "tee, Q2 and Q3 out of it. F is the thrust of the fluid on the tee, R the opposite reaction of the "
         "restraint.",
+        longhand=workings_fittings.TB_TEE,
         reference="Momentum balance: Fx = M1 - M2 - M3 cos theta, Fy = - M3 sin theta, "
         "Mi = (pi + betai rho Vi^2) Ai; pi = p1 + rho/2 (alpha1 V1^2 - alphai Vi^2 - K1i V1 |V1|) "
         "- rho g dzi",

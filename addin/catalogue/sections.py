@@ -6,6 +6,7 @@ from thrustbook.engine import sections
 
 from ..blocks.branchflow import branchflow
 from .types import Arg, Caution, Result, Row
+from .workings import sections as workings_sections
 
 FAMILY = "Sections and continuity"
 
@@ -19,6 +20,7 @@ ROWS = (
         results=(Result(name="A", role="area", text="area of the section"),),
         routine=sections.area,
         sign="The area is positive.",
+        longhand=workings_sections.TB_AREA,
         reference="Geometry of the circle: A = pi D^2 / 4",
         example='TB_AREA("metric", 300)',
     ),
@@ -31,6 +33,7 @@ ROWS = (
         results=(Result(name="V", role="velocity", text="mean velocity"),),
         routine=sections.velocity,
         sign="The velocity has the sign of the flow.",
+        longhand=workings_sections.TB_VELOCITY,
         reference="Continuity: V = Q / A",
         example='TB_VELOCITY("metric", 100, 300)',
     ),
@@ -43,6 +46,7 @@ ROWS = (
         results=(Result(name="Q", role="flow", text="volume flow"),),
         routine=sections.flow,
         sign="The flow has the sign of the velocity.",
+        longhand=workings_sections.TB_FLOW,
         reference="Continuity: Q = V A",
         example='TB_FLOW("metric", 1.5, 300)',
     ),
@@ -55,6 +59,7 @@ ROWS = (
         results=(Result(name="mdot", role="massflow", text="mass flow"),),
         routine=sections.massflow,
         sign="The mass flow has the sign of the volume flow.",
+        longhand=workings_sections.TB_MASSFLOW,
         reference="Definition: mdot = rho Q",
         example='TB_MASSFLOW("metric", 998, 100)',
     ),
@@ -76,6 +81,7 @@ ROWS = (
         ),
         routine=branchflow,
         sign="Flows are positive into the junction; a negative result leaves it.",
+        longhand=workings_sections.TB_BRANCHFLOW,
         reference="Continuity at a junction, steady flow of constant density: the flows add up to zero",
         example='TB_BRANCHFLOW("metric", {300; -180})',
     ),
@@ -93,6 +99,7 @@ ROWS = (
         results=(Result(name="Re", role="ratio", text="Reynolds number"),),
         routine=sections.reynolds,
         sign="Positive for either direction of flow.",
+        longhand=workings_sections.TB_REYNOLDS,
         reference="ISO 80000-11: Re = rho V D / mu",
         example='TB_REYNOLDS("metric", 998, 1, 1.5, 300)',
     ),
@@ -131,13 +138,14 @@ ROWS = (
         ),
         routine=sections.profile,
         sign="Positive for either direction of flow.",
+        longhand=workings_sections.TB_PROFILE,
         reference="Profiles integrated over the section (power law as in C. L. Chen, J. Hydraul. Eng. 118 "
         "(1992) 1571); n = 1/sqrt(f) after W. Nunner, VDI-Forschungsheft 455 (1956); both from memory",
         example='TB_PROFILE("alpha", "SI", "turbulent", 7)',
         cautions=(
             Caution(
                 text="exponent n outside 5 to 12, the range usual in turbulent pipe flow",
-                test=lambda k: (k["n"] < 5.0) | (k["n"] > 12.0) | (k["f"] > 1 / 25) | (k["f"] < 1 / 144),
+                test=lambda k: (k["n"] > 0.0) & ((k["n"] < 5.0) | (k["n"] > 12.0)),
             ),
         ),
     ),
