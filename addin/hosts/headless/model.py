@@ -144,6 +144,11 @@ class Model:
             self._graph = places, Graph(places, [node.references for node in self.nodes])
         return self._graph[1]
 
+    def references(self, parts: list[Part], node: Node) -> list[Reference]:
+        """The cells that some parts of a formula refer to, names and tables resolved."""
+        sheet = self.sheet_names[node.sheet]
+        return self._see(self._table_names(parts, sheet), node.sheet, sheet).references
+
     def where(self, node: Node) -> str:
         """``Sheet!B3``."""
         return f"{self.sheet_names[node.sheet]}!{node.a1}"

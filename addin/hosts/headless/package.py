@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import os
 from collections.abc import Mapping, Sequence
 from os import PathLike
@@ -61,7 +62,8 @@ class Package:
     """The parts of one workbook file, held as they were when it was read.
 
     ``sheets`` lists worksheets alone, not chart sheets. ``signed`` tells of a package
-    signature, which any change makes invalid. ``date1904`` tells the date system.
+    signature, which any change makes invalid. ``date1904`` tells the date system, ``sha256``
+    is the digest of the whole file.
     """
 
     path: Path
@@ -74,10 +76,12 @@ class Package:
     has_macros: bool
     external_links: bool
     date1904: bool
+    sha256: str
 
     def __init__(self, path: Path, raw: bytes, seen: tuple[int, int, int] | None = None) -> None:
         self.path = path
         self._seen = seen
+        self.sha256 = hashlib.sha256(raw).hexdigest()
         label = path.name
         refuse_other_formats(raw, path)
         archive = self._archive = ZipArchive(raw, label)
