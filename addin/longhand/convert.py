@@ -1,0 +1,75 @@
+"""Conversions of a working: between the numbers of the cells and SI, as formulas."""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+from ..catalogue.types import Arg, Row
+from ..units import Unit
+from .grid import Content
+from .symbols import default_of, number, quoted, within
+
+P_ATM = "101325"
+"""The ambient pressure of a function that takes none [Pa]."""
+
+
+class Conversion(NamedTuple):
+    """The unit of a column: its name, its factor to SI, and the shift of its datum."""
+
+    unit: Content
+    factor: Content
+    shift: int = 0
+    """-1: ambient pressure is taken off on the way to SI; +1: put on."""
+
+    @classmethod
+    def of(cls, unit: Unit) -> Conversion:
+        return cls(unit.symbol, unit.factor, unit.shift)
+
+
+def to_si(raw: str, factor: str, shift: int, ambient: str) -> str:
+    """A number in its unit as a number in SI."""
+    plain = raw if factor == "1" else f"{raw}*{factor}"
+    return plain + _shift(shift, ambient)
+
+
+def from_si(value: str, factor: str, shift: int, ambient: str) -> str:
+    """A number in SI as a number in a unit."""
+    back = _shift(-shift, ambient)
+    plain = f"({value}{back})" if back else value
+    return plain if factor == "1" else f"{plain}/{factor}"
+
+
+def _shift(shift: int, ambient: str) -> str:
+    return "" if not shift else f"{'+' if shift > 0 else '-'}{ambient}"
+
+
+def in_use(row: Row, arg: Arg, raw: str, si: str) -> str:
+    """The value of an argument in the working: SI, its default put in, its range kept.
+
+    ``raw`` is the cell as given, ``si`` the formula of its SI value.
+    """
+    default = default_of(row, arg)
+    if arg.role == "choice":
+        allowed = ",".join(f"{{0}}={quoted(choice)}" for choice in arg.choices)
+        word = f"LOWER(TRIM({raw}))"
+        chosen = f"IF(OR({allowed.replace('{0}', word)}),{word},#VALUE!)"
+    else:
+        test = within(row, arg, f"({si})" if any(sign in si for sign in "+-") else si)
+        chosen = f"IF({test},{si},#NUM!)" if test else si
+    if row.required(arg):
+        return chosen
+    if default is None:
+        empty = '""'
+    else:
+        empty = quoted(default) if isinstance(default, str) else number(default)
+    return f'IF({raw}="",{empty},{chosen})'
+
+
+def agreement(value: str, own: str, tolerance: str, scale: str) -> str:
+    """The verdict on a cell: "agrees", "differs", or "error" where both sides are errors."""
+    allowed = f"{tolerance}*MAX(ABS({value}),ABS({own})"
+    allowed += f",0.000001*{scale})" if scale else ")"
+    return (
+        f'IF(ISERROR({own}),IF(ISERROR({value}),"error","differs"),'
+        f'IF(ISERROR({value}),"differs",IF(ABS({value}-{own})<={allowed},"agrees","differs")))'
+    )

@@ -1,0 +1,81 @@
+"""A checking sheet while it is being laid out: cells, widths, breaks, links."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import NamedTuple, TypeAlias
+
+from ..hosts.headless.a1 import column_letters
+
+
+class Formula(NamedTuple):
+    """The text of a formula, without its equals sign."""
+
+    text: str
+
+
+Content: TypeAlias = float | str | Formula
+
+
+class Link(NamedTuple):
+    """A hyperlink inside the workbook."""
+
+    row: int
+    col: int
+    target: str
+
+
+@dataclass(slots=True)
+class Sheet:
+    """Cells by row and column, both counted from 1; a style is a name of ``styles.py``."""
+
+    name: str
+    cells: dict[int, dict[int, tuple[Content, str]]] = field(default_factory=dict)
+    widths: dict[int, float] = field(default_factory=dict)
+    heights: dict[int, float] = field(default_factory=dict)
+    links: list[Link] = field(default_factory=list)
+    row_breaks: list[int] = field(default_factory=list)
+    column_breaks: list[int] = field(default_factory=list)
+    title_rows: tuple[int, int] | None = None
+    title_columns: tuple[int, int] | None = None
+    fit_width: bool = True
+    verdicts: list[str] = field(default_factory=list)
+    """Areas whose words "agrees" and "differs" are coloured."""
+    freeze: tuple[int, int] | None = None
+    """Rows and columns that stay when the sheet is scrolled."""
+
+    def put(self, row: int, col: int, content: Content, style: str = "text") -> None:
+        self.cells.setdefault(row, {})[col] = (content, style)
+
+    def line(self, row: int, contents: list[Content], style: str = "text", col: int = 1) -> None:
+        """Put several contents side by side."""
+        cells = self.cells.setdefault(row, {})
+        for i, content in enumerate(contents):
+            cells[col + i] = (content, style)
+
+    def ref(self, row: int, col: int) -> str:
+        """The absolute reference to a cell from another sheet."""
+        return f"{quoted_sheet(self.name)}!{fixed(row, col)}"
+
+    @property
+    def last_row(self) -> int:
+        return max(self.cells, default=0)
+
+    @property
+    def last_col(self) -> int:
+        return max((max(cells, default=0) for cells in self.cells.values()), default=0)
+
+
+def quoted_sheet(name: str) -> str:
+    """The name of a sheet as a formula writes it in front of a reference."""
+    return "'" + name.replace("'", "''") + "'"
+
+
+def fixed(row: int, col: int) -> str:
+    """``$B$3``."""
+    return f"${column_letters(col)}${row}"
+
+
+def local(row: int, col: int) -> str:
+    """``B3``."""
+    return f"{column_letters(col)}{row}"
