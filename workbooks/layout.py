@@ -17,6 +17,7 @@ from openpyxl.utils import get_column_letter
 from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.formula import ArrayFormula
+from openpyxl.worksheet.pagebreak import Break
 from openpyxl.worksheet.worksheet import Worksheet
 
 MADE: Final = datetime.datetime(2026, 1, 1, tzinfo=datetime.UTC).replace(tzinfo=None)
@@ -30,6 +31,7 @@ CAUTIONS: Final = (
     "Thrust is the force of the fluid on the pipework; the restraint must supply the opposite.",
 )
 
+FONT: Final = "Calibri"
 _LINE = Side(style="thin", color="00999999")
 
 
@@ -102,7 +104,7 @@ def head_row(ws: Worksheet, row: int, first: int, texts: Sequence[object], *, wr
     """Write a row of column headings."""
     for j, text in enumerate(texts, first):
         cell = ws.cell(row, j, text)
-        cell.font = Font(bold=True)
+        cell.font = Font(name=FONT, size=11, bold=True)
         cell.alignment = Alignment(wrap_text=wrap, horizontal="center", vertical="center")
         cell.border = Border(bottom=_LINE, top=_LINE)
 
@@ -118,7 +120,7 @@ def name_range(book: Workbook, name: str, ws: Worksheet, area: str) -> None:
 
 def array(ws: Worksheet, area: str, formula: str, style: str, formats: Sequence[str] = ()) -> None:
     """Write an array formula over an area and style its cells, a number format for each column."""
-    ws[area.split(":")[0]] = ArrayFormula(area, formula)
+    ws[area.split(":", maxsplit=1)[0]] = ArrayFormula(area, formula)
     for line in ws[area]:
         for j, cell in enumerate(line):
             cell.style = style
@@ -164,7 +166,7 @@ def title_block(ws: Worksheet, row: int, entries: Sequence[tuple[str, str]]) -> 
     """Write the title block of a calculation; gives the next free row."""
     for label, value in entries:
         put(ws, f"A{row}", label)
-        ws[f"A{row}"].font = Font(bold=True)
+        ws[f"A{row}"].font = Font(name=FONT, size=11, bold=True)
         put(ws, f"B{row}", value, "Input")
         ws.merge_cells(start_row=row, start_column=2, end_row=row, end_column=4)
         row += 1
@@ -193,15 +195,14 @@ def cautions(ws: Worksheet, row: int, last_column: int) -> int:
     return row + len(CAUTIONS) + 2
 
 
-def column_widths(ws: Worksheet, widths: Mapping[str, float]) -> None:
-    """Set widths by column letters."""
-    for letters, width in widths.items():
-        ws.column_dimensions[letters].width = width
-
-
 def repeat_rows(ws: Worksheet, first: int, last: int) -> None:
     """Repeat rows at the top of every printed page."""
     ws.print_title_rows = f"{first}:{last}"
+
+
+def page_break(ws: Worksheet, row: int) -> None:
+    """Start a new printed page below a row."""
+    ws.row_breaks.append(Break(id=row))
 
 
 def freeze(ws: Worksheet, place: str) -> None:

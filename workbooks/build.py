@@ -1,0 +1,76 @@
+"""Builds the template workbooks: ``python -m thrustbook.workbooks.build [NAME ...]``.
+
+A template is laid out by its builder, evaluated by the headless host and stored with
+its values. Building it again gives the same bytes, so the shipped file can be checked.
+"""
+
+from __future__ import annotations
+
+import importlib
+import io
+import sys
+import tempfile
+import zipfile
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Final
+
+from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
+from thrustbook.addin.hosts.headless.package import Package
+
+HERE: Final = Path(__file__).parent
+TEMPLATES: Final = {"pipe-run": ("pipe_run", "thrust down a pumped main, node by node and by load case")}
+"""Template -> the module that builds it, and what it is for."""
+
+_DATE: Final = (2026, 1, 1, 0, 0, 0)
+
+
+def shipped(name: str) -> Path:
+    """Give the path of a shipped template."""
+    return HERE / f"{name}.xlsx"
+
+
+def build(name: str) -> bytes:
+    """Build one template and give the file's bytes.
+
+    Raises
+    ------
+    RuntimeError
+        Where a cell of the new workbook fails: a template must be right.
+    """
+    module = importlib.import_module(f".{TEMPLATES[name][0]}", __package__)
+    buffer = io.BytesIO()
+    module.build().save(buffer)
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "book.xlsx"
+        path.write_bytes(_without_clock(buffer.getvalue()))
+        package = Package.read(path)
+        evaluation = evaluate_workbook(package, fill_native=True)
+        if not evaluation.ok or evaluation.native_kept:
+            raise RuntimeError(f"{name}: {evaluation.errors[:5]} {evaluation.native_kept[:5]}")
+        package.save(path, evaluation.replaced)
+        return path.read_bytes()
+
+
+def _without_clock(data: bytes) -> bytes:
+    """Take the time of writing out of a package."""
+    out = io.BytesIO()
+    with zipfile.ZipFile(io.BytesIO(data)) as old, zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED) as new:
+        for member in old.infolist():
+            entry = zipfile.ZipInfo(member.filename, _DATE)
+            entry.compress_type = zipfile.ZIP_DEFLATED
+            entry.external_attr = 0o644 << 16
+            new.writestr(entry, old.read(member))
+    return out.getvalue()
+
+
+def main(arguments: Sequence[str]) -> int:
+    """Build the named templates, or all."""
+    for name in arguments or TEMPLATES:
+        shipped(name).write_bytes(build(name))
+        print(f"wrote {shipped(name)}")
+    return 0
+
+
+if __name__ == "__main__":
+    sys.exit(main(sys.argv[1:]))
