@@ -54,13 +54,13 @@ def from_a1(text: str) -> tuple[int, int]:
 
 def range_from_a1(text: str) -> tuple[int, int, int, int]:
     """(r1, c1, r2, c2) of ``A1:B3``, ``A1``, ``A:C`` or ``1:3``, upper left corner first."""
-    first, _, last = text.replace("$", "").partition(":")
-    last = last or first
-    if first.isdigit() and last.isdigit() and ":" in text:
+    first, colon, last = text.replace("$", "").partition(":")
+    last = last if colon else first
+    if colon and first.isdigit() and last.isdigit():
         r1, c1, r2, c2 = int(first), 1, int(last), MAX_COLUMN
         if not (1 <= r1 <= MAX_ROW and 1 <= r2 <= MAX_ROW):
             raise ValueError(f"{text!r} is not a range")
-    elif first.isalpha() and last.isalpha() and ":" in text:
+    elif colon and first.isalpha() and last.isalpha():
         r1, c1, r2, c2 = 1, column_number(first), MAX_ROW, column_number(last)
     else:
         (r1, c1), (r2, c2) = from_a1(first), from_a1(last)

@@ -189,17 +189,14 @@ class Editor(Generic[Change]):
             before = cell.col
             if index >= count:
                 break
-            if wanted[index][0] <= cell.col:
-                out.append(xml[at : cell.start])
-                at = cell.start
-                insert(cell.col)
-                if index < count and wanted[index][0] == cell.col:
-                    out.append(self._rewrite(cell, wanted[index][1]))
-                    at = cell.stop
-                    index += 1
-            elif index < count:
-                out.append(xml[at : cell.stop])
-                at = cell.stop
+            out.append(xml[at : cell.start])
+            insert(cell.col)
+            if index < count and wanted[index][0] == cell.col:
+                out.append(self._rewrite(cell, wanted[index][1]))
+                index += 1
+            else:
+                out.append(xml[cell.start : cell.stop])
+            at = cell.stop
         insert(None)
         out.append(xml[at : row.body_end])
         body = b"".join(out)

@@ -28,6 +28,7 @@ _ATTRIBUTE = re.compile(rb"""([^\s="']+)\s*=\s*(?:"([^"]*)"|'([^']*)')""")
 _ROW_NUMBER = re.compile(rb"""\sr\s*=\s*["']\s*([0-9]+)\s*["']""")
 _PLACE = re.compile(rb"\sr\s*=")
 _PLAIN_CELL = re.compile(rb"""\s+r="([A-Z]{1,3})([0-9]{1,7})"(?: s="[0-9]+")?(?: t="([a-zA-Z]+)")?""")
+_CLOSING = re.compile(rb"\s*>")
 _SPACE = re.compile(rb"\s*")
 
 
@@ -201,7 +202,10 @@ class Frame:
                 body_end = xml.find(row_end, body, end)
                 if body_end < 0:
                     raise refused(f"breaks off in row {number}")
-                at = xml.find(b">", body_end) + 1
+                closing = _CLOSING.match(xml, body_end + len(row_end), end)
+                if closing is None:
+                    raise refused(f"has a broken tag at the end of row {number}")
+                at = closing.end()
             yield Row(number, match.start(1), body, body_end, at, match[2], bool(match[3]))
         if at != end and _SPACE.fullmatch(xml, at, end) is None:
             raise refused(f"holds something other than a row after row {number}")
@@ -244,7 +248,7 @@ class Frame:
             while start >= 0 and self.grammar.cell_start.match(self.xml, start) is None:
                 start = self.xml.rfind(b"<" + self.prefix + b"c", self.data, start)
             match = self.grammar.cell.match(self.xml, start) if start >= 0 else None
-            if match is None or match.end() < hit.start():
+            if match is None or match.end() <= hit.start():
                 raise refused("holds a formula outside a cell")
             if _PLACE.search(match[1]) is None:
                 raise LookupError("a cell without a reference")
@@ -277,9 +281,9 @@ def _check_encoding(xml: bytes) -> None:
 
 
 def _check_root(node: re.Match[bytes]) -> None:
-    name = f"xmlns:{node[2].decode().rstrip(':')}" if node[2] else "xmlns"
-    space = attributes(node[4]).get(name, "")
+    prefix, root = (text.decode("utf-8", "replace") for text in (node[2], node[3]))
+    space = attributes(node[4]).get(f"xmlns:{prefix}".rstrip(":"), "")
     if space.startswith(STRICT):
         raise refused("is saved as Strict Open XML")
-    if space != MAIN or node[3] != b"worksheet":
-        raise refused(f"is not a worksheet but {node[3].decode()!r} of {space!r}")
+    if space != MAIN or root != "worksheet":
+        raise refused(f"is not a worksheet but {root!r} of {space!r}")

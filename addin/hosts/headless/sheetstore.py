@@ -155,20 +155,20 @@ def _overwriter(prefix: str) -> Callable[[bytes, int, Mapping[int, _New]], bytes
     """Rows of plain values, one after the other and without formulas, written in one go."""
     c, v = f"{prefix}c", f"{prefix}v"
     plain = re.compile(
-        rf'(<{c} r="([A-Z]{{1,3}})([0-9]+)"((?: s="[0-9]+")?)(?: t="([a-zA-Z]+)")?'
+        rf'(<{c} r="([A-Z]{{1,3}})([0-9]+)"((?: s="[0-9]+")?)(?: t="(?:n|([a-zA-Z]+))")?'
         rf'(?:/>|><{v}(?: xml:space="preserve")?>([^<]*)</{v}></{c}>))'
     )
 
     def overwrite(body: bytes, number: int, changes: Mapping[int, _New]) -> bytes | None:
         try:
             old_body = body.decode()
-        except UnicodeDecodeError:
+            cells = [(column_number(found[1]), *found) for found in plain.findall(old_body)]
+        except ValueError:
             return None
         out: list[str] = []
         digits = str(number)
         met = length = before = 0
-        for whole, letters, row, style, kind, text in plain.findall(old_body):
-            col = column_number(letters)
+        for col, whole, letters, row, style, kind, text in cells:
             if row != digits or col <= before:
                 return None
             before = col

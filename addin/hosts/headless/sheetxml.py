@@ -137,7 +137,8 @@ def _raw_formulas(frame: Frame) -> list[_RawFormula]:
         cells = [cell for cell in _all_cells(frame) if frame.grammar.formula.search(cell.content)]
     found: list[_RawFormula] = []
     masters: dict[str, MovableFormula] = {}
-    waiting: list[int] = []
+    # Members that stand before the one that holds the text, by group.
+    waiting: dict[str, list[int]] = {}
     for cell in cells:
         parts = frame.content(cell)
         given = attributes(parts["fattrs"] or b"")
@@ -153,21 +154,20 @@ def _raw_formulas(frame: Frame) -> list[_RawFormula]:
             name, group = "plain", given["si"]
             if text and ("ref" in given or group not in masters):
                 masters[group] = MovableFormula(text, cell.row, cell.col)
+                for index in waiting.pop(group, []):
+                    early = found[index]
+                    found[index] = early._replace(text=masters[group].at(early.cell.row, early.cell.col))
             elif not text and group in masters:
                 text = masters[group].at(cell.row, cell.col)
             elif not text:
-                waiting.append(len(found))
+                waiting.setdefault(group, []).append(len(found))
         elif text:
             name = "plain"
         else:
             continue
         found.append(_RawFormula(cell, text, name, ref, group))
-    for index in waiting:
-        raw = found[index]
-        master = masters.get(raw.group or "")
-        if master is None:
-            raise refused(f"has a formula in row {raw.cell.row} whose shared text is missing")
-        found[index] = raw._replace(text=master.at(raw.cell.row, raw.cell.col))
+    for indices in waiting.values():
+        raise refused(f"has a formula in row {found[indices[0]].cell.row} whose shared text is missing")
     return found
 
 
