@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import numpy as np
-
 from ...cells import CellError, Scalar
 from .a1 import MAX_COLUMN, MAX_ROW, to_a1
 from .areas import Area
@@ -14,6 +12,7 @@ from .refusals import Refusal
 from .run import Run, Stopped
 from .shadow import evaluation_copy
 from .sheetxml import stored_values
+from .tablerefs import sheet_range
 from .uncomputable import Judge
 
 _PATIENCE = 20  # evaluations beyond one for each area
@@ -33,9 +32,7 @@ class Settlement:
         self.kept: dict[int, str] = {}
         self.failed: dict[int, CellError] = {}
         self.warnings: list[str] = []
-        self._occupied_cells: dict[int, set[tuple[int, int]]] = {}
         self._of_area = {node.area.number: node for node in model.nodes if node.area is not None}
-        self._several: set[int] | None = None
 
     def settle(self) -> None:
         """Evaluate until nothing more has to be replaced by a plain value.
@@ -49,7 +46,7 @@ class Settlement:
         while True:
             self.run = self._evaluate()
             left -= 1
-            if not (self._find_blocked() or self._pour() or self._find_uncomputable()):
+            if not (self._find_blocked() or self._lay_tiles() or self._find_uncomputable()):
                 return
             if left <= 0:
                 self.warnings.append(
@@ -121,7 +118,7 @@ class Settlement:
             error = self._obstacle(area, node) if area.kind != "plain" else None
             if error is not None:
                 self.failed[node.index] = error
-                area.poured = None
+                area.tiled = None
                 found = True
         return found
 
@@ -133,66 +130,68 @@ class Settlement:
             return CellError("VALUE", "its result lies on cells that it refers to (circular reference)")
         if area.kind != "dynamic":
             return None
+        if error_word(self.run.raw(node)) != "Spill" and not self._meets_others(area, node):
+            return None
         rows, cols = area.grid.shape
-        blocking = self._occupied(node, own)
-        if blocking:
-            return CellError(
-                "VALUE",
-                f"#SPILL!: the result needs {rows} rows and {cols} columns, and {blocking} is not free",
-            )
-        if error_word(self.run.raw(node)) == "Spill":
-            return CellError("VALUE", f"#SPILL!: there is no room for {rows} rows and {cols} columns")
-        return None
+        place = self._obstacle_at(node, own)
+        return CellError(
+            "VALUE", f"#SPILL!: the result needs {rows} rows by {cols} columns; {place} is not free"
+        )
 
-    def _occupied(self, node: Node, own: Reference) -> str:
-        """The first cell of an extent, beyond the extent in the file, that belongs to somebody else."""
+    def _meets_others(self, area: Area, node: Node) -> bool:
+        """Whether anything but its own upper left cell lies under a large result without tiles."""
+        assert area.grid is not None
+        if not area.large or area.tiled == area.grid.shape:
+            return False
+        _, _, r2, c2 = area.extent()
+        if r2 > MAX_ROW or c2 > MAX_COLUMN:
+            return True
+        under = self._under(area, node)
+        counts = [
+            self.run.try_formula(node, f"COUNTA({sheet_range(self.model.sheet_names[node.sheet], part)})")[0]
+            for part in under
+        ]
+        return any(count != 0.0 for count in counts)
+
+    @staticmethod
+    def _under(area: Area, node: Node) -> list[tuple[int, int, int, int]]:
+        """The extent of a result without the cells that were its own in the evaluated copy."""
+        r1, c1, r2, c2 = area.extent()
+        rows, cols = area.tiled or (1, 1)
+        parts = [(r1 + rows, c1, r2, min(c2, c1 + cols - 1)), (r1, c1 + cols, r2, c2)]
+        return [part for part in parts if part[0] <= part[2] and part[1] <= part[3]]
+
+    def _obstacle_at(self, node: Node, own: Reference) -> str:
+        """The first cell under a result, beyond its extent in the file, that belongs to somebody else."""
+        if own.r2 > MAX_ROW or own.c2 > MAX_COLUMN:
+            return "a cell beyond the edge of the sheet"
         cell = node.cell
         old = cell.ref or (cell.row, cell.col, cell.row, cell.col)
-        if own.r2 <= old[2] and own.c2 <= old[3]:
-            return ""
-        if own.r2 > MAX_ROW or own.c2 > MAX_COLUMN:
-            return "the edge of the sheet"
-        for place in sorted(self._taken(node.sheet)):
-            row, col = place
-            in_own = own.r1 <= row <= own.r2 and own.c1 <= col <= own.c2
-            if in_own and not (old[0] <= row <= old[2] and old[1] <= col <= old[3]):
-                return to_a1(row, col)
-        for area, other in self._live_areas():
-            if other is not node and other.sheet == node.sheet and area.kind == "dynamic":
-                theirs = Reference(other.sheet, *area.extent())
-                if other.index < node.index and _overlap(theirs, own):
-                    return f"the result of {other.a1}"
-        return ""
+        package = self.model.package
+        taken = set(stored_values(package.part(package.sheets[node.sheet].part), package.shared_strings))
+        taken |= {(other.cell.row, other.cell.col) for other in self.model.nodes if other.sheet == node.sheet}
+        taken = {
+            (row, col)
+            for row, col in taken
+            if own.r1 <= row <= own.r2
+            and own.c1 <= col <= own.c2
+            and not (old[0] <= row <= old[2] and old[1] <= col <= old[3])
+        }
+        return to_a1(*min(taken)) if taken else "a cell under it (another result)"
 
-    def _taken(self, sheet: int) -> set[tuple[int, int]]:
-        """Cells of a sheet that are not part of a spilled result."""
-        taken = self._occupied_cells.get(sheet)
-        if taken is None:
-            package = self.model.package
-            xml = package.part(package.sheets[sheet].part)
-            taken = set(stored_values(xml, package.shared_strings))
-            nodes = [node for node in self.model.nodes if node.sheet == sheet]
-            for node in nodes:
-                if node.cell.kind == "dynamic" and node.cell.ref is not None:
-                    r1, c1, r2, c2 = node.cell.ref
-                    taken = {(r, c) for r, c in taken if not (r1 <= r <= r2 and c1 <= c <= c2)}
-            taken |= {(node.cell.row, node.cell.col) for node in nodes}
-            self._occupied_cells[sheet] = taken
-        return taken
-
-    def _pour(self) -> bool:
-        """Put large results into the next copy where other formulas read them."""
+    def _lay_tiles(self) -> bool:
+        """Have tiles in the next copy for the large results that other formulas read."""
         again = False
         for area, node in self._live_areas():
+            shape = area.grid.shape if area.grid is not None else (1, 1)
             if not area.large:
-                again = again or area.poured is not None
-                area.poured = None
-                continue
-            readers = self.model.graph().readers(Reference(node.sheet, *area.extent()))
-            if readers - {node.index} and (
-                area.poured is None or area.grid is None or not np.array_equal(area.poured, area.grid)
+                again = again or area.tiled is not None
+                area.tiled = None
+            elif area.tiled != shape and (
+                area.tiled is not None
+                or self.model.graph().readers(Reference(node.sheet, *area.extent())) - {node.index}
             ):
-                area.poured = area.grid
+                area.tiled = (shape[0], shape[1])
                 again = True
         return again
 

@@ -30,8 +30,7 @@ def literal(value: Scalar) -> str:
 def evaluation_copy(model: Model, instead: Mapping[int, Scalar]) -> bytes:
     """The package for the evaluator.
 
-    ``instead`` gives formulas, by index, for which a plain value stands. An area too
-    large to spill holds its latest result (``poured``) as plain values.
+    ``instead`` gives formulas, by index, for which a plain value stands.
     """
     formulas: dict[int, dict[tuple[int, int], str]] = {}
     blocks: dict[int, list[tuple[int, int, Grid]]] = {}
@@ -42,9 +41,11 @@ def evaluation_copy(model: Model, instead: Mapping[int, Scalar]) -> bytes:
             continue
         if node.copy != node.cell.text:
             formulas.setdefault(node.sheet, {})[place] = node.copy
-        under = _under(node)
-        if under is not None:
-            blocks.setdefault(node.sheet, []).append((*place, under))
+        if node.area is not None and node.area.tiled is not None:
+            formulas.setdefault(node.sheet, {}).update(node.area.tiles())
+        cleared = _cleared(node)
+        if cleared is not None:
+            blocks.setdefault(node.sheet, []).append((*place, cleared))
     replaced: dict[str, bytes] = {}
     for number, sheet in enumerate(model.package.sheets):
         if number not in formulas and number not in blocks:
@@ -58,20 +59,10 @@ def evaluation_copy(model: Model, instead: Mapping[int, Scalar]) -> bytes:
     return model.package.to_bytes(replaced)
 
 
-def _under(node: Node) -> Grid | None:
-    """What the cells of an area hold in the copy: nothing, so that it can spill, or its last result."""
-    area = node.area
-    if area is None or area.kind == "plain":
+def _cleared(node: Node) -> Grid | None:
+    """Empty cells for the extent of an area, so that its result can spill there."""
+    if node.area is None or node.cell.ref is None:
         return None
-    rows = cols = 1
-    if area.ref is not None:
-        r1, c1, r2, c2 = area.ref
-        rows, cols = r2 - r1 + 1, c2 - c1 + 1
-    poured = area.poured
-    if poured is None:
-        return np.full((rows, cols), None, dtype=object) if rows * cols > 1 else None
-    if poured.shape[0] >= rows and poured.shape[1] >= cols:
-        return poured
-    under = np.full((max(rows, poured.shape[0]), max(cols, poured.shape[1])), None, dtype=object)
-    under[: poured.shape[0], : poured.shape[1]] = poured
-    return under
+    r1, c1, r2, c2 = node.cell.ref
+    shape = r2 - r1 + 1, c2 - c1 + 1
+    return np.full(shape, None, dtype=object) if shape != (1, 1) else None
