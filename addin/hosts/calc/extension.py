@@ -18,7 +18,7 @@ from xml.sax.saxutils import escape, quoteattr
 
 from ...tools import product_version
 from .describe import CATEGORY, INTERFACE, Described, functions
-from .office.settings import BATCH, FUNCTIONS, PREFIX, RELINK, STARTUP
+from .office.settings import BATCH, FUNCTIONS, PREFIX, RELINK
 from .typelib import compiled, idl
 
 IDENTIFIER = PREFIX
@@ -50,7 +50,6 @@ def parts(python: str | None = None, described: Sequence[Described] | None = Non
         "thrustbook.components": _components(),
         "CalcAddIns.xcu": _calc_addins(every),
         "Addons.xcu": _addons(),
-        "Jobs.xcu": _jobs(),
         "types/XFunctions.idl": idl(INTERFACE, methods),
         "pythonpath/thrustbook_office/settings.json": json.dumps(settings, indent=1),
     }
@@ -86,7 +85,6 @@ def _manifest() -> str:
         "thrustbook.components": "application/vnd.sun.star.uno-components",
         "CalcAddIns.xcu": "application/vnd.sun.star.configuration-data",
         "Addons.xcu": "application/vnd.sun.star.configuration-data",
-        "Jobs.xcu": "application/vnd.sun.star.configuration-data",
     }
     entries = "".join(
         f'  <manifest:file-entry manifest:full-path="{path}" manifest:media-type="{kind}"/>\n'
@@ -112,7 +110,6 @@ def _description(version: str) -> str:
 def _components() -> str:
     services = {
         FUNCTIONS: (FUNCTIONS, "com.sun.star.sheet.AddIn"),
-        STARTUP: (STARTUP, "com.sun.star.task.Job"),
         RELINK: (RELINK,),
         BATCH: (BATCH,),
     }
@@ -192,15 +189,6 @@ def _addons() -> str:
     )
     content = _set("AddonUI", _set("AddonMenu", menu))
     return _document("Addons", "org.openoffice.Office", content)
-
-
-def _jobs() -> str:
-    job = _node(STARTUP, _plain("Service", STARTUP))
-    events = [
-        _node(event, _set("JobList", _node(STARTUP)))
-        for event in ("onFirstVisibleTask", "OnLoad", "OnLoadFinished", "OnViewCreated")
-    ]
-    return _document("Jobs", "org.openoffice.Office", _set("Jobs", job), _set("Events", *events))
 
 
 def main() -> None:

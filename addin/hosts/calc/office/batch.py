@@ -11,6 +11,7 @@ import json
 import os
 import traceback
 from typing import Any, Dict, List
+from urllib.parse import unquote
 
 from . import books
 
@@ -25,12 +26,12 @@ def desktop(context: Any) -> Any:
 
 
 def run(context: Any, path: str) -> None:
-    """Answer a request and end the office."""
+    """Answer the request in a file, its path percent-encoded, and end the office."""
     import uno
 
     office = desktop(context)
     try:
-        with open(path, encoding="utf-8") as file:
+        with open(unquote(path), encoding="utf-8") as file:
             request = json.load(file)
         try:
             answer = evaluate(office, request, uno.systemPathToFileUrl)
@@ -41,7 +42,20 @@ def run(context: Any, path: str) -> None:
             json.dump(answer, file)
         os.replace(beside, request["answer"])
     finally:
-        office.terminate()
+        _end_soon(context, office)
+
+
+def _end_soon(context: Any, office: Any) -> None:
+    """End the office once it is back at its own loop; from inside a request it would refuse."""
+    import unohelper
+    from com.sun.star.awt import XCallback
+
+    class End(unohelper.Base, XCallback):  # type: ignore[misc]
+        def notify(self, _data: Any) -> None:
+            office.terminate()
+
+    later = context.ServiceManager.createInstanceWithContext("com.sun.star.awt.AsyncCallback", context)
+    later.addCallback(End(), None)
 
 
 def evaluate(office: Any, request: Dict[str, Any], to_url: Any) -> Dict[str, Any]:

@@ -16,16 +16,26 @@ FULL = FUNCTIONS.upper() + "."
 FORMULA = 16
 """com.sun.star.sheet.CellFlags.FORMULA"""
 
-# A name of ours that is not preceded by the full name's point, a letter, or a quotation mark.
-UNBOUND = re.compile(r"(?<![\w.\"])TB_[A-Z][A-Z0-9_]*\(", re.IGNORECASE)
-_TEXTS = re.compile(r'"[^"]*"')
+# A call of ours by a name that the office did not recognise, with the place that another
+# program may have put before it: [1]!TB_BEND(, 'C:\\addins\\thrustbook.xlam'!TB_BEND(, _xll.TB_BEND(.
+_PLACE = r"(?:\[\d+\]|'(?:[^']|'')+'|[\w.]+\.xlam?)[!\s]\s*"
+_CALL = re.compile(
+    r"(?<![\w.\"])(?:(?P<place>%s)(?:%s)?|(?:_xll\.)?)(?P<name>TB_[A-Z][A-Z0-9_]*\()" % (_PLACE, re.escape(FULL)),
+    re.IGNORECASE,
+)
+_TEXTS = re.compile(r'("[^"]*")')
 
 
-def unbound(formula: str) -> bool:
-    """Tell whether a formula, as the office gives it, calls a function of ours by an unknown name."""
-    if not UNBOUND.search(formula):
-        return False
-    return UNBOUND.search(_TEXTS.sub('""', formula)) is not None
+def plain(formula: str) -> str:
+    """Write a formula, as the office gives it, for entering anew; "" where it has no need of that."""
+    if "TB_" not in formula.upper():
+        return ""
+    pieces = _TEXTS.split(formula)
+    found = 0
+    for i in range(0, len(pieces), 2):
+        pieces[i], count = _CALL.subn(lambda match: match.group("name").upper(), pieces[i])
+        found += count
+    return "".join(pieces) if found else ""
 
 
 def relink(document: Any) -> int:
@@ -65,8 +75,8 @@ def _unbound_names(document: Any) -> List[Tuple[Any, str]]:
     names = document.NamedRanges
     for word in names.getElementNames():
         name = names.getByName(word)
-        content = name.getContent()
-        if unbound(content):
+        content = plain(name.getContent())
+        if content:
             found.append((name, content))
     return found
 
@@ -77,27 +87,29 @@ def _unbound_areas(sheet: Any) -> Iterator[Tuple[Any, Any]]:
     for index in range(areas.getCount()):
         area = areas.getByIndex(index)
         formulas = area.getFormulaArray()
-        if any(unbound(text) for line in formulas for text in line):
+        if any(plain(text) for line in formulas for text in line):
             yield area, formulas
 
 
 def _bind(sheet: Any, found: Tuple[Any, Any]) -> int:
     area, formulas = found
-    count = sum(unbound(text) for line in formulas for text in line)
-    arrays = any(text.startswith("{") for line in formulas for text in line)
-    if not arrays:
-        area.setFormulaArray(formulas)
-        return count
+    if not any(text.startswith("{") for line in formulas for text in line):
+        new = tuple(tuple(plain(text) or text for text in line) for line in formulas)
+        area.setFormulaArray(new)
+        return sum(bool(plain(text)) for line in formulas for text in line)
+    count = 0
     place = area.getRangeAddress()
     done = set()
     for i, line in enumerate(formulas):
         for j, text in enumerate(line):
             row, column = place.StartRow + i, place.StartColumn + j
-            if (row, column) in done or not unbound(text):
+            new_text = plain(text)
+            if not new_text or (row, column) in done:
                 continue
+            count += 1
             cell = sheet.getCellByPosition(column, row)
             if not text.startswith("{"):
-                cell.setFormula(text)
+                cell.setFormula(new_text)
                 continue
             cursor = sheet.createCursorByRange(cell)
             cursor.collapseToCurrentArray()
@@ -107,7 +119,7 @@ def _bind(sheet: Any, found: Tuple[Any, Any]) -> int:
                 for r in range(inside.StartRow, inside.EndRow + 1)
                 for c in range(inside.StartColumn, inside.EndColumn + 1)
             )
-            cursor.setArrayFormula(text[1:-1])
+            cursor.setArrayFormula(new_text[1:-1])
     return count
 
 
@@ -119,16 +131,26 @@ def is_spreadsheet(document: Any) -> bool:
         return False
 
 
-LOADED = ("OnLoad", "OnLoadFinished")
+LOADED = ("OnLoadFinished",)
 SAVED = ("OnSaveDone", "OnSaveAsDone")
 
 
-def after_event(name: str, document: Any, system_path: Callable[[str], str], plain: Callable[[str], str]) -> str:
+def _native(document: Any) -> bool:
+    """Tell whether a document was read from the office's own format, which keeps the bound names."""
+    return any(
+        entry.Name == "FilterName" and "calc8" in str(entry.Value) for entry in document.getArgs()
+    )
+
+
+def after_event(
+    name: str, document: Any, system_path: Callable[[str], str], write_plain: Callable[[str], str]
+) -> str:
     """Do what is due after an event of a document; gives "" or what went wrong."""
     if name not in LOADED and name not in SAVED or not is_spreadsheet(document):
         return ""
     if name in LOADED:
-        relink(document)
+        if not _native(document):
+            relink(document)
         return ""
     url = document.getURL()
     if not url.startswith("file:") or not url.lower().endswith((".xlsx", ".xlsm")):
@@ -136,7 +158,7 @@ def after_event(name: str, document: Any, system_path: Callable[[str], str], pla
     path = system_path(url)
     if not holds_full_names(path):
         return ""
-    return plain(path)
+    return write_plain(path)
 
 
 def holds_full_names(path: str) -> bool:

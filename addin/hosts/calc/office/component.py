@@ -14,7 +14,7 @@ import uno
 import unohelper
 from com.sun.star.document import XDocumentEventListener
 from com.sun.star.lang import XServiceInfo, XServiceName
-from com.sun.star.task import XJob, XJobExecutor
+from com.sun.star.task import XJobExecutor
 from org.thrustbook.calc import XFunctions
 from thrustbook_office import batch, books, link, settings
 
@@ -107,18 +107,6 @@ for _name, _repeats in _SETTINGS["functions"]:
     setattr(Functions, _name, _method(_name, _repeats))
 
 
-class Startup(_Service, XJob):
-    """Starts the listener with the office."""
-
-    NAME = settings.STARTUP
-    SERVICES = (settings.STARTUP, "com.sun.star.task.Job")
-
-    def execute(self, _arguments: Any) -> None:
-        document = batch.desktop(self._context).getCurrentComponent()
-        if books.is_spreadsheet(document):
-            books.relink(document)
-
-
 class Relink(_Service, XJobExecutor):
     """The menu command: bind the functions of the workbook that is open."""
 
@@ -162,5 +150,5 @@ def _show(document: Any, text: str) -> None:
 
 
 g_ImplementationHelper = unohelper.ImplementationHelper()
-for _service in (Functions, Startup, Relink, Batch):
+for _service in (Functions, Relink, Batch):
     g_ImplementationHelper.addImplementation(_service, _service.NAME, _service.SERVICES)

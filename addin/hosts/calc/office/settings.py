@@ -9,7 +9,6 @@ from typing import Any, Dict
 PREFIX = "org.thrustbook.calc"
 FUNCTIONS = PREFIX + ".Functions"
 """Service of the worksheet functions; the office puts it, in capitals, before their names."""
-STARTUP = PREFIX + ".Startup"
 RELINK = PREFIX + ".Relink"
 BATCH = PREFIX + ".Batch"
 
