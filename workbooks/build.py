@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import importlib
 import io
+import re
 import sys
 import tempfile
 import zipfile
@@ -23,6 +24,7 @@ TEMPLATES: Final = {"pipe-run": ("pipe_run", "thrust down a pumped main, node by
 """Template -> the module that builds it, and what it is for."""
 
 _DATE: Final = (2026, 1, 1, 0, 0, 0)
+_MODIFIED: Final = re.compile(rb"(<dcterms:modified[^>]*>)[^<]*(</dcterms:modified>)")
 
 
 def shipped(name: str) -> Path:
@@ -60,7 +62,7 @@ def _without_clock(data: bytes) -> bytes:
             entry = zipfile.ZipInfo(member.filename, _DATE)
             entry.compress_type = zipfile.ZIP_DEFLATED
             entry.external_attr = 0o644 << 16
-            new.writestr(entry, old.read(member))
+            new.writestr(entry, _MODIFIED.sub(rb"\g<1>2026-01-01T00:00:00Z\g<2>", old.read(member)))
     return out.getvalue()
 
 
