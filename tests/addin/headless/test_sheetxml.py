@@ -1,27 +1,18 @@
 from __future__ import annotations
 
-import math
 import random
-import re
-import subprocess
-import sys
 from collections.abc import Mapping
 
-import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from lxml import etree
 
-from thrustbook.addin.cells import ERROR_TEXT, CellError, ErrorKind, Scalar
+from thrustbook.addin.cells import CellError, Scalar
 from thrustbook.addin.hosts.headless.a1 import (
-    column_letters,
-    column_number,
     from_a1,
-    range_from_a1,
     to_a1,
 )
-from thrustbook.addin.hosts.headless.formulashift import MovableFormula
 from thrustbook.addin.hosts.headless.refusals import Refusal
 from thrustbook.addin.hosts.headless.sheetxml import (
     FormulaCell,
@@ -31,84 +22,7 @@ from thrustbook.addin.hosts.headless.sheetxml import (
     stored_values,
 )
 
-MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
-
-
-def sheet(rows: str, before: str = "") -> bytes:
-    return f'<worksheet xmlns="{MAIN}">{before}<sheetData>{rows}</sheetData></worksheet>'.encode()
-
-
-def rows_of(xml: bytes) -> str:
-    return xml.decode().split("<sheetData>")[1].split("</sheetData>")[0]
-
-
-# --- references ---------------------------------------------------------------------------
-
-
-@given(st.integers(1, 1_048_576), st.integers(1, 16_384), st.booleans())
-def test_reference_and_back(row: int, col: int, absolute: bool) -> None:
-    text = to_a1(row, col, absolute)
-    assert from_a1(text) == (row, col)
-    assert text.count("$") == 2 * absolute
-    assert column_number(column_letters(col)) == col
-
-
-def test_references_at_the_edges() -> None:
-    assert (column_letters(26), column_letters(27), column_letters(702), column_letters(703)) == (
-        "Z",
-        "AA",
-        "ZZ",
-        "AAA",
-    )
-    assert to_a1(1_048_576, 16_384) == "XFD1048576"
-    assert range_from_a1("$C$5:a2") == (2, 1, 5, 3)
-    assert range_from_a1("B7") == (7, 2, 7, 2)
-    assert range_from_a1("B:D") == (1, 2, 1_048_576, 4)
-    assert range_from_a1("3:4") == (3, 1, 4, 16_384)
-    for text in ("", "A", "1", "A0", "XFE1", "A1048577", "A1:", "A1:B", "1A", "A1B"):
-        with pytest.raises(ValueError, match="is not a"):
-            range_from_a1(text) if ":" in text else from_a1(text)
-    for bad in (0, 16_385):
-        with pytest.raises(ValueError, match="outside the sheet"):
-            column_letters(bad)
-
-
-# --- shared formulas ----------------------------------------------------------------------
-
-
-@pytest.mark.parametrize(
-    ("text", "moved"),
-    [
-        ("A1+$A1+A$1+$A$1", "C4+$A4+C$1+$A$1"),
-        ("SUM(A1:B2,C:C,$C:D,2:3,$2:3)", "SUM(C4:D5,E:E,$C:F,5:6,$2:6)"),
-        ("Sheet1!A1+'It''s A1'!A1+'[2]Other A1'!$A1+[3]Sheet2!A1", None),
-        ("Jan:Mar!B2+'Jan:Mar'!B2", "Jan:Mar!D5+'Jan:Mar'!D5"),
-        ("Sheet1!Flow+Flow_A1+A1.x+Total1234567+XFE1+A1048577+A0", None),
-        ('"A1"&A1&"say ""A1"""', '"A1"&C4&"say ""A1"""'),
-        ("T[[#This Row],[A1]]+T[A1]+T[@[B2 '] C3]]+A1", "T[[#This Row],[A1]]+T[A1]+T[@[B2 '] C3]]+C4"),
-        ("LOG10(A1)+ATAN2(B2,1E5)+1.5E+3*A1", "LOG10(C4)+ATAN2(D5,1E5)+1.5E+3*C4"),
-        ("_xlfn.LET(_xlpm.x1,A1,_xlpm.x1+TRUE)", "_xlfn.LET(_xlpm.x1,C4,_xlpm.x1+TRUE)"),
-        ("A1#+#REF!+#N/A+#DIV/0!+Sheet1!#REF!+@A1", "C4#+#REF!+#N/A+#DIV/0!+Sheet1!#REF!+@C4"),
-        ("{1,2;3,4}*A1%^-2", "{1,2;3,4}*C4%^-2"),
-        ("A1:INDEX(B:B,3)", "C4:INDEX(D:D,3)"),
-        ("Größe!A1+Größe1", "Größe!C4+Größe1"),
-        ('TB_BEND(A1, "D" ,B$1)\n+A2', 'TB_BEND(C4, "D" ,D$1)\n+C5'),
-    ],
-)
-def test_formula_moves(text: str, moved: str | None) -> None:
-    if moved is None:
-        moved = re.sub(r"!(\$?)A1\b", lambda m: f"!{m[1] or ''}{'A' if m[1] else 'C'}4", text)
-    assert MovableFormula(text, 2, 3).at(5, 5) == moved
-    assert MovableFormula(moved, 5, 5).at(2, 3) == text
-
-
-def test_formula_that_leaves_the_sheet() -> None:
-    assert MovableFormula("A1+B2+$A$1", 5, 5).at(4, 5) == "#REF!+B1+$A$1"
-    assert MovableFormula("Sheet1!A1+A:B+1:1", 5, 5).at(5, 4) == "Sheet1!#REF!+#REF!+1:1"
-    assert MovableFormula("XFD1048576", 1, 1).at(2, 1) == "#REF!"
-
-
-# --- formulas -----------------------------------------------------------------------------
+from .plainsheet import MAIN, rows_of, sheet
 
 
 def test_formula_kinds() -> None:
@@ -179,233 +93,6 @@ def test_places_that_are_not_written() -> None:
     }
 
 
-# --- values -------------------------------------------------------------------------------
-
-TEXTS = [
-    "",
-    " lead",
-    "trail ",
-    "line\nbreak\ttab",
-    "\r carriage",
-    "a & b < c > d ]]> \"quoted\" 'single'",
-    "_x000D_ literal",
-    "_x005F_x0041_",
-    "__x0041__x0042_",
-    "bell \x07 null \x00 end",
-    "Größe Ω 漢字 😀",
-    "\ufffe\uffff",
-    "=SUM(A1)",
-    "1.5",
-    "TRUE",
-]
-
-
-@pytest.mark.parametrize("text", TEXTS)
-@pytest.mark.parametrize("formula", [False, True])
-def test_text_is_stored_and_read_back(text: str, formula: bool) -> None:
-    xml = sheet('<row r="1"><c r="A1"><f>X()</f></c></row>' if formula else "")
-    new = store(xml, {(1, 1): text})
-    etree.fromstring(new)
-    assert stored_values(new, []) == {(1, 1): text}
-    assert b't="str"' in new
-    assert (b'xml:space="preserve"' in new) == (text != text.strip(" \n\t"))
-
-
-@given(st.floats(allow_nan=False, allow_infinity=False) | st.just(-0.0))
-def test_numbers_round_trip(value: float) -> None:
-    read = stored_values(store(sheet(""), {(1, 1): value}), [])[1, 1]
-    assert isinstance(read, float)
-    assert (read, math.copysign(1, read)) == (value, math.copysign(1, value))
-
-
-@given(st.text(max_size=40))
-def test_any_text_round_trips(text: str) -> None:
-    new = store(sheet(""), {(1, 1): text})
-    etree.fromstring(new)
-    assert stored_values(new, [])[1, 1] == text
-
-
-def test_how_each_type_is_written() -> None:
-    values: dict[tuple[int, int], Scalar] = {
-        (1, 1): 1.0,
-        (1, 2): -0.0,
-        (1, 3): 0.1 + 0.2,
-        (1, 4): 1e22,
-        (1, 5): True,
-        (1, 6): False,
-        (1, 7): None,
-        (1, 8): math.nan,
-        (1, 9): -math.inf,
-        (1, 10): "x" * 32_768,
-        (1, 11): np.float64(2.5),
-        (1, 12): 7,
-        (1, 13): np.True_,  # type: ignore[dict-item]
-        (1, 14): np.str_("s"),
-    }
-    assert rows_of(store(sheet(""), values)) == (
-        '<row r="1"><c r="A1"><v>1</v></c><c r="B1"><v>-0</v></c><c r="C1"><v>0.30000000000000004</v></c>'
-        '<c r="D1"><v>1e+22</v></c><c r="E1" t="b"><v>1</v></c><c r="F1" t="b"><v>0</v></c>'
-        '<c r="H1" t="e"><v>#NUM!</v></c><c r="I1" t="e"><v>#NUM!</v></c><c r="J1" t="e"><v>#VALUE!</v></c>'
-        '<c r="K1"><v>2.5</v></c><c r="L1"><v>7</v></c><c r="M1" t="b"><v>1</v></c>'
-        '<c r="N1" t="str"><v>s</v></c></row>'
-    )
-    with pytest.raises(TypeError, match="complex"):
-        store(sheet(""), {(1, 1): 1j})  # type: ignore[dict-item]
-
-
-@pytest.mark.parametrize("kind", ERROR_TEXT)
-def test_errors(kind: ErrorKind) -> None:
-    new = store(sheet('<row r="1"><c r="A1"><f>X()</f><v>1</v></c></row>'), {(1, 1): CellError(kind, "why")})
-    assert rows_of(new) == f'<row r="1"><c r="A1" t="e"><f>X()</f><v>{ERROR_TEXT[kind]}</v></c></row>'
-    assert stored_values(new, []) == {(1, 1): CellError(kind)}
-
-
-OLD_CELLS: dict[str, tuple[str, Scalar]] = {
-    "number": ('<c r="B2" s="4"><f>X()</f><v>1</v></c>', 1.0),
-    "text": ('<c r="B2" s="4" t="str"><f>X()</f><v xml:space="preserve"> a</v></c>', " a"),
-    "error": ('<c r="B2" t="e" s="4"><f>X()</f><v>#N/A</v></c>', CellError("NA")),
-    "boolean": ('<c t="b" r="B2" s="4"><f>X()</f><v>1</v></c>', True),
-    "shared": ("<c r='B2' s='4' t='s'><v>1</v></c>", "two"),
-    "in line": (
-        '<c r="B2" s="4" t="inlineStr"><is><r><t>in </t></r><rPh><t>no</t></rPh><r><t>line</t></r></is></c>',
-        "in line",
-    ),
-    "none": ('<c r="B2" s="4"><f>X()</f></c>', None),
-    "empty": ('<c r="B2" s="4"/>', None),
-    "explicit": ('<c r="B2" s="4" t="n"><v>1.50</v></c>', 1.5),
-    "spaced": ('<c  r="B2"\n s="4" >\n <f>X()</f >\n <v>1</v>\n</c >', 1.0),
-    "date": ('<c r="B2" s="4" t="d"><v>2020-01-01T12:00:00Z</v></c>', 43831.5),
-    "extended": ('<c r="B2" s="4"><f>X()</f><v>1</v><extLst><ext uri="u"/></extLst></c>', 1.0),
-    "detailed": ('<c r="B2" s="4" t="e" vm="2"><f>X()</f><v>#VALUE!</v></c>', CellError("VALUE")),
-}
-
-
-@pytest.mark.parametrize("name", OLD_CELLS)
-@pytest.mark.parametrize("value", [2.5, "new", True, CellError("NUM"), None])
-def test_every_old_cell_takes_every_value(name: str, value: Scalar) -> None:
-    text, old = OLD_CELLS[name]
-    rows = f'<row r="2"><c r="A2"><v>9</v></c>{text}<c r="C2"><v>8</v></c></row>'
-    xml = sheet(rows)
-    assert stored_values(xml, ["one", "two"]).get((2, 2)) == old
-    new = store(xml, {(2, 2): value})
-    cell = etree.fromstring(new).findall(f".//{{{MAIN}}}c")[1]
-    assert stored_values(new, []).get((2, 2)) == value
-    assert cell.get("s") == "4"
-    assert cell.get("vm") is None
-    assert [node.tag.partition("}")[2] for node in cell] == (
-        ["f"] * ("<f>" in text) + ["v"] * (value is not None) + ["extLst"] * (name == "extended")
-    )
-    before, after = rows_of(new).split("<c ")[1], rows_of(new).split("<c ")[3]
-    assert (before, after) == ('r="A2"><v>9</v></c>', 'r="C2"><v>8</v></c></row>')
-
-
-@pytest.mark.parametrize(
-    "name", [name for name in OLD_CELLS if name not in ("shared", "in line", "detailed", "date")]
-)
-def test_cell_stays_when_the_value_is_there_already(name: str) -> None:
-    text, old = OLD_CELLS[name]
-    xml = sheet(f'<row r="2">{text}</row>')
-    assert store(xml, {(2, 2): old}) == xml
-
-
-def test_numbers_written_another_way_stay() -> None:
-    xml = sheet('<row r="1"><c r="A1"><v>1.50</v></c><c r="B1"><v>15E-1</v></c><c r="C1"><v>0</v></c></row>')
-    same: dict[tuple[int, int], Scalar] = {(1, 1): 1.5, (1, 2): 1.5, (1, 3): 0.0}
-    assert store(xml, same) == xml
-    assert b"<v>-0</v>" in store(xml, {**same, (1, 3): -0.0})
-
-
-# --- places -------------------------------------------------------------------------------
-
-
-def test_rows_and_cells_are_inserted_in_order_with_style_dimension_and_spans() -> None:
-    xml = sheet(
-        '<row r="3" spans="2:3"><c r="B3"><v>1</v></c><c r="C3"><v>2</v></c></row>\n'
-        '<row r="5" s="7" customFormat="1"/><row r="6" s="7"><c r="D6"/></row>\n',
-        '<dimension ref="B3:C6"/><cols><col min="1" max="1" style="2" width="9"/>'
-        '<col min="4" max="9" width="8"/>'
-        '<col min="10" max="16384" style="0"/></cols>',
-    )
-    values: dict[tuple[int, int], Scalar] = {(r, c): r * 10.0 + c for r in (1, 3, 4, 5, 6, 8) for c in (1, 5)}
-    new = store(xml, {**values, (7, 7): None, (3, 9): None})
-    assert new.decode().count('<dimension ref="A1:E8"/>') == 1
-    assert rows_of(new) == (
-        '<row r="1"><c r="A1" s="2"><v>11</v></c><c r="E1"><v>15</v></c></row>'
-        '<row r="3" spans="1:5"><c r="A3" s="2"><v>31</v></c><c r="B3"><v>1</v></c><c r="C3"><v>2</v></c>'
-        '<c r="E3"><v>35</v></c></row>\n'
-        '<row r="4"><c r="A4" s="2"><v>41</v></c><c r="E4"><v>45</v></c></row>'
-        '<row r="5" s="7" customFormat="1"><c r="A5" s="7"><v>51</v></c><c r="E5" s="7"><v>55</v></c></row>'
-        '<row r="6" s="7"><c r="A6" s="2"><v>61</v></c><c r="D6"/><c r="E6"><v>65</v></c></row>'
-        '<row r="8"><c r="A8" s="2"><v>81</v></c><c r="E8"><v>85</v></c></row>\n'
-    )
-
-
-def test_array_spills_over_cells_that_are_there_and_that_are_not() -> None:
-    xml = sheet(
-        '<row r="2"><c r="B2" cm="1"><f t="array" ref="B2:B3">TB_RUN(A1)</f><v>0</v></c>'
-        '<c r="D2"><v>1</v></c></row><row r="3"><c r="B3" s="1"><v>5</v></c></row>'
-    )
-    grid = np.array([["Node", 1.5], [CellError("NA"), None], [True, "x"]], dtype=object)
-    new = store(xml, {}, [(2, 2, grid)], {(2, 2): (2, 2, 4, 3)})
-    assert rows_of(new) == (
-        '<row r="2"><c r="B2" cm="1" t="str"><f t="array" ref="B2:C4">TB_RUN(A1)</f><v>Node</v></c>'
-        '<c r="C2"><v>1.5</v></c><c r="D2"><v>1</v></c></row>'
-        '<row r="3"><c r="B3" s="1" t="e"><v>#N/A</v></c></row>'
-        '<row r="4"><c r="B4" t="b"><v>1</v></c><c r="C4" t="str"><v>x</v></c></row>'
-    )
-    assert formula_cells(new, [])[0].ref == (2, 2, 4, 3)
-    only = store(xml, {}, array_refs={(2, 2): (2, 2, 2, 2)})
-    assert only == xml.replace(b'ref="B2:B3"', b'ref="B2"')
-    with pytest.raises(ValueError, match="no array formula"):
-        store(xml, {(3, 2): 1.0}, array_refs={(3, 2): (3, 2, 4, 2)})
-    with pytest.raises(ValueError, match="no array formula"):
-        store(xml, {}, array_refs={(9, 9): (9, 9, 9, 9)})
-    with pytest.raises(ValueError, match="two dimensions"):
-        store(xml, {}, [(1, 1, np.array([1.0], dtype=object))])
-
-
-@pytest.mark.parametrize("rows", ["<x:sheetData/>", "<x:sheetData ></x:sheetData>", "<x:sheetData />"])
-def test_prefixed_and_empty_sheet(rows: str) -> None:
-    xml = f'<x:worksheet xmlns:x="{MAIN}"><x:dimension ref="A1"/>{rows}</x:worksheet>'.encode()
-    new = store(xml, {(2, 2): " a"}, [(3, 1, np.array([[1.0]], dtype=object))])
-    etree.fromstring(new)
-    assert stored_values(new, []) == {(2, 2): " a", (3, 1): 1.0}
-    assert b'<x:dimension ref="A1:B3"/>' in new
-    assert store(new, {(2, 2): "b"}).count(b'<x:c r="B2" t="str"><x:v>b</x:v></x:c>') == 1
-    with_formula = set_formulas(new, {(2, 2): "A1&B1"})
-    assert b'<x:c r="B2"><x:f>A1&amp;B1</x:f></x:c>' in with_formula
-    assert [(c.row, c.col, c.text) for c in formula_cells(with_formula, [])] == [(2, 2, "A1&B1")]
-
-
-def test_nothing_to_store_changes_nothing() -> None:
-    xml = sheet('<row r="1"><c r="A1"><v>1</v></c></row>', '<dimension ref="A1"/>')
-    assert store(xml, {}) == xml
-    assert store(xml, {(4, 4): None}) == xml
-    assert store(xml, {}, [(1, 1, np.empty((0, 3), dtype=object))]) == xml
-    assert set_formulas(xml, {}) == xml
-
-
-def test_large_block_and_single_cells_together() -> None:
-    """A large block takes other paths than single cells; both must write the same."""
-    noise = random.Random(3)
-    pool: list[Scalar] = [1.0, -2.5, "t", " s ", True, False, None, CellError("NA"), 3.25, 1e300]
-    grid = np.empty((500, 12), dtype=object)
-    for place in np.ndindex(grid.shape):
-        grid[place] = noise.choice(pool)
-    old = store(
-        sheet('<row r="40" spans="1:1"><c r="C40"><f>A1</f></c></row><row r="2000"/>'),
-        {(r, c): noise.choice(pool) for r in range(1, 600, 2) for c in range(1, 20)},
-    )
-    single: dict[tuple[int, int], Scalar] = {(r + 11, c + 3): value for (r, c), value in np.ndenumerate(grid)}
-    extra: dict[tuple[int, int], Scalar] = {(20, 4): "over", (20, 30): 1.0, (1500, 1): 2.0}
-    by_block = store(old, extra, [(11, 3, grid)])
-    assert by_block == store(old, {**single, **extra})
-    assert store(by_block, extra, [(11, 3, grid)]) == by_block
-
-
-# --- new formulas -------------------------------------------------------------------------
-
-
 def test_set_formulas_writes_out_the_groups_it_touches() -> None:
     xml = sheet(
         '<row r="1"><c r="A1" s="1" t="str">'
@@ -427,9 +114,6 @@ def test_set_formulas_writes_out_the_groups_it_touches() -> None:
     for bad in ("", "=A1"):
         with pytest.raises(ValueError, match="equals sign"):
             set_formulas(xml, {(1, 1): bad})
-
-
-# --- any sheet ----------------------------------------------------------------------------
 
 
 def rows_by_tree(xml: bytes) -> list[etree._Element]:
@@ -538,9 +222,6 @@ def test_set_formulas_agrees_with_an_xml_library(xml: bytes, formulas: Mapping[t
             assert after[place] == old[place]
 
 
-# --- refusals -----------------------------------------------------------------------------
-
-
 @pytest.mark.parametrize(
     ("xml", "words"),
     [
@@ -616,32 +297,3 @@ def test_random_damage_is_refused_or_harmless() -> None:
             except Refusal:
                 refused += 1
     assert refused > 1000
-
-
-# --- size ---------------------------------------------------------------------------------
-
-BIG = """
-import resource, sys
-import numpy as np
-from thrustbook.addin.hosts.headless.sheetxml import formula_cells, store
-rows, cols = 100_000, 12
-head = '<worksheet xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main"><sheetData>'
-cell = '<row r="2"><c r="A2" cm="1"><f t="array" ref="A2">TB_X()</f></c></row>'
-xml = (head + cell + "</sheetData></worksheet>").encode()
-grid = np.random.default_rng(1).normal(size=(rows, cols)).astype(object)
-for factor in (1.0, 2.0):
-    xml = store(xml, {}, [(2, 1, grid * factor)], {(2, 1): (2, 1, rows + 1, cols)})
-assert xml.count(b"<v>") == rows * cols and xml.count(b"<row ") == rows
-assert formula_cells(xml, [])[0].ref == (2, 1, rows + 1, cols)
-last = f'<c r="L{rows + 1}"><v>{grid[-1, -1] * 2.0!r}</v></c></row></sheetData>'
-assert last.encode() in xml
-print(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)
-"""
-
-
-@pytest.mark.skipif(sys.platform == "win32", reason="Windows has no resource module")
-def test_memory_of_a_large_block() -> None:
-    run = subprocess.run([sys.executable, "-c", BIG], check=True, capture_output=True, text=True, timeout=300)
-    unit = 1 if sys.platform == "darwin" else 1024
-    peak = int(run.stdout) * unit
-    assert peak < 500e6, f"{peak / 1e6:.0f} MB"
