@@ -24,6 +24,18 @@ def _table_call(row: Row, args: Sequence[Cell]) -> tuple[Wanted, TableCall]:
     return asked, TableCall(result=result, units=units, cells=padded[row.leading :])
 
 
+def solved(row: Row, args: Sequence[Cell]) -> TableAnswer:
+    """Give the answer of a table function before it becomes cells, in SI units.
+
+    Raises
+    ------
+    Refused, EngineError
+        A call that has no answer at all.
+    """
+    found: TableAnswer = row.routine(_table_call(row, args)[1])
+    return found
+
+
 def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
     """Answer one call of a table function."""
     asked, request = _table_call(row, args)
