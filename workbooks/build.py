@@ -6,7 +6,6 @@ its values. Building it again gives the same bytes, so the shipped file can be c
 
 from __future__ import annotations
 
-import importlib
 import io
 import re
 import sys
@@ -19,17 +18,12 @@ from typing import Final
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.hosts.headless.package import Package
 
-HERE: Final = Path(__file__).parent
-TEMPLATES: Final = {"pipe-run": ("pipe_run", "thrust down a pumped main, node by node and by load case")}
-"""Template -> the module that builds it, and what it is for."""
+from . import pipe_run
+from .templates import TEMPLATES, shipped
 
+_BUILDERS: Final = {"pipe-run": pipe_run.build}
 _DATE: Final = (2026, 1, 1, 0, 0, 0)
 _MODIFIED: Final = re.compile(rb"(<dcterms:modified[^>]*>)[^<]*(</dcterms:modified>)")
-
-
-def shipped(name: str) -> Path:
-    """Give the path of a shipped template."""
-    return HERE / f"{name}.xlsx"
 
 
 def build(name: str) -> bytes:
@@ -40,9 +34,8 @@ def build(name: str) -> bytes:
     RuntimeError
         Where a cell of the new workbook fails: a template must be right.
     """
-    module = importlib.import_module(f".{TEMPLATES[name][0]}", __package__)
     buffer = io.BytesIO()
-    module.build().save(buffer)
+    _BUILDERS[name]().save(buffer)
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "book.xlsx"
         path.write_bytes(_without_clock(buffer.getvalue()))

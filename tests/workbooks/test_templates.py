@@ -10,8 +10,10 @@ import pytest
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.workbooks import build
+from thrustbook.workbooks.templates import TEMPLATES as NAMES
+from thrustbook.workbooks.templates import shipped
 
-TEMPLATES = pytest.mark.parametrize("name", build.TEMPLATES)
+TEMPLATES = pytest.mark.parametrize("name", NAMES)
 
 
 def cells(path: Path) -> dict[tuple[str, str], object]:
@@ -24,15 +26,15 @@ def cells(path: Path) -> dict[tuple[str, str], object]:
 
 @TEMPLATES
 def test_the_shipped_file_is_what_its_builder_makes(name: str) -> None:
-    assert build.shipped(name).read_bytes() == build.build(name), (
+    assert shipped(name).read_bytes() == build.build(name), (
         "run python -m thrustbook.workbooks.build and commit the workbook"
     )
 
 
 @TEMPLATES
 def test_every_formula_has_its_value_and_none_is_an_error(name: str) -> None:
-    formulas = openpyxl.load_workbook(build.shipped(name))
-    values = openpyxl.load_workbook(build.shipped(name), data_only=True)
+    formulas = openpyxl.load_workbook(shipped(name))
+    values = openpyxl.load_workbook(shipped(name), data_only=True)
     for ws in formulas:
         for line in ws:
             for cell in line:
@@ -46,17 +48,17 @@ def test_every_formula_has_its_value_and_none_is_an_error(name: str) -> None:
 
 @TEMPLATES
 def test_evaluating_it_again_changes_nothing(name: str) -> None:
-    evaluation = evaluate_workbook(Package.read(build.shipped(name)))
+    evaluation = evaluate_workbook(Package.read(shipped(name)))
     assert evaluation.ok
     assert not evaluation.native_kept
-    package = Package.read(build.shipped(name))
+    package = Package.read(shipped(name))
     for part, data in evaluation.replaced.items():
         assert data == package.part(part), part
 
 
 @TEMPLATES
 def test_the_layout_has_what_a_calculation_sheet_has(name: str) -> None:
-    book = openpyxl.load_workbook(build.shipped(name))
+    book = openpyxl.load_workbook(shipped(name))
     assert "Units" in book.defined_names
     texts = [str(c.value) for c in book["Cover"]["A"] if c.value]
     for heading in ("Results", "Cautions", "Revisions and sign-off", "Checked by"):
@@ -70,7 +72,7 @@ def test_the_layout_has_what_a_calculation_sheet_has(name: str) -> None:
 
 
 def test_the_pipe_run_shows_both_styles_agree_and_closes() -> None:
-    values = cells(build.shipped("pipe-run"))
+    values = cells(shipped("pipe-run"))
     verdicts = [v for (sheet, at), v in values.items() if sheet == "Fittings" and at.startswith("H")]
     assert len(verdicts) >= 10
     assert set(verdicts) == {"agrees"}
@@ -90,11 +92,11 @@ def test_the_pipe_run_shows_both_styles_agree_and_closes() -> None:
 
 
 def test_the_pipe_run_has_its_fittings_cases_and_charts() -> None:
-    values = cells(build.shipped("pipe-run"))
+    values = cells(shipped("pipe-run"))
     kinds = {v for (sheet, at), v in values.items() if sheet == "Run" and at.startswith("B")}
     for kind in ("bend", "reducer", "tee", "jet"):
         assert any(kind in str(k) for k in kinds), kind
-    book = openpyxl.load_workbook(build.shipped("pipe-run"))
+    book = openpyxl.load_workbook(shipped("pipe-run"))
     assert len(book["Run"]._charts) == len(book["Cases"]._charts) == 1
     cases = {v for (sheet, at), v in values.items() if sheet == "Inputs" and at.startswith("B")}
     assert {"operating", "shut", "test", "surge"} <= cases
