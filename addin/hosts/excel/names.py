@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import functools
 import keyword
 from typing import NamedTuple
 
@@ -55,8 +54,8 @@ def identifier(name: str, taken: frozenset[str] = frozenset()) -> str:
     return safe
 
 
-@functools.cache
-def _parameters(row_name: str, row: Row) -> tuple[Parameter, ...]:
+def parameters(row: Row) -> tuple[Parameter, ...]:
+    """Give the parameters of a function in the order of the worksheet call."""
     named: list[tuple[str, str]] = []
     if row.has_result:
         named.append(("result", GLOSSARY["result"]))
@@ -64,17 +63,12 @@ def _parameters(row_name: str, row: Row) -> tuple[Parameter, ...]:
         named.append(("units", GLOSSARY["units"]))
     named += [(a.name, _argument_text(row, a)) for a in row.args]
     out: list[Parameter] = []
-    taken = frozenset((row_name.lower(),))
+    taken = frozenset((row.name.lower(),))
     for name, text in named:
         safe = identifier(name, taken)
         taken |= {safe.lower()}
         out.append(Parameter(safe, cut(text)))
     return tuple(out)
-
-
-def parameters(row: Row) -> tuple[Parameter, ...]:
-    """Give the parameters of a function in the order of the worksheet call."""
-    return _parameters(row.name, row)
 
 
 def description(row: Row) -> str:

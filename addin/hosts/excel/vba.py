@@ -84,7 +84,7 @@ def wrapper(row: Row) -> str:
         f'    {row.name} = TbCall("{row.name}", {"tb_args" if names else "Array()"})',
         "    Exit Function",
         "tb_failed:",
-        f"    {row.name} = CVErr({CVERR['VALUE']})",
+        f"    {row.name} = TbFailed(Err.Description)",
         "End Function",
     ]
     return "\n".join(out)

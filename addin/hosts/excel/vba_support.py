@@ -22,38 +22,49 @@ Private Function TbArg(Optional ByVal tb_value As Variant) As Variant
     If IsMissing(tb_value) Then
         TbArg = Empty
     ElseIf TypeName(tb_value) = "Range" Then
-        If tb_value.Areas.Count > 1 Then
-            TbArg = CVErr({VALUE})
-        Else
-            TbArg = tb_value.Value2
-        End If
+        TbArg = TbValues(tb_value)
     Else
         TbArg = tb_value
     End If
 End Function
 
-' The call itself. Where Python was closed in the meantime it is started once more; a second
-' fault goes up to the wrapper, which shows #VALUE!.
+Private Function TbValues(ByVal tb_range As Object) As Variant
+    If tb_range.Areas.Count > 1 Then
+        TbValues = CVErr({VALUE})
+    Else
+        TbValues = tb_range.Value2
+    End If
+End Function
+
+' What a wrapper shows after a fault; the text is kept for the macro TbLastFault.
+Private Function TbFailed(ByVal tb_text As String) As Variant
+    tb_fault = tb_text
+    TbFailed = CVErr({VALUE})
+End Function
+
+' The call itself. Where Python was closed in the meantime it is started once more.
 Private Function TbCall(ByVal tb_name As String, ByRef tb_args As Variant) As Variant
     Dim tb_answer As Variant
-    Dim tb_again As Boolean
+    If Not TbAsk(tb_name, tb_args, tb_answer) Then
+        Set tb_python = Nothing
+        If Not TbAsk(tb_name, tb_args, tb_answer) Then
+            Set tb_python = Nothing
+            TbCall = CVErr({VALUE})
+            Exit Function
+        End If
+    End If
+    TbCall = TbShow(tb_answer)
+End Function
+
+Private Function TbAsk(ByVal tb_name As String, ByRef tb_args As Variant, ByRef tb_answer As Variant) As Boolean
     On Error GoTo tb_broken
-tb_try:
     If tb_python Is Nothing Then TbStart
     tb_answer = tb_python.CallUDF(TB_PYTHON_MODULE, tb_name, tb_args)
-    On Error GoTo 0
-    TbCall = TbShow(tb_answer)
+    TbAsk = True
     Exit Function
 tb_broken:
     tb_fault = Err.Description
-    If tb_again Or tb_python Is Nothing Then Resume tb_give_up
-    tb_again = True
-    Set tb_python = Nothing
-    Resume tb_try
-tb_give_up:
-    On Error GoTo 0
-    Set tb_python = Nothing
-    Err.Raise 1000, "thrustbook", "Python gave no answer"
+    TbAsk = False
 End Function
 
 ' Starts Python. After a refusal every formula would wait for another; for a while they fail at once.
