@@ -16,7 +16,7 @@ from ...catalogue.registry import CATALOGUE
 
 MODULE_NAME: Final = "thrustbook_relink"
 
-_TEXT = r"""Attribute VB_Name = "{module}"
+_TEXT = r'''Attribute VB_Name = "{module}"
 ' Binds the functions of thrustbook anew in the active workbook. Generated: do not edit.
 Option Explicit
 
@@ -255,7 +255,7 @@ Private Function TbIsOurs(ByVal tb_word As String) As Boolean
             TbIsOurs = False
     End Select
 End Function
-"""
+'''
 
 
 def relink_module(names: Iterable[str] = CATALOGUE) -> str:

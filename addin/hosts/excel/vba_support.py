@@ -56,7 +56,8 @@ Private Function TbCall(ByVal tb_name As String, ByRef tb_args As Variant) As Va
     TbCall = TbShow(tb_answer)
 End Function
 
-Private Function TbAsk(ByVal tb_name As String, ByRef tb_args As Variant, ByRef tb_answer As Variant) As Boolean
+Private Function TbAsk(ByVal tb_name As String, ByRef tb_args As Variant, _
+        ByRef tb_answer As Variant) As Boolean
     On Error GoTo tb_broken
     If tb_python Is Nothing Then TbStart
     tb_answer = tb_python.CallUDF(TB_PYTHON_MODULE, tb_name, tb_args)
