@@ -166,11 +166,13 @@ class Model:
                 ]
             return
         text = self.tables.written_out(cell.text, sheet, cell.row, cell.col)
+        parts: list[Part] = []
         try:
             parts = take_apart(text)
             parts = self.names.written_out(parts, sheet, cell.row, cell.col)
         except Unreadable as error:
             node.reason = str(error)
+            node.calls = tuple(self.names.direct_calls(parts, sheet))
             return
         parts = self._table_names(parts, sheet)
         node.calls = tuple(calls(parts))

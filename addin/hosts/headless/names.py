@@ -92,14 +92,15 @@ class Names:
     def _at(self, name: NameRef, row: int, col: int) -> list[Part]:
         """The text of a name as it reads in one cell: its free references count from A1."""
         parts = self.parts(name)
-        if all(part.kind is not Kind.REFERENCE or "$" in part.text for part in parts):
-            return parts
-        return take_apart(MovableFormula(join(parts), 1, 1).at(row, col))
+        text = join(parts)
+        moved = MovableFormula(text, 1, 1).at(row, col)
+        return parts if moved == text else take_apart(moved)
 
-
-def uses_names(parts: Sequence[Part]) -> bool:
-    """Whether a formula declares variables of its own, which are no defined names."""
-    return any(
-        part.kind is Kind.OPEN and part.text.upper().rsplit(".", 1)[-1] in ("LET(", "LAMBDA(")
-        for part in parts
-    )
+    def direct_calls(self, parts: Sequence[Part], sheet: str) -> list[str]:
+        """The TB_ functions called in a formula itself and in the names it uses, one level deep."""
+        found = calls(parts)
+        for part in parts:
+            name = self.find(part.text, sheet) if part.kind is Kind.REFERENCE else None
+            if name is not None and self.calling(name):
+                found += calls(self.parts(name))
+        return found

@@ -133,7 +133,7 @@ class Settlement:
         if error_word(self.run.raw(node)) != "Spill" and not self._meets_others(area, node):
             return None
         rows, cols = area.grid.shape
-        place = self._obstacle_at(node, own)
+        place = self._obstacle_at(node, own) + " is not free"
         return CellError(
             "VALUE", f"#SPILL!: the result needs {rows} rows by {cols} columns; {place} is not free"
         )
