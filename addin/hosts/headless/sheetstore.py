@@ -216,7 +216,7 @@ def _same(cell: CellMark, parts: re.Match[bytes], kind: str, text: str | None) -
     """Whether a cell already holds a value, so that its bytes can stay."""
     old: bytes | None = parts["vtext"]
     if text is None:
-        return not old and parts["is"] is None
+        return not old and parts["is"] is None and cell.type != "str"  # an empty text is a value
     if not old or cell.type != (kind or "n") or b" vm" in cell.attrs:
         return False
     if old == text.encode():

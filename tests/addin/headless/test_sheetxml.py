@@ -297,3 +297,10 @@ def test_random_damage_is_refused_or_harmless() -> None:
             except Refusal:
                 refused += 1
     assert refused > 1000
+
+
+def test_an_empty_text_is_a_value_and_can_be_cleared() -> None:
+    xml = sheet('<row r="1"><c r="A1" t="str"><f>X()</f><v></v></c><c r="B1" t="str"><v></v></c></row>')
+    cleared = store(xml, {(1, 2): None})
+    assert b'<c r="B1" t="str">' not in cleared
+    assert b'<c r="A1" t="str"><f>X()</f><v></v></c>' in cleared
