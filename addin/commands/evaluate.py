@@ -51,8 +51,9 @@ def run(options: argparse.Namespace) -> int:
         package = Package.read(options.book)
         with Progress() as progress:
             evaluation = _evaluator(options.host)(package, progress=progress, fill_native=options.fill)
-        if evaluation.replaced or target.resolve() != options.book.resolve():
-            package.save(target, evaluation.replaced)
+        changed = {part: data for part, data in evaluation.replaced.items() if data != package.part(part)}
+        if changed or target.resolve() != options.book.resolve():
+            package.save(target, changed)
     except Refusal as refusal:
         print(f"{options.book}: {refusal}", file=sys.stderr)
         return 2
