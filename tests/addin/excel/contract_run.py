@@ -26,21 +26,22 @@ class Workbook:
     def __call__(self, name: str) -> Any:
         raise ComError(f"there is no component {name}")
 
-    def Remove(self, component: Any) -> None:  # noqa: N802
+    def Remove(self, component: Any) -> None:
         raise ComError("there is nothing to remove")
 
-    def Import(self, path: str) -> None:  # noqa: N802
+    def Import(self, path: str) -> None:
         self.imported.append(Path(path).read_text())
 
-    def MacroOptions(self, macro: str, **options: Any) -> None:  # noqa: N802
+    def MacroOptions(self, macro: str, **options: Any) -> None:
         self.options.append((macro, options))
 
 
 def main(target: Path) -> None:
     """Write the answers, the VBA that xlwings makes and the texts it registers, as a pickle."""
     xlwings = load_xlwings()
-    from thrustbook.addin.hosts.excel.udfs import MODULE
     from xlwings.com_server import XLPython
+
+    from thrustbook.addin.hosts.excel.udfs import MODULE
 
     from .cases import all_cases
 
