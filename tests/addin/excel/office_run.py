@@ -63,6 +63,7 @@ def _work(context, job):
             cell.setFormula(value)
         else:
             cell.setValue(value)
+    shown = {a: sheet.getCellRangeByName(a).getString() for a in job["read"]}
     provider = document.getScriptProvider()
     answers = []
     for name in job["calls"]:
@@ -71,7 +72,6 @@ def _work(context, job):
             answers.append(provider.getScript(address).invoke((), (), ())[0])
         except Exception as error:
             answers.append(f"FAULT {error}")
-    shown = {a: sheet.getCellRangeByName(a).getString() for a in job["read"]}
     document.close(True)
     return {"answers": answers, "shown": shown}
 
