@@ -10,6 +10,7 @@ from collections.abc import Sequence
 
 COMMANDS = {
     "evaluate": "evaluate every formula of a workbook and store the values",
+    "check": "find what a checker should look at: stale values, odd formulas, units, physics",
     "new": "make a calculation workbook from a template",
     "functions": "list the worksheet functions, or describe one",
     "doctor": "tell what is installed and which hosts are available",
@@ -20,7 +21,10 @@ EXIT_OK, EXIT_FINDINGS, EXIT_REFUSED = 0, 1, 2
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
-    """Run the command line; gives 0 for success, 1 for failed cells or findings, 2 for a refusal."""
+    """Run the command line; gives 0 for success, 1 for failed cells or findings, 2 for a refusal.
+
+    ``check`` gives 3 where a finding is an error.
+    """
     given = list(sys.argv[1:] if arguments is None else arguments)
     parser = argparse.ArgumentParser(
         prog="thrustbook",

@@ -5,7 +5,7 @@ from __future__ import annotations
 import functools
 import hashlib
 from collections.abc import Sequence
-from importlib import metadata
+from importlib import metadata, resources
 
 import numpy as np
 
@@ -88,11 +88,23 @@ def catalogue_version() -> str:
     return digest.hexdigest()[:12]
 
 
+@functools.cache
+def engine_version() -> str:
+    """Give a fingerprint of the engine: it changes whenever one of its sources does."""
+    digest = hashlib.sha256()
+    folder = resources.files("thrustbook.engine")
+    for source in sorted((f for f in folder.iterdir() if f.name.endswith(".py")), key=lambda f: f.name):
+        # The end of line that a checkout chose is no change of the engine.
+        digest.update(source.name.encode() + b"\0" + source.read_bytes().replace(b"\r\n", b"\n") + b"\0")
+    return digest.hexdigest()[:12]
+
+
 def version(args: Sequence[Cell]) -> Cell:
-    """TB_VERSION: product, catalogue or engine version as text; all of them when empty."""
+    """TB_VERSION: product, catalogue, engine or numpy version as text; all of them when empty."""
     parts = {
         "product": product_version(),
         "catalogue": catalogue_version(),
+        "engine": engine_version(),
         "numpy": np.__version__,
     }
     if not args or is_blank(args[0]):

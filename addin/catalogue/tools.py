@@ -61,14 +61,14 @@ ROWS = (
     Row(
         name="TB_VERSION",
         family=FAMILY,
-        summary="Tells the version of the product, of the catalogue and of numpy.",
+        summary="Tells the version of the product, of the catalogue, of the engine and of numpy.",
         kind="tool",
         has_units=False,
         args=(
             Arg(
                 name="what",
                 role="text",
-                text='"product", "catalogue" or "numpy"',
+                text='"product", "catalogue", "engine" or "numpy"',
                 empty="all of them",
                 required=False,
             ),

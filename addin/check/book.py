@@ -1,0 +1,217 @@
+"""A workbook as the rules see it: formulas, recomputed values, calls, and who reads whom."""
+
+from __future__ import annotations
+
+from bisect import bisect_left, bisect_right
+from collections.abc import Callable, Iterator
+from functools import cached_property
+
+from ..cells import Scalar
+from ..hosts.headless.a1 import to_a1
+from ..hosts.headless.dependency import Reference
+from ..hosts.headless.formulas import Kind, Unreadable, take_apart
+from ..hosts.headless.host import Functions, Host
+from ..hosts.headless.model import Model, Node
+from ..hosts.headless.package import Package
+from ..hosts.headless.results import Results
+from ..hosts.headless.settle import Settlement
+from ..hosts.headless.sheetxml import stored_values
+from .calls import Call, Recorder, read_calls
+from .labels import Surroundings
+from .relative import moving, relative_form
+
+Progress = Callable[[str, int, int], None]
+Place = tuple[int, int, int]
+"""Sheet (from 0), row and column (from 1)."""
+
+
+class Book:
+    """One evaluated workbook. Nothing in it is ever written.
+
+    Raises :class:`~thrustbook.addin.hosts.headless.refusals.Refusal` when the embedded
+    evaluator gives up on the workbook.
+    """
+
+    def __init__(self, package: Package, progress: Progress | None = None) -> None:
+        self.package = package
+        self.progress = progress
+        self.recorder = Recorder(Functions.of_catalogue())
+        self.model = Model(package, self.recorder.functions, progress)
+        self.settlement = Settlement(self.model, Host(self.recorder.functions, self._ticker()))
+        self.settlement.settle()
+        self.affected = self.settlement.affected()
+        computed = [n.index for n in self.model.nodes if n.index not in self.settlement.kept]
+        self.results = Results(self.settlement, computed)
+
+    def _ticker(self) -> Callable[[], None] | None:
+        progress, total, done = self.progress, sum(len(n.calls) for n in self.model.nodes), 0
+        if progress is None:
+            return None
+
+        def tick() -> None:
+            nonlocal done
+            done += 1
+            if done & 255 == 0:
+                progress("evaluate", min(done, total), total)
+
+        return tick
+
+    def tell(self, stage: str, done: int, total: int) -> None:
+        """Show how far the work is."""
+        if self.progress is not None:
+            self.progress(stage, done, total)
+
+    def sheet(self, number: int) -> str:
+        """The name of a sheet."""
+        return self.model.sheet_names[number]
+
+    def name(self, place: Place) -> str:
+        """``Sheet!B3``."""
+        return f"{self.sheet(place[0])}!{to_a1(*place[1:])}"
+
+    @cached_property
+    def stored(self) -> list[dict[tuple[int, int], Scalar]]:
+        """For each sheet what the file holds in its cells, formulas or not."""
+        package = self.package
+        return [stored_values(package.part(s.part), package.shared_strings) for s in package.sheets]
+
+    @cached_property
+    def values(self) -> list[dict[tuple[int, int], Scalar]]:
+        """For each sheet the values of its cells, recomputed where they can be."""
+        out = [dict(cells) for cells in self.stored]
+        for index, value in self.results.values.items():
+            node = self.model.nodes[index]
+            grid = self.results.grids.get(index)
+            sheet = out[node.sheet]
+            if grid is None:
+                sheet[node.cell.row, node.cell.col] = value
+                continue
+            for row, line in enumerate(grid.tolist(), node.cell.row):
+                for col, item in enumerate(line, node.cell.col):
+                    sheet[row, col] = item
+        return out
+
+    def value(self, place: Place) -> Scalar:
+        """The value of one cell, None where it is empty."""
+        return self.values[place[0]].get(place[1:])
+
+    @cached_property
+    def calls(self) -> list[Call]:
+        """Every TB_ call of every formula that can be computed, with its arguments."""
+        return list(read_calls(self))
+
+    @cached_property
+    def calls_of(self) -> dict[int, list[Call]]:
+        """The calls by formula."""
+        out: dict[int, list[Call]] = {}
+        for call in self.calls:
+            out.setdefault(call.node.index, []).append(call)
+        return out
+
+    @cached_property
+    def signatures(self) -> dict[int, str]:
+        """Formula -> its relative form: the same for formulas that were filled down or across."""
+        return {node.index: relative_form(node) for node in self.model.nodes if node.cell.kind != "table"}
+
+    @cached_property
+    def _by_column(self) -> dict[tuple[int, int], tuple[list[int], list[Node]]]:
+        """(sheet, column) -> rows of its formulas, and the formulas."""
+        sorted_nodes = sorted(self.model.nodes, key=lambda n: (n.sheet, n.cell.col, n.cell.row))
+        out: dict[tuple[int, int], tuple[list[int], list[Node]]] = {}
+        for node in sorted_nodes:
+            rows, nodes = out.setdefault((node.sheet, node.cell.col), ([], []))
+            rows.append(node.cell.row)
+            nodes.append(node)
+        return out
+
+    def formulas_in(self, area: Reference) -> Iterator[Node]:
+        """The formulas that stand in an area."""
+        if area.r1 == area.r2 and area.c1 == area.c2:
+            node = self.model.at.get((area.sheet, area.r1, area.c1))
+            if node is not None:
+                yield node
+                return
+        elif area.c2 - area.c1 > 200:
+            for (sheet, col), column in self._by_column.items():
+                if sheet == area.sheet and area.c1 <= col <= area.c2:
+                    yield from _between(column, area)
+        else:
+            for col in range(area.c1, area.c2 + 1):
+                yield from _between(self._by_column.get((area.sheet, col), ([], [])), area)
+        for node in self._wide:
+            r1, c1, r2, c2 = node.extent()
+            meets = r1 <= area.r2 and area.r1 <= r2 and c1 <= area.c2 and area.c1 <= c2
+            if node.sheet == area.sheet and meets:
+                yield node
+
+    def in_area(self, place: Place) -> bool:
+        """Whether a cell is filled by an array formula."""
+        sheet, row, col = place
+        return any(n.sheet == sheet and _holds(n.extent(), row, col) for n in self._wide)
+
+    def relative_references(self, node: Node) -> Iterator[tuple[Reference, bool, bool]]:
+        """The single cells that a formula refers to; whether each moves when filled down, or across."""
+        try:
+            parts = take_apart(node.cell.text)
+        except Unreadable:
+            return
+        for part in parts:
+            moves = moving(part.text) if part.kind is Kind.REFERENCE else None
+            if moves is not None:
+                for ref in self.model.references([part], node):
+                    yield ref, *moves
+
+    @cached_property
+    def _wide(self) -> list[Node]:
+        return [n for n in self.model.nodes if n.cell.kind in ("array", "dynamic")]
+
+    @cached_property
+    def around(self) -> Surroundings:
+        """Labels, headings and units written around cells."""
+        return Surroundings(self)
+
+    @cached_property
+    def feeding(self) -> tuple[set[int], set[Reference]]:
+        """What TB_ cells read, however far up: formulas and areas."""
+        formulas: set[int] = set()
+        areas: set[Reference] = set()
+        waiting = [node for node in self.model.nodes if node.calls]
+        while waiting:
+            for ref in waiting.pop().references:
+                if ref in areas:
+                    continue
+                areas.add(ref)
+                for node in self.formulas_in(ref):
+                    if node.index not in formulas:
+                        formulas.add(node.index)
+                        waiting.append(node)
+        return formulas, areas
+
+    @cached_property
+    def related(self) -> set[int]:
+        """Formulas that call a TB_ function, depend on one that does, or feed one."""
+        return self.affected | self.feeding[0]
+
+    @cached_property
+    def circular(self) -> tuple[list[list[Node]], set[int]]:
+        """The circles of formulas that refer to themselves, and all formulas spoilt by them."""
+        from .circles import circles
+
+        return circles(self)
+
+    @cached_property
+    def unclosed(self) -> dict[int, tuple[Call, str]]:
+        """Formula -> its call whose flows do not close, and what the engine says of it."""
+        from .unclosed import unclosed
+
+        return unclosed(self)
+
+
+def _holds(extent: tuple[int, int, int, int], row: int, col: int) -> bool:
+    r1, c1, r2, c2 = extent
+    return r1 <= row <= r2 and c1 <= col <= c2
+
+
+def _between(column: tuple[list[int], list[Node]], area: Reference) -> list[Node]:
+    rows, nodes = column
+    return nodes[bisect_left(rows, area.r1) : bisect_right(rows, area.r2)]

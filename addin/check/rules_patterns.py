@@ -1,0 +1,208 @@
+"""Patterns: formulas that were filled down or across, and the cell among them that is not like the others."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from ..figures import figure
+from ..hosts.headless.dependency import Reference
+from ..hosts.headless.model import Node
+from .book import Book, Place
+from .gather import Remark, figures, joined
+from .types import Finding, Rule, Severity
+
+_LONG = 3
+"""Formulas in a row, all alike, that make a run which the next cell is expected to continue."""
+_GAP = 50
+"""Cells of numbers inside a run of formulas that are still taken for typed over."""
+_DOWN, _ACROSS = (1, 0), (0, 1)
+
+
+def overtyped(book: Book) -> Iterator[Finding]:
+    """P01: a number stands where the formulas around it say that a formula belongs."""
+    found: dict[Place, Node] = {}
+    for step in (_DOWN, _ACROSS):
+        for run in _runs(book, step):
+            if run[0].index in book.affected and not run[0].area:
+                for place in _numbers_after(book, run, step):
+                    found.setdefault(place, run[-1])
+    remarks = []
+    for (sheet, row, col), like in found.items():
+        value = book.value((sheet, row, col))
+        remarks.append(
+            Remark(
+                book.sheet(sheet),
+                row,
+                col,
+                book.signatures[like.index],
+                f"the number {figure(value, 9)} stands in place of the formula",
+                f"{like.a1} and the cells in line with it hold a formula, ={like.cell.text}.",
+                figures(value),
+            )
+        )
+    yield from joined("P01", Severity.ERROR, remarks)
+
+
+def _runs(book: Book, step: tuple[int, int]) -> Iterator[list[Node]]:
+    """Neighbouring formulas of one relative form, down or across; single ones too."""
+    down, across = step
+    order = (
+        (lambda n: (n.sheet, n.cell.col, n.cell.row))
+        if down
+        else (lambda n: (n.sheet, n.cell.row, n.cell.col))
+    )
+    run: list[Node] = []
+    for node in sorted((n for n in book.model.nodes if n.cell.kind == "plain"), key=order):
+        if run:
+            last = run[-1]
+            next_to = (node.sheet, node.cell.row, node.cell.col) == (
+                last.sheet,
+                last.cell.row + down,
+                last.cell.col + across,
+            )
+            if next_to and book.signatures[node.index] == book.signatures[last.index]:
+                run.append(node)
+                continue
+            yield run
+        run = [node]
+    if run:
+        yield run
+
+
+def _numbers_after(book: Book, run: list[Node], step: tuple[int, int]) -> Iterator[Place]:
+    """Numbers that interrupt a run, or that stand at either end of a long one with inputs of their own."""
+    last, first = run[-1], run[0]
+    gap: list[Place] = []
+    place = _moved(_place(last), step)
+    while place is not None and len(gap) <= _GAP and _typed_number(book, place):
+        gap.append(place)
+        place = _moved(place, step)
+    if not gap:
+        after: list[Place] = []
+    else:
+        beyond = book.model.at.get(place) if place is not None else None
+        if beyond is not None and book.signatures.get(beyond.index) == book.signatures[last.index]:
+            # Input and formula in turn, one below the other, are no run with a hole in it.
+            if len(run) > 1 or not any(_reads(beyond, p) for p in gap):
+                yield from gap
+            return
+        after = [gap[0]] if len(gap) == 1 else []
+    back = (-step[0], -step[1])
+    ahead = _moved(_place(first), back)
+    before = [ahead] if ahead is not None and _typed_number(book, ahead) else []
+    if before and _typed_number(book, _moved(before[0], back)):
+        before = []
+    if len(run) >= _LONG:
+        for place in after + before:
+            if _has_inputs(book, last, place):
+                yield place
+
+
+def _reads(node: Node, place: Place) -> bool:
+    return any(_holds(ref, place) for ref in node.references)
+
+
+def _sums(node: Node, place: Place) -> bool:
+    """Whether a formula reads a range with a cell in it: a sum, or the like, of the cells in line with it."""
+    ranges = [ref for ref in node.references if (ref.r1, ref.c1) != (ref.r2, ref.c2)]
+    return any(_holds(ref, place) for ref in ranges)
+
+
+def _holds(ref: Reference, place: Place) -> bool:
+    return ref.sheet == place[0] and ref.r1 <= place[1] <= ref.r2 and ref.c1 <= place[2] <= ref.c2
+
+
+def _place(node: Node) -> Place:
+    return node.sheet, node.cell.row, node.cell.col
+
+
+def _moved(place: Place, step: tuple[int, int]) -> Place | None:
+    row, col = place[1] + step[0], place[2] + step[1]
+    return (place[0], row, col) if row >= 1 and col >= 1 else None
+
+
+def _typed_number(book: Book, place: Place | None) -> bool:
+    if place is None or place in book.model.at:
+        return False
+    value = book.stored[place[0]].get(place[1:])
+    return isinstance(value, float) and not book.in_area(place)
+
+
+def _has_inputs(book: Book, like: Node, place: Place) -> bool:
+    """Whether the formula, filled into a place, would find its inputs there."""
+    row, col = place[1] - like.cell.row, place[2] - like.cell.col
+    moved = [
+        (ref.sheet, ref.r1 + row * moves_down, ref.c1 + col * moves_across)
+        for ref, moves_down, moves_across in book.relative_references(like)
+        if (row and moves_down) or (col and moves_across)
+    ]
+    return bool(moved) and all(p != place and book.value(p) not in (None, "") for p in moved)
+
+
+def odd_formula(book: Book) -> Iterator[Finding]:
+    """P02: a formula that differs from neighbours which are all alike."""
+    for node in book.model.nodes:
+        if node.index not in book.related or node.cell.kind != "plain":
+            continue
+        likes = [like for step in (_DOWN, _ACROSS) if (like := _neighbours(book, node, step)) is not None]
+        if not likes or _agrees_with_any(book, node):
+            continue
+        like = likes[0]
+        if not node.calls and _sums(node, _place(like)):
+            continue
+        other_function = node.calls and sorted(like.calls) != sorted(node.calls)
+        yield Finding(
+            "P02",
+            Severity.NOTE if other_function else Severity.WARNING,
+            book.sheet(node.sheet),
+            node.a1,
+            f"={node.cell.text} differs from its neighbours",
+            f"{like.a1} and the cells in line with it hold ={like.cell.text}, which reads other cells "
+            "or other constants from there.",
+            book.signatures[node.index],
+        )
+
+
+def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
+    """A neighbour that stands for a run which the formula interrupts or ends; None without such a run."""
+    own = book.signatures[node.index]
+    back = (-step[0], -step[1])
+    one, two = _next(book, node, back), _next(book, node, step)
+    for near, far in ((one, two), (two, one)):
+        if near is None or book.signatures[near.index] == own:
+            continue
+        form = book.signatures[near.index]
+        if far is not None and book.signatures[far.index] == form:
+            return near
+        if far is None and sorted(near.calls) == sorted(node.calls) and node.calls:
+            way = back if near is one else step
+            run, at = 1, near
+            while run < _LONG:
+                following = _next(book, at, way)
+                if following is None or book.signatures[following.index] != form:
+                    break
+                run, at = run + 1, following
+            if run >= _LONG:
+                return near
+    return None
+
+
+def _next(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
+    place = _moved(_place(node), step)
+    found = book.model.at.get(place) if place is not None else None
+    return found if found is not None and found.cell.kind == "plain" else None
+
+
+def _agrees_with_any(book: Book, node: Node) -> bool:
+    own = book.signatures[node.index]
+    for step in ((1, 0), (-1, 0), (0, 1), (0, -1)):
+        other = _next(book, node, step)
+        if other is not None and book.signatures[other.index] == own:
+            return True
+    return False
+
+
+RULES = (
+    Rule("P01", "number typed over a formula", overtyped),
+    Rule("P02", "formula differs from its neighbours", odd_formula),
+)

@@ -1,0 +1,204 @@
+"""Values: what the file holds against what the formulas give."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+
+from ..cells import CellError, Scalar
+from ..figures import figure
+from ..hosts.headless.elsewhere import elsewhere
+from ..hosts.headless.model import Node
+from ..hosts.headless.reasons import reason
+from .book import Book
+from .gather import Remark, figures, joined
+from .types import Finding, Rule, Severity
+
+RELATIVE = 1e-9
+"""Difference between stored and recomputed value that is accepted, as a fraction of the value."""
+OF_LARGEST = 1e-12
+"""The same as a fraction of the largest number in the same result: rounding of what should be zero."""
+_VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
+
+
+def _cells(book: Book) -> Iterator[tuple[Node, int, int, Scalar, Scalar, float]]:
+    """Each cell of each computed formula: stored value, new value, largest number of its result."""
+    for index, new in book.results.values.items():
+        node = book.model.nodes[index]
+        cell, grid = node.cell, book.results.grids.get(index)
+        if grid is None:
+            yield node, cell.row, cell.col, cell.value, new, abs(new) if isinstance(new, float) else 0.0
+            continue
+        columns = [[v for v in column if isinstance(v, float)] for column in grid.T.tolist()]
+        largest = [max(map(abs, column), default=0.0) for column in columns]
+        stored = book.stored[node.sheet]
+        for row, line in enumerate(grid.tolist(), cell.row):
+            for j, item in enumerate(line):
+                col = cell.col + j
+                yield node, row, col, stored.get((row, col)), item, largest[j]
+
+
+def agree(old: Scalar, new: Scalar, largest: float) -> bool:
+    """Whether a stored value is the recomputed one, within the tolerance."""
+    if isinstance(old, CellError) and isinstance(new, CellError):
+        return old.kind == new.kind
+    if isinstance(old, bool) or isinstance(new, bool):
+        return old is new
+    if isinstance(old, float) and isinstance(new, float):
+        size = max(abs(old), abs(new))
+        return abs(old - new) <= RELATIVE * size + OF_LARGEST * max(largest, 1e-3)
+    return old == new
+
+
+def _volatile(book: Book) -> set[int]:
+    """Formulas that change by themselves, and all that depend on them."""
+    seeds = [n.index for n in book.model.nodes if any(f"{w}(" in n.cell.text.upper() for w in _VOLATILE)]
+    return book.model.graph().dependents(seeds) if seeds else set()
+
+
+def stale(book: Book) -> Iterator[Finding]:
+    """V01: the value in the file is not what the formula gives."""
+    skip = _volatile(book) | book.circular[1]
+    remarks: dict[Severity, list[Remark]] = {Severity.ERROR: [], Severity.WARNING: []}
+    for node, row, col, old, new, largest in _cells(book):
+        if node.index in skip or old is None or agree(old, new, largest):
+            continue
+        severity = Severity.ERROR if node.index in book.related else Severity.WARNING
+        apart = _apart(old, new)
+        remarks[severity].append(
+            Remark(
+                sheet=book.sheet(node.sheet),
+                row=row,
+                col=col,
+                kind=book.signatures[node.index],
+                what=f"the file holds {figure(old, 9)}, the formula gives {figure(new, 9)}{apart}",
+                why="The value was not recalculated after a change, or was edited in the file "
+                f"(accepted: {RELATIVE:g} of the value).",
+                basis=f"{figures(old)} {figures(new)}",
+            )
+        )
+    for severity, found in remarks.items():
+        yield from joined("V01", severity, found)
+
+
+def _apart(old: Scalar, new: Scalar) -> str:
+    if isinstance(old, float) and isinstance(new, float) and new:
+        share = abs(old - new) / abs(new)
+        return f" ({share:.2g} of it apart)" if math.isfinite(share) else ""
+    return ""
+
+
+def missing(book: Book) -> Iterator[Finding]:
+    """V02: a TB_ cell, or one that depends on one, holds no value in the file."""
+    remarks = []
+    for node, row, col, old, new, _ in _cells(book):
+        if old is None and new != "" and node.index in book.affected and node.index not in book.circular[1]:
+            remarks.append(
+                Remark(
+                    book.sheet(node.sheet),
+                    row,
+                    col,
+                    "",
+                    f"the file holds no value, the formula gives {figure(new, 9)}",
+                    "Whoever opens the file without the add-in sees nothing here; "
+                    "thrustbook evaluate stores the values.",
+                    figures(new),
+                )
+            )
+    yield from joined("V02", Severity.WARNING, remarks)
+
+
+def errors(book: Book) -> Iterator[Finding]:
+    """V03: a TB_ cell, or one that depends on one, is an error; only where the error begins."""
+    wrong = {
+        index
+        for index in book.affected - book.settlement.kept.keys() - book.circular[1] - book.unclosed.keys()
+        if isinstance(book.results.values.get(index), CellError) or _error_rows(book, index)
+    }
+    remarks = []
+    elsewhere_wrong = wrong | book.unclosed.keys()
+    for index in sorted(wrong):
+        node = book.model.nodes[index]
+        sources = {n.index for ref in node.references for n in book.formulas_in(ref)} - {index}
+        if sources & elsewhere_wrong:
+            continue
+        rows = _error_rows(book, index)
+        if rows:
+            for row, col, error in rows:
+                text = error.message or reason(book.settlement, node, book.results.values)
+                remarks.append(_error(book, node, row, col, error, text))
+            continue
+        value = book.results.values[index]
+        assert isinstance(value, CellError)
+        text = value.message or reason(book.settlement, node, book.results.values)
+        remarks.append(_error(book, node, node.cell.row, node.cell.col, value, text))
+    yield from joined("V03", Severity.ERROR, remarks)
+
+
+def _error(book: Book, node: Node, row: int, col: int, error: CellError, text: str) -> Remark:
+    why = text[:1].upper() + text[1:] + "."
+    return Remark(
+        book.sheet(node.sheet), row, col, text, f"the formula gives {error}", why, f"{error} {text}"
+    )
+
+
+def _error_rows(book: Book, index: int) -> list[tuple[int, int, CellError]]:
+    """The first error of each row of a formula that fills an area."""
+    grid = book.results.grids.get(index)
+    if grid is None:
+        return []
+    cell = book.model.nodes[index].cell
+    out = []
+    for row, line in enumerate(grid.tolist(), cell.row):
+        for col, item in enumerate(line, cell.col):
+            if isinstance(item, CellError):
+                out.append((row, col, item))
+                break
+    return out
+
+
+def not_recomputed(book: Book) -> Iterator[Finding]:
+    """V04: a formula in the chain of a TB_ cell could not be recomputed here."""
+    remarks: dict[Severity, list[Remark]] = {Severity.WARNING: [], Severity.NOTE: []}
+    for index, why in book.settlement.kept.items():
+        node = book.model.nodes[index]
+        if index in book.circular[1] or (node.cell.kind == "table" and index not in book.related):
+            continue
+        severity = Severity.WARNING if index in book.related else Severity.NOTE
+        remarks[severity].append(
+            Remark(
+                book.sheet(node.sheet),
+                node.cell.row,
+                node.cell.col,
+                why,
+                f"not recomputed: {why}",
+                "The value in the file was taken as it stands and must be checked by other means.",
+                f"{why} {node.cell.text}",
+            )
+        )
+    for severity, found in remarks.items():
+        yield from joined("V04", severity, found)
+
+
+def not_checked(book: Book) -> Iterator[Finding]:
+    """V05: a TB_ formula outside the cells, in a conditional format or a validation."""
+    for sheet in book.package.sheets:
+        for where, formula in elsewhere(book.package.part(sheet.part)):
+            yield Finding(
+                "V05",
+                Severity.NOTE,
+                sheet.name,
+                where.split(" ")[0],
+                f"not checked: {formula}",
+                "The formula stands in a conditional format or a validation, which is not evaluated.",
+                f"{where} {formula}",
+            )
+
+
+RULES = (
+    Rule("V01", "stored value differs from recomputation", stale),
+    Rule("V02", "no value stored", missing),
+    Rule("V03", "error value", errors),
+    Rule("V04", "formula not recomputed", not_recomputed),
+    Rule("V05", "formula outside the cells", not_checked),
+)
