@@ -134,9 +134,7 @@ class Settlement:
             return None
         rows, cols = area.grid.shape
         place = self._obstacle_at(node, own) + " is not free"
-        return CellError(
-            "VALUE", f"#SPILL!: the result needs {rows} rows by {cols} columns; {place} is not free"
-        )
+        return CellError("VALUE", f"#SPILL!: the result needs {rows} rows by {cols} columns; {place}")
 
     def _meets_others(self, area: Area, node: Node) -> bool:
         """Whether anything but its own upper left cell lies under a large result without tiles."""

@@ -23,7 +23,7 @@ class FormulaCell(NamedTuple):
     ``row`` and ``col`` count from 1. ``text`` has no equals sign and is that of this
     cell also when the file holds it once for a group of cells. ``kind`` is plain, array,
     dynamic (an array that spills by itself) or table (a what-if data table, whose text is
-    empty). ``ref`` is the extent of an array. ``value`` is the stored value, or None.
+    empty). ``ref`` is the extent of an array or of a data table. ``value`` is the stored value, or None.
     """
 
     row: int
@@ -150,6 +150,7 @@ def _raw_formulas(frame: Frame) -> list[_RawFormula]:
             name = "dynamic" if attributes(cell.attrs).get("cm", "0") != "0" else "array"
         elif kind == "dataTable":
             name = "table"
+            ref = _extent(given["ref"]) if "ref" in given else None
         elif kind == "shared" and "si" in given:
             name, group = "plain", given["si"]
             if text and ("ref" in given or group not in masters):

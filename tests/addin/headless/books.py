@@ -65,7 +65,7 @@ def change_part(path: Path, part: str, edit: Callable[[str], str]) -> None:
 
 
 def with_values(values: Mapping[str, str]) -> Callable[[str], str]:
-    """An edit that stores values in formula cells: {"A1": '<v>5</v>'} or with t in front: 't="str"|<v>x</v>'."""
+    """An edit that stores values in formula cells: {"A1": "<v>5</v>"}, or 't="str"|<v>x</v>' for a text."""
 
     def edit(xml: str) -> str:
         for place, value in values.items():
