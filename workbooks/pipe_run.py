@@ -321,7 +321,8 @@ def _thrusts(ws: Worksheet) -> None:
 def _node(node: str, result: str) -> str:
     """Formula that looks a result of the run up by node."""
     letters = get_column_letter((THRUST + HYDRAULICS).index(result) + 1)
-    look = f"MATCH(\"{node}\",'Run data'!$A${FIRST}:$A${LAST},0)"
+    # Looked up among the inputs: Calc does not find text in the array of an add-in function.
+    look = f'MATCH("{node}",Inputs!$A${NODE_ROW}:$A${NODE_ROW + len(NODES) - 1},0)'
     return f"=INDEX('Run data'!${letters}${FIRST}:${letters}${LAST},{look})"
 
 

@@ -1,8 +1,8 @@
 """Evaluation of a workbook in an office started for that alone.
 
-The request is a JSON file: the workbook to load, the areas to read, the file for the
-answer, and copies to store. The answer is JSON too: a list of rows for each area, an
-error as {"error": number}.
+The request is a JSON file: the workbook to load, the formulas to read, the file for
+the answer, and copies to store. The answer is JSON too: for each formula its rows of
+values, an error as {"error": number, "why": text}.
 """
 
 from __future__ import annotations
@@ -16,7 +16,13 @@ from urllib.parse import unquote
 from . import books
 
 _NEVER = 0  # MacroExecutionMode.NEVER_EXECUTE, and UpdateDocMode.NO_UPDATE
-_SMALL = 64
+SMALL = 64
+"""Cells of an area that are looked at for TRUE and FALSE, which the office shows but does not tell."""
+MOST_REASONS = 200
+SCRATCH = (1000, 0)
+"""Column and row of a cell beside everything that people write."""
+OF_CELLS = 1 | 2 | 4 | 16
+"""com.sun.star.sheet.CellFlags: VALUE, DATETIME, STRING, FORMULA"""
 _REPLACE = {"xlsx": "Calc MS Excel 2007 XML", "ods": "calc8", "pdf": "calc_pdf_Export"}
 
 
@@ -67,10 +73,19 @@ def evaluate(office: Any, request: Dict[str, Any], to_url: Any) -> Dict[str, Any
         linked = books.relink(document)
         document.calculateAll()
         sheets = document.getSheets()
-        areas = [read_area(sheets.getByName(a[0]), *a[1:]) for a in request["areas"]]
+        wanted = [Formula(sheets.getByName(f["sheet"]), f) for f in request["formulas"]]
+        spilling = [formula for formula in wanted if formula.spills]
+        for formula in spilling:
+            formula.fit()
+        if spilling:
+            document.calculateAll()
+        answers = [formula.read() for formula in wanted]
+        left = MOST_REASONS
+        for formula, rows in zip(wanted, answers):
+            left -= formula.explain(rows) if left > 0 else 0
         for target in request.get("copies", ()):
             store(document, to_url(target), target.rsplit(".", 1)[-1].lower())
-        return {"linked": linked, "areas": areas}
+        return {"linked": linked, "formulas": answers}
     finally:
         document.close(True)
 
@@ -98,17 +113,77 @@ def _property(name: str, value: Any) -> Any:
     return made
 
 
-def read_area(sheet: Any, row1: int, column1: int, row2: int, column2: int) -> List[List[Any]]:
-    """Read the values of an area, given by its rows and columns from 1 on."""
-    area = sheet.getCellRangeByPosition(column1 - 1, row1 - 1, column2 - 1, row2 - 1)
-    rows = [list(line) for line in area.getDataArray()]
-    small = len(rows) * len(rows[0]) <= _SMALL
-    for i, line in enumerate(rows):
-        for j, value in enumerate(line):
-            if value is None:
-                line[j] = {"error": area.getCellByPosition(j, i).getError()}
-            elif small and (value == 1.0 or value == 0.0):
-                shown = area.getCellByPosition(j, i).getString()
-                if shown in ("TRUE", "FALSE"):
-                    line[j] = shown == "TRUE"
-    return rows
+class Formula:
+    """One formula of the request: its sheet, and the area that it fills."""
+
+    def __init__(self, sheet: Any, wanted: Dict[str, Any]) -> None:
+        self.sheet = sheet
+        self.row, self.column, self.row2, self.column2 = (n - 1 for n in wanted["area"])
+        self.spills = wanted.get("spills", False)
+        self.call = wanted.get("call", "")
+        self.blocked = ""
+
+    def _area(self) -> Any:
+        return self.sheet.getCellRangeByPosition(self.column, self.row, self.column2, self.row2)
+
+    def _expression(self) -> str:
+        text = self.sheet.getCellByPosition(self.column, self.row).getFormula()
+        return text.strip("{}")[1:]  # type: ignore[no-any-return]
+
+    def _try(self, formula: str) -> Any:
+        """Give the cell in which a formula was tried; the caller clears it."""
+        cell = self.sheet.getCellByPosition(*SCRATCH)
+        cell.setFormula("=" + formula)
+        return cell
+
+    def fit(self) -> None:
+        """Give an array formula that spills the extent of its result, where the cells for it are free."""
+        expression = self._expression()
+        size = []
+        for count in ("ROWS", "COLUMNS"):
+            cell = self._try("SUMPRODUCT(%s(%s))" % (count, expression))
+            size.append(0 if cell.getError() else int(cell.getValue()))
+            cell.setFormula("")
+        if 0 in size or size == [self.row2 - self.row + 1, self.column2 - self.column + 1]:
+            return
+        old = self._area()
+        row2, column2 = self.row + size[0] - 1, self.column + size[1] - 1
+        old.clearContents(OF_CELLS)
+        new = self.sheet.getCellRangeByPosition(self.column, self.row, column2, row2)
+        taken = new.queryContentCells(OF_CELLS)
+        if taken.getCount():
+            self.blocked = taken.getByIndex(0).getCellByPosition(0, 0).AbsoluteName
+            old.setArrayFormula("=" + expression)
+            return
+        new.setArrayFormula("=" + expression)
+        self.row2, self.column2 = row2, column2
+
+    def read(self) -> Any:
+        """Read the values of the area."""
+        if self.blocked:
+            return {"blocked": self.blocked}
+        area = self._area()
+        rows = [list(line) for line in area.getDataArray()]
+        small = len(rows) * len(rows[0]) <= SMALL
+        for i, line in enumerate(rows):
+            for j, value in enumerate(line):
+                if value is None:
+                    line[j] = {"error": area.getCellByPosition(j, i).getError()}
+                elif small and (value == 1.0 or value == 0.0):
+                    shown = area.getCellByPosition(j, i).getString()
+                    if shown in ("TRUE", "FALSE"):
+                        line[j] = shown == "TRUE"
+        return rows
+
+    def explain(self, rows: Any) -> int:
+        """Add the reason to a failed call that is the whole formula; gives how many were added."""
+        first = rows[0][0] if isinstance(rows, list) else None
+        if not self.call or not isinstance(first, dict):
+            return 0
+        inside = self._expression().strip()
+        inside = inside[inside.index("(") + 1 : inside.rindex(")")]
+        cell = self._try('TB_WHY("%s"%s)' % (self.call, ";" + inside if inside.strip() else ""))
+        if not cell.getError():
+            first["why"] = cell.getString()
+        cell.setFormula("")
+        return 1
