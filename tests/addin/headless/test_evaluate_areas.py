@@ -136,7 +136,8 @@ def test_a_plain_formula_shows_the_first_cell_and_leaves_its_neighbours(path: Pa
 
 def test_a_plain_range_means_the_formulas_own_row(path: Path) -> None:
     make(path, {"S": {"A1": 10, "A2": 20, "A3": 30, "B2": "=A1:A3+TB_TWICE(1)",
-                      "C3": "=TB_TWICE(_xlfn.SINGLE(A1:A3))", "D1": "=A1:A3*2", "E1": "=TB_TWICE(D1)"}})  # fmt: skip
+                      "C3": "=TB_TWICE(_xlfn.SINGLE(A1:A3))", "D1": "=A1:A3*2",
+                      "E1": "=TB_TWICE(D1)"}})  # fmt: skip
     evaluate(path)
     assert values(path)["B2"] == 22
     assert values(path)["C3"] == 60

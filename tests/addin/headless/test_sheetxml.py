@@ -38,7 +38,7 @@ def test_formula_kinds() -> None:
         FormulaCell(1, 1, "1+1", "plain", None, 2.0),
         FormulaCell(1, 2, "TB_X(A1)", "array", (1, 2, 2, 3), 1.5),
         FormulaCell(1, 4, 'TB_Y("<A>")', "dynamic", (1, 4, 1, 4), "x"),
-        FormulaCell(2, 1, "", "table", None, 7.0),
+        FormulaCell(2, 1, "", "table", (2, 1, 3, 1), 7.0),
         FormulaCell(2, 2, "NA()", "plain", None, CellError("VALUE", "#SPILL!")),
         FormulaCell(2, 4, " A1 +\n 2", "plain", None, None),
     ]
