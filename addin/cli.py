@@ -11,6 +11,7 @@ from collections.abc import Sequence
 COMMANDS = {
     "evaluate": "evaluate every formula of a workbook and store the values",
     "check": "find what a checker should look at: stale values, odd formulas, units, physics",
+    "longhand": "make a copy with the long-hand working of every cell",
     "new": "make a calculation workbook from a template",
     "functions": "list the worksheet functions, or describe one",
     "doctor": "tell what is installed and which hosts are available",

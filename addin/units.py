@@ -296,6 +296,19 @@ def convert(value: float, source: str, target: str, ambient: float = P_ATM) -> f
     return (value * factor_a + shift) / factor_b
 
 
+@functools.cache
+def known_units(role: str) -> tuple[str, ...]:
+    """List every spelling of a unit that a role takes."""
+    found = []
+    for spelling in _SPELLINGS:
+        try:
+            unit(spelling, role)
+        except UnitError:
+            continue
+        found.append(spelling)
+    return tuple(found)
+
+
 def examples(role: str) -> str:
     """Name a few units of a role for an error message."""
     known = ROLES[role]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from typing import Final
 
@@ -31,7 +31,8 @@ class Line:
 
     label: Content
     target: str
-    given: Sequence[Content | None]
+    given: Callable[[], Sequence[Content | None]]
+    """The arguments, once everything has its place."""
     own: dict[str, str] = field(default_factory=dict)
     """Result -> reference to the cell that shows it."""
 
@@ -57,7 +58,9 @@ class RowSheet:
     tolerance: str
     at: int = FIRST
     places: list[list[dict[str, tuple[int, int]]]] = field(default_factory=list)
-    verdicts: list[list[tuple[int, int]]] = field(default_factory=list)
+    verdicts: list[tuple[int, int]] = field(default_factory=list)
+    """First and last row of each group."""
+    _groups: list[tuple[int, Group]] = field(default_factory=list)
     _raw: dict[str, int] = field(default_factory=dict)
     _column: dict[str, int] = field(default_factory=dict)
     _result: dict[str, int] = field(default_factory=dict)
@@ -125,9 +128,27 @@ class RowSheet:
         sheet.put(FORMULA, col, formula, "headmono")
         sheet.widths.setdefault(col, _NARROW)
 
-    def add(self, group: Group) -> None:
-        """Lay out a group under what is there."""
-        sheet, top = self.sheet, self.at
+    def place(self, group: Group) -> int:
+        """Give a group its place under what is there; the number of the group comes back."""
+        first, last = self.at + 3, self.at + 2 + len(group.lines)
+        self._groups.append((self.at, group))
+        self.places.append([{n: (r, self._result[n]) for n in group.results} for r in range(first, last + 1)])
+        self.verdicts.append((first, last))
+        self.at = last + 2
+        return len(self.places) - 1
+
+    def verdict_area(self, number: int) -> str:
+        """The verdicts of a group, as a formula refers to them."""
+        first, last = self.verdicts[number]
+        return f"{self.sheet.ref(first, self._verdict)}:{fixed(last, self._verdict)}"
+
+    def write(self) -> None:
+        """Put all groups on the sheet."""
+        for top, group in self._groups:
+            self._write(top, group)
+
+    def _write(self, top: int, group: Group) -> None:
+        sheet = self.sheet
         sheet.put(top, 1, group.caption, "block")
         if group.target:
             sheet.links.append(Link(top, 1, group.target))
@@ -146,14 +167,11 @@ class RowSheet:
         for i, line in enumerate(group.lines):
             self._line(top + 3 + i, factors, group, line, shifts)
         first, last = top + 3, top + 2 + len(group.lines)
-        self.places.append([{n: (r, self._result[n]) for n in group.results} for r in range(first, last + 1)])
-        self.verdicts.append([(r, self._verdict) for r in range(first, last + 1)])
         mark = column_letters(self._verdict)
         sheet.verdicts.append(f"{mark}{first}:{mark}{last}")
         for name in group.results:
             mark = column_letters(self._result[name] + 3)
             sheet.verdicts.append(f"{mark}{first}:{mark}{last}")
-        self.at = last + 2
 
     def _line(self, at: int, factors: int, group: Group, line: Line, shifts: dict[str, int]) -> None:
         sheet, row = self.sheet, self.row
@@ -163,7 +181,7 @@ class RowSheet:
             sheet.links.append(Link(at, 2, line.target))
         ambient = self._ambient(at)
         cells: dict[str, str] = {}
-        for arg, given in zip(row.args, line.given, strict=True):
+        for arg, given in zip(row.args, line.given(), strict=True):
             raw, col = self._raw[arg.name], self._column[arg.name]
             if given is not None:
                 sheet.put(at, raw, given, "linked")

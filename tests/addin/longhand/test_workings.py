@@ -45,12 +45,13 @@ class Laid:
                 None if arg.role == "choice" else Conversion.of(unit_set.unit(arg.role)) for arg in row.args
             ]
             results = {r.name: Conversion.of(unit_set.unit(r.role)) for r in row.results}
-            line = Line("", "", [None if c is None else c for c in cells])  # type: ignore[misc]
-            self.rows.add(Group("", "", conversions, results, [line]))
+            line = Line("", "", lambda cells=cells: cells)
+            self.rows.place(Group("", "", conversions, results, [line]))
             leading: list[Cell] = ["all", units] if row.has_result else [units]
             answer = call(row.name, [*leading, *cells])
             self.engine.append(list(answer[0]) if isinstance(answer, np.ndarray) else [answer])
             self.calls.append((units, cells))
+        self.rows.write()
 
     def compare(self, value_at: Any) -> None:
         """Compare every result with the engine's."""

@@ -1,0 +1,56 @@
+"""Making the copy with checking sheets: planned, evaluated, put into the package."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from ..hosts.headless.package import Package
+from ..hosts.headless.refusals import Refusal
+from .book import Book
+from .parts import Addition, Parts
+from .source import Source
+from .summary import Entry
+
+Progress = Callable[[str, int, int], None]
+
+
+class Made:
+    """Checking sheets for a workbook, with their values."""
+
+    def __init__(self, package: Package, progress: Progress | None = None) -> None:
+        from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
+
+        self.package = package
+        source = Source(package, progress)
+        if source.valueless:
+            count = len(source.valueless)
+            raise Refusal(
+                f"{count} formula{'s' if count > 1 else ''} of this workbook hold no value, the first in "
+                f"{source.valueless[0]}. Run thrustbook evaluate --fill first, or save the workbook in the "
+                "spreadsheet program."
+            )
+        self.book = Book(source, progress)
+        self.addition = Addition(package, self.book.sheets)
+        if progress is not None:
+            progress("evaluate", 0, 1)
+        still = {s.part: without_formulas(package.part(s.part)) for s in package.sheets}
+        parts = self.addition.parts(None)
+        extents = {s.name: (s.last_row, s.last_col) for s in self.book.sheets}
+        self.values = evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)
+        if progress is not None:
+            progress("evaluate", 1, 1)
+
+    def parts(self) -> Parts:
+        """The parts of the copy."""
+        return self.addition.parts(self.values)
+
+    def verdicts(self) -> dict[str, list[Entry]]:
+        """The TB_ cells by verdict."""
+        front = self.book.summary.sheet.name
+        return self.book.summary.verdicts(self.book.entries, self.values[front])
+
+    def save(self, target: Path) -> None:
+        """Write the copy."""
+        parts = self.parts()
+        self.package.save(target, parts.replaced, parts.added)

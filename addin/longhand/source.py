@@ -1,0 +1,203 @@
+"""The workbook that is worked: its TB_ cells, its stored values, what its operands mean."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any, NamedTuple
+
+from ..cells import CellError, Scalar
+from ..hosts.headless.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
+from ..hosts.headless.formulas import Kind, Part, Unreadable, call_name, functions, take_apart
+from ..hosts.headless.names import Names, split_sheet
+from ..hosts.headless.package import Package
+from ..hosts.headless.sheetxml import FormulaCell, formula_cells, stored_values
+from ..hosts.headless.tablerefs import Tables
+from .calls import Call, Items, NotWorked, all_calls, render, tree
+from .grid import quoted_sheet
+
+_RANGE = re.compile(
+    r"\$?[A-Za-z]{1,3}\$?[0-9]{1,7}(?::\$?[A-Za-z]{1,3}\$?[0-9]{1,7})?"
+    r"|\$?[A-Za-z]{1,3}:\$?[A-Za-z]{1,3}|\$?[0-9]{1,7}:\$?[0-9]{1,7}"
+)
+
+
+class Area(NamedTuple):
+    """A rectangle of cells."""
+
+    sheet: str
+    r1: int
+    c1: int
+    r2: int
+    c2: int
+
+    @property
+    def shape(self) -> tuple[int, int]:
+        return self.r2 - self.r1 + 1, self.c2 - self.c1 + 1
+
+    def ref(self, i: int, j: int) -> str:
+        """The reference to the cell in row i and column j of the area, from 0."""
+        return f"{quoted_sheet(self.sheet)}!{to_a1(self.r1 + i, self.c1 + j, absolute=True)}"
+
+    def text(self) -> str:
+        first = self.ref(0, 0)
+        if self.shape == (1, 1):
+            return first
+        return f"{first}:{to_a1(self.r2, self.c2, absolute=True)}"
+
+
+@dataclass(slots=True, eq=False)
+class TbCell:
+    """One formula cell with TB_ calls; ``trouble`` says why its formula cannot be read."""
+
+    sheet: str
+    cell: FormulaCell
+    items: Items
+    trouble: str = ""
+
+    @property
+    def a1(self) -> str:
+        return to_a1(self.cell.row, self.cell.col)
+
+    @property
+    def where(self) -> str:
+        """``Calc!G12``, for reading."""
+        return f"{self.sheet}!{self.a1}"
+
+    @property
+    def target(self) -> str:
+        """``'Calc'!G12``, for a hyperlink."""
+        return f"{quoted_sheet(self.sheet)}!{self.a1}"
+
+    @property
+    def calls(self) -> list[Call]:
+        return all_calls(self.items)
+
+
+class Source:
+    """A workbook's formulas and stored values."""
+
+    def __init__(self, package: Package, progress: Callable[[str, int, int], None] | None = None) -> None:
+        self.package = package
+        self.names = Names(package.defined_names)
+        self.tables = Tables(package.tables)
+        self._parts = {sheet.name.casefold(): sheet for sheet in package.sheets}
+        self._values: dict[str, dict[tuple[int, int], Scalar]] = {}
+        self.cells: list[TbCell] = []
+        self.valueless: list[str] = []
+        """Formula cells that hold no stored value."""
+        for number, sheet in enumerate(package.sheets):
+            if progress is not None:
+                progress("read", number, len(package.sheets))
+            for cell in formula_cells(package.part(sheet.part), package.shared_strings):
+                if cell.value is None and cell.kind != "table":
+                    self.valueless.append(f"{sheet.name}!{to_a1(cell.row, cell.col)}")
+                self._take(sheet.name, cell)
+
+    @cached_property
+    def _calling_names(self) -> bool:
+        return any(self.names.calling(name) for name in self.package.defined_names)
+
+    def _take(self, sheet: str, cell: FormulaCell) -> None:
+        if "TB_" not in cell.text.upper() and not self._calling_names:
+            return
+        try:
+            text = self.tables.written_out(cell.text, sheet, cell.row, cell.col)
+            parts = self.names.written_out(take_apart(text), sheet, cell.row, cell.col)
+            if not any(p.kind is Kind.OPEN and call_name(p.text) for p in parts):
+                return
+            if functions(parts) & {"LET", "LAMBDA"}:
+                raise NotWorked("the formula declares variables of its own (LET or LAMBDA)")
+            self.cells.append(TbCell(sheet, cell, tree(parts)))
+        except (Unreadable, NotWorked) as error:
+            self.cells.append(TbCell(sheet, cell, [], str(error)))
+
+    def values(self, sheet: str) -> dict[tuple[int, int], Scalar]:
+        """Stored values of a sheet by (row, column)."""
+        key = sheet.casefold()
+        found = self._values.get(key)
+        if found is None:
+            part = self._parts[key].part
+            found = stored_values(self.package.part(part), self.package.shared_strings)
+            self._values[key] = found
+        return found
+
+    def value(self, area: Area, i: int = 0, j: int = 0) -> Scalar:
+        """The stored value of one cell of an area; an error of a newer kind is #VALUE!."""
+        return self.values(area.sheet).get((area.r1 + i, area.c1 + j))
+
+    def grid(self, area: Area) -> list[list[Any]]:
+        """The stored values of an area."""
+        rows, cols = area.shape
+        values = self.values(area.sheet)
+        return [[values.get((area.r1 + i, area.c1 + j)) for j in range(cols)] for i in range(rows)]
+
+    def area(self, operand: str, sheet: str, depth: int = 0) -> Area | None:
+        """The cells that an operand means in a formula on a sheet; None when it is no plain reference."""
+        place, rest = split_sheet(operand) if "!" in operand else (None, operand)
+        if operand.startswith("[") or (place is not None and "[" in place):
+            raise NotWorked("the formula refers to another workbook")
+        if _RANGE.fullmatch(rest):
+            home = sheet if place is None else place
+            if home.casefold() not in self._parts:
+                raise NotWorked(f"there is no sheet {home}")
+            try:
+                r1, c1, r2, c2 = range_from_a1(rest)
+            except ValueError:
+                pass
+            else:
+                if r2 == MAX_ROW or c2 == MAX_COLUMN:
+                    r2, c2 = self._used(home, r2, c2)
+                return Area(self._parts[home.casefold()].name, r1, c1, max(r1, r2), max(c1, c2))
+        name = self.names.find(operand, sheet)
+        if name is None or depth > 8:
+            return None
+        text = self.tables.written_out(name.text.removeprefix("="), name.sheet or sheet, 1, 1)
+        parts = [p for p in take_apart(text) if p.kind is not Kind.SPACE]
+        if len(parts) != 1 or parts[0].kind is not Kind.REFERENCE:
+            return None
+        return self.area(parts[0].text, name.sheet or sheet, depth + 1)
+
+    def _used(self, sheet: str, row: int, col: int) -> tuple[int, int]:
+        """Whole columns and rows as far as they are used."""
+        values = self.values(sheet)
+        rows = max((r for r, _ in values), default=1)
+        cols = max((c for _, c in values), default=1)
+        return (rows if row == MAX_ROW else row), (cols if col == MAX_COLUMN else col)
+
+    def operand(self, text: str, sheet: str) -> str:
+        """An operand of a formula on a sheet, as a formula on any other sheet writes it."""
+        if text.startswith("[") or "[" in text.partition("!")[0]:
+            raise NotWorked("the formula refers to another workbook")
+        if "!" in text:
+            return text
+        if _RANGE.fullmatch(text):
+            try:
+                range_from_a1(text)
+            except ValueError:
+                return text
+            return f"{quoted_sheet(sheet)}!{text}"
+        name = self.names.find(text, sheet)
+        return f"{quoted_sheet(sheet)}!{text}" if name is not None and name.sheet else text
+
+
+def literal(part: Part) -> Scalar:
+    """The value of a literal in a formula."""
+    text = part.text.strip()
+    if text.startswith('"') and text.endswith('"') and len(text) > 1:
+        return text[1:-1].replace('""', '"')
+    if text.upper() in ("TRUE", "FALSE"):
+        return text.upper() == "TRUE"
+    if text.startswith("#"):
+        return CellError("NA") if text.upper() == "#N/A" else CellError("VALUE", text)
+    try:
+        return float(text)
+    except ValueError:
+        raise NotWorked(f"{text} cannot be read as a number") from None
+
+
+def plain(items: Items, source: Source, sheet: str, call: Callable[[Call], str]) -> str:
+    """The text of items as a formula on any sheet writes it."""
+    return render(items, lambda text: source.operand(text, sheet), call)

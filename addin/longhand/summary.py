@@ -1,0 +1,135 @@
+"""The front sheet: every TB_ cell with its verdict, and a link to its working."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import Any, Final
+
+from .block import Block, Check
+from .calls import Call
+from .grid import Formula, Link, Sheet, fixed, local, quoted_sheet
+from .outcomes import RowsOutcome
+from .source import TbCell
+
+TOLERANCE: Final = 1e-9
+HEAD_ROW: Final = 12
+_HEAD: Final = ("cell", "function", "formula", "long-hand", "own value", "difference", "verdict", "working")
+_COUNTS: Final = (
+    ("agrees", "within the tolerance of its long-hand working"),
+    ("differs", "outside the tolerance"),
+    ("error", "an error in the cell and in the working alike"),
+    ("text", "not a number: nothing to work"),
+    ("not worked", "no long-hand working; the reason stands beside the cell"),
+)
+
+
+@dataclass(slots=True, eq=False)
+class Entry:
+    """One TB_ cell of the workbook and what became of it."""
+
+    cell: TbCell
+    trouble: str = ""
+    words: bool = False
+    checks: list[tuple[Block, Check]] = field(default_factory=list)
+    rows: RowsOutcome | None = None
+    formula: Callable[[], str] = lambda: ""
+    formula_of: Callable[[int, int], str] | None = None
+    """The long-hand formula of each cell that the formula fills, counted from its first."""
+    row: int = 0
+    """Its row on the summary."""
+
+
+class Summary:
+    """The front sheet."""
+
+    def __init__(self, sheet: Sheet) -> None:
+        self.sheet = sheet
+        self.tolerance = sheet.ref(4, 2)
+
+    def write(self, entries: list[Entry], book: str) -> None:
+        sheet = self.sheet
+        sheet.put(1, 1, "Long-hand working and check", "title")
+        sheet.line(3, ["workbook", book])
+        sheet.line(4, ["tolerance", TOLERANCE])
+        sheet.put(4, 3, "relative difference that is accepted", "note")
+        first, last = HEAD_ROW + 1, HEAD_ROW + max(1, len(entries))
+        area = f"{fixed(first, 7)}:{fixed(last, 7)}"
+        for i, (word, meaning) in enumerate(_COUNTS):
+            sheet.put(5 + i, 1, word)
+            sheet.put(5 + i, 2, Formula(f'COUNTIF({area},"{word}")'), "number")
+            sheet.put(5 + i, 3, meaning, "note")
+        sheet.put(
+            10,
+            1,
+            "Every number on the sheets behind is an ordinary formula. The results are hydraulic forces from "
+            "a stated idealisation; local codes and licensed practice govern.",
+            "note",
+        )
+        sheet.line(HEAD_ROW, list(_HEAD), "head")
+        for i, entry in enumerate(entries):
+            entry.row = first + i
+            self._entry(entry)
+        sheet.verdicts.append(f"G{first}:G{last}")
+        sheet.widths = {1: 22.0, 2: 18.0, 3: 60.0, 4: 15.0, 5: 15.0, 6: 12.0, 7: 12.0, 8: 30.0}
+        sheet.title_rows = (HEAD_ROW, HEAD_ROW)
+        sheet.freeze = (HEAD_ROW, 1)
+
+    def _entry(self, entry: Entry) -> None:
+        sheet, at, cell = self.sheet, entry.row, entry.cell
+        sheet.put(at, 1, cell.where, "link")
+        sheet.links.append(Link(at, 1, cell.target))
+        names = dict.fromkeys(i.name for i in cell.items if isinstance(i, Call))
+        sheet.put(at, 2, ", ".join(names))
+        sheet.put(at, 3, f"={cell.cell.text}", "mono")
+        if entry.trouble:
+            sheet.put(at, 7, "not worked", "verdict")
+            sheet.put(at, 8, entry.trouble, "wrapped")
+        elif entry.words:
+            sheet.put(at, 7, "text", "verdict")
+        elif entry.rows is not None:
+            self._rows(entry, entry.rows)
+        elif entry.checks:
+            self._checks(entry)
+
+    def _checks(self, entry: Entry) -> None:
+        sheet, at = self.sheet, entry.row
+        block, check = entry.checks[0]
+        assert block.sheet is not None
+        if len(entry.checks) == 1:
+            for col, source, style in ((4, 4, "number"), (5, 6, "linked"), (6, 7, "difference")):
+                sheet.put(at, col, Formula(block.sheet.ref(check.at, source)), style)
+            sheet.put(at, 7, Formula(block.sheet.ref(check.at, 10)), "verdict")
+        else:
+            last = entry.checks[-1][1].at
+            area = f"{block.sheet.ref(check.at, 10)}:{fixed(last, 10)}"
+            sheet.put(at, 4, f"{len(entry.checks)} cells", "note")
+            sheet.put(at, 7, Formula(joint(area)), "verdict")
+        self._link(at, block.sheet, local(block.top, 1))
+
+    def _rows(self, entry: Entry, outcome: RowsOutcome) -> None:
+        sheet, at = self.sheet, entry.row
+        assert outcome.rows is not None
+        sheet.put(at, 4, f"{len(outcome.group.lines)} rows", "note")
+        sheet.put(at, 7, Formula(joint(outcome.rows.verdict_area(outcome.number))), "verdict")
+        self._link(at, outcome.rows.sheet, local(outcome.rows.verdicts[outcome.number][0] - 3, 1))
+
+    def _link(self, at: int, sheet: Sheet, a1: str) -> None:
+        self.sheet.put(at, 8, f"{sheet.name}!{a1}", "link")
+        self.sheet.links.append(Link(at, 8, f"{quoted_sheet(sheet.name)}!{a1}"))
+
+    def verdicts(self, entries: list[Entry], values: dict[int, list[Any]]) -> dict[str, list[Entry]]:
+        """The entries by verdict, from the values of the front sheet."""
+        found: dict[str, list[Entry]] = {word: [] for word, _ in _COUNTS}
+        for entry in entries:
+            word = "not worked" if entry.trouble else "text" if entry.words else ""
+            if not word:
+                shown = values[entry.row][6]
+                word = shown if isinstance(shown, str) and shown in found else "error"
+            found[word].append(entry)
+        return found
+
+
+def joint(area: str) -> str:
+    """One verdict for an area of them."""
+    return f'IF(COUNTIF({area},"differs")>0,"differs",IF(COUNTIF({area},"agrees")>0,"agrees","error"))'
