@@ -18,8 +18,9 @@ from __future__ import annotations
 import functools
 import inspect
 import math
+import sys
 from collections.abc import Callable
-from typing import Any, Generic, NamedTuple, ParamSpec, TypeVar, cast, get_type_hints
+from typing import Any, Generic, NamedTuple, ParamSpec, TypeAlias, TypeVar, get_type_hints
 
 import numpy as np
 import numpy.typing as npt
@@ -28,6 +29,9 @@ from .errors import EngineError, NoSolution, OutOfRange, Problem, Status
 
 P = ParamSpec("P")
 R = TypeVar("R", bound=tuple[Any, ...])
+
+_Check: TypeAlias = tuple[int, float, float, bool]
+"""Position of an argument, smallest and largest number allowed, whether it is optional."""
 
 CHUNK = 8192
 """Elements worked at a time: the temporaries of a routine then stay in the cache."""
@@ -41,18 +45,29 @@ class Bound(NamedTuple):
     open_low: bool = False
     open_high: bool = False
 
+    def limits(self) -> tuple[float, float]:
+        """Give the smallest and the largest number allowed; an infinite value is no quantity."""
+        low, high = max(self.low, -sys.float_info.max), min(self.high, sys.float_info.max)
+        return (
+            _next(low, math.inf) if self.open_low else low,
+            _next(high, -math.inf) if self.open_high else high,
+        )
+
     def allows(self, x: Any) -> Any:
         """Tell where ``x`` (scalar or array) lies inside; NaN lies outside."""
-        above = x > self.low if self.open_low else x >= self.low
-        below = x < self.high if self.open_high else x <= self.high
-        finite = (x - x) == 0  # an infinite value is no quantity
-        return above & below & finite
+        low, high = self.limits()
+        return (x >= low) & (x <= high)
 
     def __str__(self) -> str:
         low, high = math.isfinite(self.low), math.isfinite(self.high)
         lower = f"{'above' if self.open_low else 'at least'} {self.low:g}" if low else ""
         upper = f"{'below' if self.open_high else 'at most'} {self.high:g}" if high else ""
         return " and ".join(filter(None, (lower, upper))) or "any number"
+
+
+def _next(x: float, towards: float) -> float:
+    """Give the next number; next to 0 the smallest normal one, which no processor mode takes for 0."""
+    return math.copysign(sys.float_info.min, towards) if x == 0 else math.nextafter(x, towards)
 
 
 ANY = Bound()
@@ -99,9 +114,10 @@ class Routine(Generic[P, R]):
         self._may_be_undefined = tuple(name in undefined for name in self.fields)
         self._names = tuple(p.name for p in self.parameters)
         self._defaults = tuple(p.default for p in self.parameters)
+        self._required = sum(p.required for p in self.parameters)
         # Plain tuples for the scalar path, which runs once a worksheet cell.
-        self._checks = tuple(
-            (i, p.bound.low, p.bound.high, p.bound.open_low, p.bound.open_high, not p.required)
+        self._checks: tuple[_Check, ...] = tuple(
+            (i, *p.bound.limits(), not p.required)
             for i, p in enumerate(self.parameters)
             if p.bound is not None
         )
@@ -109,12 +125,16 @@ class Routine(Generic[P, R]):
     def __call__(self, *args: P.args, **kwargs: P.kwargs) -> R:
         """Evaluate for floats (raises on bad input) or arrays (see ``evaluate``)."""
         values = self._bind(args, kwargs)
+        for x in values:
+            if type(x) is not float:
+                break
+        else:
+            return self.scalar(values)
         for i, *_ in self._checks:
-            if type(values[i]) is not float:
-                value = values[i]
-                if (isinstance(value, np.ndarray) and value.ndim) or isinstance(value, list | tuple):
-                    return self.evaluate(values)[0]
-                values[i] = float(value)
+            value = values[i]
+            if (isinstance(value, np.ndarray) and value.ndim) or isinstance(value, list | tuple):
+                return self.evaluate(values)[0]
+            values[i] = float(value)
         return self.scalar(values)
 
     def _bind(self, args: tuple[Any, ...], kwargs: dict[str, Any]) -> list[Any]:
@@ -125,9 +145,10 @@ class Routine(Generic[P, R]):
             if name not in self._names or self._names.index(name) < len(args):
                 raise TypeError(f"{self.name}: argument {name!r} is not known or given twice")
             values[self._names.index(name)] = value
-        missing = [n for n, v in zip(self._names, values, strict=True) if v is inspect.Parameter.empty]
-        if missing:
-            raise TypeError(f"{self.name}: {', '.join(missing)} not given")
+        if len(args) < self._required:
+            missing = [n for n, v in zip(self._names, values, strict=True) if v is inspect.Parameter.empty]
+            if missing:
+                raise TypeError(f"{self.name}: {', '.join(missing)} not given")
         return values
 
     def scalar(self, values: list[Any]) -> R:
@@ -140,11 +161,9 @@ class Routine(Generic[P, R]):
         NoSolution
             Where the arguments have no physical solution.
         """
-        for i, low, high, open_low, open_high, optional in self._checks:
+        for i, low, high, optional in self._checks:
             x = values[i]
-            if not (low <= x <= high) or (open_low and x == low) or (open_high and x == high) or x - x != 0:
-                if optional and x != x:
-                    continue
+            if not low <= x <= high and not (optional and x != x):
                 raise OutOfRange(self.problems(values), self.name)
         try:
             result = self.body(*values)
@@ -153,13 +172,11 @@ class Routine(Generic[P, R]):
             raise
         except (ZeroDivisionError, OverflowError) as error:
             raise NoSolution("no finite result for these arguments", self.name) from error
-        for x in result:
-            if x - x != 0:
-                return self._undefined(result)
-        return result
+        # A sum is finite only if every term is.
+        return result if math.isfinite(sum(result)) else self._undefined(result)
 
     def _undefined(self, result: R) -> R:
-        """Pass results of which some are not finite, where the routine allows that."""
+        """Pass results of which some may not be finite, where the routine allows that."""
         for x, allowed in zip(result, self._may_be_undefined, strict=True):
             if x - x != 0 and not (allowed and x != x):
                 raise NoSolution("no finite result for these arguments", self.name)
@@ -179,53 +196,79 @@ class Routine(Generic[P, R]):
         A result whose element failed is NaN; the status array (see
         :class:`~thrustbook.engine.errors.Status`) tells a failure apart.
         """
-        numeric = {i for i, *_ in self._checks}
-        arrays: list[Any] = [np.asarray(x, dtype=float) if i in numeric else x for i, x in enumerate(values)]
-        shape = np.broadcast_shapes(*(arrays[i].shape for i in numeric))
-        flat: list[Any] = [
-            x
-            if i not in numeric
-            else (float(x.reshape(-1)[0]) if x.size == 1 else np.broadcast_to(x, shape).reshape(-1))
-            for i, x in enumerate(arrays)
-        ]
+        flat, shape = self._flatten(values)
         size = math.prod(shape)
-        if not any(isinstance(x, np.ndarray) for x in flat) and size:
+        arrays = [i for i, x in enumerate(flat) if isinstance(x, np.ndarray)]
+        if not arrays and size:
             return self._one_element(flat, shape)
-        out = [np.empty(size) for _ in self.fields]
+        # One block of memory: a result is a row of it, and a piece of all results one slice.
+        out = np.empty((len(self.fields), size))
         status = np.zeros(size, dtype=np.uint8)
-        with np.errstate(all="ignore"):
-            for start in range(0, size, CHUNK):
-                piece = slice(start, min(start + CHUNK, size))
-                self._piece(flat, piece, out, status)
+        shared = [c for c in self._checks if c[0] not in arrays]
+        checks = [c for c in self._checks if c[0] in arrays]
+        if all(
+            low <= flat[i] <= high or (optional and flat[i] != flat[i]) for i, low, high, optional in shared
+        ):
+            with np.errstate(all="ignore"):
+                for start in range(0, size, CHUNK):
+                    piece = slice(start, min(start + CHUNK, size))
+                    self._piece(flat, arrays, checks, piece, out[:, piece], status[piece])
+        else:
+            out[...] = math.nan
+            status[...] = Status.OUT_OF_RANGE
         return self._pack([x.reshape(shape) for x in out]), status.reshape(shape)
 
+    def _flatten(self, values: list[Any]) -> tuple[list[Any], tuple[int, ...]]:
+        """Broadcast: each numeric argument becomes a float (one for all) or a flat array."""
+        numeric = {c[0] for c in self._checks}
+        arrays: list[Any] = [np.asarray(x, dtype=float) if i in numeric else x for i, x in enumerate(values)]
+        shape = np.broadcast_shapes(*(arrays[i].shape for i in numeric))
+        for i in numeric:
+            x = arrays[i]
+            arrays[i] = float(x.reshape(-1)[0]) if x.size == 1 else np.broadcast_to(x, shape).reshape(-1)
+        return arrays, shape
+
     def _piece(
-        self, flat: list[Any], piece: slice, out: list[npt.NDArray[Any]], status: npt.NDArray[np.uint8]
+        self,
+        flat: list[Any],
+        arrays: list[int],
+        checks: list[_Check],
+        piece: slice,
+        out: npt.NDArray[np.float64],
+        status: npt.NDArray[np.uint8],
     ) -> None:
-        values = [x[piece] if isinstance(x, np.ndarray) else x for x in flat]
+        """Work one piece. Whole columns are judged by their extremes; only a bad one is looked through."""
+        values = flat.copy()
+        for i in arrays:
+            values[i] = flat[i][piece]
         bad: Any = False
-        for (i, *_), parameter in zip(self._checks, self._numeric_parameters(), strict=True):
-            x, bound = values[i], cast(Bound, parameter.bound)
-            wrong = np.logical_not(bound.allows(x))
-            if not parameter.required:
-                wrong = wrong & (x == x)
-            bad = bad | wrong
+        for i, low, high, optional in checks:
+            x = values[i]
+            if optional:  # the extremes pass over what is not given; NaN: nothing is given
+                inside = not (np.fmin.reduce(x) < low) and not (np.fmax.reduce(x) > high)
+            else:
+                inside = low <= np.minimum.reduce(x) and np.maximum.reduce(x) <= high
+            if not inside:
+                outside = ~((x >= low) & (x <= high))
+                bad = bad | (outside & (x == x) if optional else outside)
         try:
-            results = self.body(*values)
+            results: tuple[Any, ...] = self.body(*values)
         except (EngineError, ZeroDivisionError, OverflowError):
             # A scalar argument shared by all elements makes every one of them fail.
-            results = self._pack([math.nan] * len(out))
-        finite: Any = 0.0
-        for target, x, may_be_nan in zip(out, results, self._may_be_undefined, strict=True):
-            target[piece] = x
-            wrong = x - x
-            finite = finite + (np.where(np.isnan(x), 0.0, wrong) if may_be_nan else wrong)
-        failed = bad | np.isnan(finite)
-        if np.any(failed):
-            status[piece] = np.where(failed, Status.NO_SOLUTION, Status.OK)
-            status[piece][np.broadcast_to(bad, failed.shape)] = Status.OUT_OF_RANGE
-            for target in out:
-                target[piece] = np.where(failed, np.nan, target[piece])
+            results = (math.nan,) * len(out)
+        for target, x in zip(out, results, strict=True):
+            target[:] = x
+        # A sum is finite only if every term is.
+        if bad is False and np.isfinite(np.add.reduce(out, axis=None)):
+            return
+        wrong = ~np.isfinite(out)
+        for row, allowed in zip(range(len(out)), self._may_be_undefined, strict=True):
+            if allowed:
+                wrong[row] &= ~np.isnan(out[row])
+        failed = bad | wrong.any(axis=0)
+        out[:, failed] = math.nan
+        status[failed] = Status.NO_SOLUTION
+        status[np.broadcast_to(bad, failed.shape)] = Status.OUT_OF_RANGE
 
     def _one_element(self, flat: list[Any], shape: tuple[int, ...]) -> tuple[R, npt.NDArray[np.uint8]]:
         status = np.zeros(shape, dtype=np.uint8)
@@ -236,9 +279,6 @@ class Routine(Generic[P, R]):
             status[...] = code
             values = (math.nan,) * len(self.fields)
         return self._pack([np.full(shape, x) for x in values]), status
-
-    def _numeric_parameters(self) -> list[Parameter]:
-        return [p for p in self.parameters if p.bound is not None]
 
     def _pack(self, values: list[Any]) -> R:
         return self.result_type(*values)

@@ -283,7 +283,8 @@ def test_one_bad_row_spoils_one_row() -> None:
     D = np.array([0.3, -0.3, 0.3, 0.3, 0.3])
     K13 = np.array([0.9, 0.9, 0.9, 0.0, np.nan])
     Q3 = np.array([0.05, 0.05, -0.05, -0.05, 0.05])
-    values, status = tee.evaluate(tee._bind((1000.0, D, 3e5, 0.1, 0.2, Q3), {"K13": K13}))
+    given_ = {"rho": 1000.0, "D1": D, "p1": 3e5, "Q1": 0.1, "D3": 0.2, "Q3": Q3, "K13": K13}
+    values, status = tee.evaluate([given_.get(p.name, p.default) for p in tee.parameters])
     assert status.tolist()[:4] == [Status.OK, Status.OUT_OF_RANGE, Status.NO_SOLUTION, Status.OK]
     assert np.isnan(np.array(values)[:, [1, 2]]).all()
     assert np.isfinite(np.array(values)[:, [0, 3]]).all()
