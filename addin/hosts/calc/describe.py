@@ -10,6 +10,9 @@ from .slots import zero_for_empty
 from .typelib import Method
 
 CATEGORY = "Add-In"
+SINGLE = ("TB_WHY", "TB_VERSION")
+"""Functions whose answer is one text. Given as a value and not as an array of one, the office
+takes it into its pool of texts, so that comparisons and look-ups find it."""
 INTERFACE = "org.thrustbook.calc.XFunctions"
 
 
@@ -29,17 +32,22 @@ class Described(NamedTuple):
     repeats: bool
 
     @property
+    def single(self) -> bool:
+        """Whether the answer is one value, never an array."""
+        return self.name in SINGLE
+
+    @property
     def method(self) -> Method:
         """The method of the add-in's interface; its parameters sort in their order."""
         names = tuple(f"a{i:02d}" for i in range(len(self.places)))
-        return Method(self.name, names, self.repeats)
+        return Method(self.name, names, self.repeats, self.single)
 
 
 def _places(row: Row) -> list[Place]:
     places = []
     if row.has_result:
         names = ", ".join(r.name for r in row.results)
-        places.append(Place("result", f'Wanted result: {names}; "all", "labels" or "units" for a row of them'))
+        places.append(Place("result", f'Wanted result: {names}; "all", "labels" or "units": a row of them'))
     if row.has_units:
         text = 'Unit set: "SI" (also when empty), "metric", "US", or a range of two columns, role and unit'
         places.append(Place("units", text))

@@ -28,6 +28,7 @@ from .office import wire
 
 TIMEOUT = 600.0
 _KINDS: dict[int, ErrorKind] = {code: kind for kind, code in wire.ERROR_CODES.items()}  # type: ignore[misc]
+_NATIVE = "a cell that it depends on is an error, or its own formula fails"
 _MOST_ERRORS = 1000
 Batch = Callable[[Mapping[str, Any], float], dict[str, Any]]
 
@@ -65,8 +66,7 @@ def evaluate_workbook(
     wanted = [
         node
         for node in model.nodes
-        if node.cell.kind != "table"
-        and (node.index in affected or (fill_native and node.cell.value is None))
+        if node.cell.kind != "table" and (node.index in affected or (fill_native and node.cell.value is None))
     ]
     if not wanted:
         return evaluation
@@ -233,9 +233,7 @@ class _Outcome:
                 if isinstance(value, CellError):
                     bad += 1
                     if bad <= _MOST_ERRORS:
-                        why = value.message or (
-                            "" if node.calls else "a cell that it depends on is an error, or its own formula fails"
-                        )
+                        why = value.message or ("" if node.calls else _NATIVE)
                         self._to.errors.append(Failed(sheet, to_a1(row, col), str(value), why, formula))
         if bad > _MOST_ERRORS:
             self._to.warnings.append(

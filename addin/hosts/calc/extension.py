@@ -42,7 +42,7 @@ def parts(python: str | None = None, described: Sequence[Described] | None = Non
     settings = {
         "python": python or sys.executable,
         "version": product_version(),
-        "functions": [[f.name, f.repeats] for f in every],
+        "functions": [[f.name, f.repeats, f.single] for f in every],
     }
     texts = {
         "META-INF/manifest.xml": _manifest(),

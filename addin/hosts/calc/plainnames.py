@@ -10,7 +10,9 @@ from ..headless.package import Package
 from ..headless.refusals import Refusal
 from .office.settings import FUNCTIONS
 
-_FULL = re.compile(rb"\b" + re.escape(FUNCTIONS).encode() + rb"\.(TB_[A-Z][A-Z0-9_]*)(?=\s*\()", re.IGNORECASE)
+_FULL = re.compile(
+    rb"\b" + re.escape(FUNCTIONS).encode() + rb"\.(TB_[A-Z][A-Z0-9_]*)(?=\s*\()", re.IGNORECASE
+)
 
 
 def write_plain_names(path: Path) -> str:

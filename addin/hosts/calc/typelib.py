@@ -18,12 +18,19 @@ BANNER = b"\0** Created by thrustbook **\0"
 
 
 class Method(NamedTuple):
-    """A method that takes any values and gives a two-dimensional array of them."""
+    """A method that takes any values and gives a two-dimensional array of them, or one value."""
 
     name: str
     parameters: tuple[str, ...]
     repeats: bool
     """The last parameter takes any number of values."""
+    single: bool = False
+    """It gives one value, never an array."""
+
+    @property
+    def gives(self) -> str:
+        """Type of the result, as the binary form spells it."""
+        return _ANY if self.single else _GRID
 
     def types(self) -> list[str]:
         """Type of each parameter, as the binary form spells it."""
@@ -34,14 +41,14 @@ class Method(NamedTuple):
 def idl(name: str, methods: Sequence[Method]) -> str:
     """Write the interface as IDL text."""
     *modules, interface = name.split(".")
-    spelled = {_ANY: "any", _MORE: "sequence< any >"}
+    spelled = {_ANY: "any", _MORE: "sequence< any >", _GRID: "sequence< sequence< any > >"}
     lines = [*(f"module {m} {{" for m in modules)]
     lines += ["", f"interface {interface} : com::sun::star::uno::XInterface", "{"]
     for method in methods:
         given = ", ".join(
             f"[in] {spelled[t]} {p}" for t, p in zip(method.types(), method.parameters, strict=True)
         )
-        lines.append(f"    sequence< sequence< any > > {method.name}( {given} );".replace("(  )", "()"))
+        lines.append(f"    {spelled[method.gives]} {method.name}({f' {given} ' if given else ''});")
     return "\n".join([*lines, "};", "", *("};" for _ in modules), ""])
 
 
@@ -98,7 +105,7 @@ class _Writer:
         self.number(len(methods))
         for method in methods:
             self.text(method.name)
-            self.text(_GRID)
+            self.text(method.gives)
             self.number(len(method.parameters))
             for parameter, kind in zip(method.parameters, method.types(), strict=True):
                 self.data += b"\0"  # direction: in

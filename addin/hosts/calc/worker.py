@@ -10,7 +10,7 @@ import contextlib
 import os
 import sys
 from collections.abc import Sequence
-from functools import lru_cache
+from functools import cache, lru_cache
 from pathlib import Path
 from typing import Any, BinaryIO
 
@@ -62,7 +62,7 @@ def arguments(name: str, cells: Sequence[Any]) -> list[Cell]:
     return out
 
 
-@lru_cache(maxsize=None)
+@cache
 def _slots_of(name: str) -> tuple[Slot, ...]:
     return slots(CATALOGUE[name])
 

@@ -10,7 +10,7 @@ from __future__ import annotations
 import json
 import os
 import traceback
-from typing import Any, Dict, List
+from typing import Any
 from urllib.parse import unquote
 
 from . import books
@@ -56,7 +56,7 @@ def _end_soon(context: Any, office: Any) -> None:
     import unohelper
     from com.sun.star.awt import XCallback
 
-    class End(unohelper.Base, XCallback):  # type: ignore[misc]
+    class End(unohelper.Base, XCallback):
         def notify(self, _data: Any) -> None:
             office.terminate()
 
@@ -64,7 +64,7 @@ def _end_soon(context: Any, office: Any) -> None:
     later.addCallback(End(), None)
 
 
-def evaluate(office: Any, request: Dict[str, Any], to_url: Any) -> Dict[str, Any]:
+def evaluate(office: Any, request: dict[str, Any], to_url: Any) -> dict[str, Any]:
     """Load, bind, recalculate, read."""
     document = load(office, to_url(request["book"]))
     if document is None:
@@ -96,7 +96,11 @@ def load(office: Any, url: str, hidden: bool = True) -> Any:
         url,
         "_blank",
         0,
-        (_property("Hidden", hidden), _property("MacroExecutionMode", _NEVER), _property("UpdateDocMode", _NEVER)),
+        (
+            _property("Hidden", hidden),
+            _property("MacroExecutionMode", _NEVER),
+            _property("UpdateDocMode", _NEVER),
+        ),
     )
 
 
@@ -116,7 +120,7 @@ def _property(name: str, value: Any) -> Any:
 class Formula:
     """One formula of the request: its sheet, and the area that it fills."""
 
-    def __init__(self, sheet: Any, wanted: Dict[str, Any]) -> None:
+    def __init__(self, sheet: Any, wanted: dict[str, Any]) -> None:
         self.sheet = sheet
         self.row, self.column, self.row2, self.column2 = (n - 1 for n in wanted["area"])
         self.spills = wanted.get("spills", False)
@@ -128,7 +132,7 @@ class Formula:
 
     def _expression(self) -> str:
         text = self.sheet.getCellByPosition(self.column, self.row).getFormula()
-        return text.strip("{}")[1:]  # type: ignore[no-any-return]
+        return text.strip("{}")[1:]
 
     def _try(self, formula: str) -> Any:
         """Give the cell in which a formula was tried; the caller clears it."""
@@ -141,7 +145,7 @@ class Formula:
         expression = self._expression()
         size = []
         for count in ("ROWS", "COLUMNS"):
-            cell = self._try("SUMPRODUCT(%s(%s))" % (count, expression))
+            cell = self._try(f"SUMPRODUCT({count}({expression}))")
             size.append(0 if cell.getError() else int(cell.getValue()))
             cell.setFormula("")
         if 0 in size or size == [self.row2 - self.row + 1, self.column2 - self.column + 1]:
@@ -182,7 +186,8 @@ class Formula:
             return 0
         inside = self._expression().strip()
         inside = inside[inside.index("(") + 1 : inside.rindex(")")]
-        cell = self._try('TB_WHY("%s"%s)' % (self.call, ";" + inside if inside.strip() else ""))
+        more = ";" + inside if inside.strip() else ""
+        cell = self._try(f'TB_WHY("{self.call}"{more})')
         if not cell.getError():
             first["why"] = cell.getString()
         cell.setFormula("")

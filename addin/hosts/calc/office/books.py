@@ -6,9 +6,9 @@ full programmatic name when saving. What is met decides, not the number of a rel
 
 from __future__ import annotations
 
-import os
 import re
-from typing import Any, Callable, Iterator, List, Tuple
+from collections.abc import Callable, Iterator
+from typing import Any
 
 from .settings import FUNCTIONS
 
@@ -20,7 +20,7 @@ FORMULA = 16
 # program may have put before it: [1]!TB_BEND(, 'C:\\addins\\thrustbook.xlam'!TB_BEND(, _xll.TB_BEND(.
 _PLACE = r"(?:\[\d+\]|'(?:[^']|'')+'|[\w.]+\.xlam?)[!\s]\s*"
 _CALL = re.compile(
-    r"(?<![\w.\"])(?:(?P<place>%s)(?:%s)?|(?:_xll\.)?)(?P<name>TB_[A-Z][A-Z0-9_]*\()" % (_PLACE, re.escape(FULL)),
+    r"(?<![\w.\"])(?:" + _PLACE + "(?:" + re.escape(FULL) + r")?|(?:_xll\.)?)(?P<name>TB_[A-Z][A-Z0-9_]*\()",
     re.IGNORECASE,
 )
 _TEXTS = re.compile(r'("[^"]*")')
@@ -41,7 +41,9 @@ def plain(formula: str) -> str:
 def relink(document: Any) -> int:
     """Bind the TB_ formulas of a spreadsheet that the office did not recognise; gives their number."""
     sheets = document.getSheets()
-    found = [(sheet, list(_unbound_areas(sheet))) for sheet in map(sheets.getByIndex, range(sheets.getCount()))]
+    found = [
+        (sheet, list(_unbound_areas(sheet))) for sheet in map(sheets.getByIndex, range(sheets.getCount()))
+    ]
     names = _unbound_names(document)
     if not names and not any(areas for _, areas in found):
         return 0
@@ -70,7 +72,7 @@ def relink(document: Any) -> int:
     return count
 
 
-def _unbound_names(document: Any) -> List[Tuple[Any, str]]:
+def _unbound_names(document: Any) -> list[tuple[Any, str]]:
     found = []
     names = document.NamedRanges
     for word in names.getElementNames():
@@ -81,7 +83,7 @@ def _unbound_names(document: Any) -> List[Tuple[Any, str]]:
     return found
 
 
-def _unbound_areas(sheet: Any) -> Iterator[Tuple[Any, Any]]:
+def _unbound_areas(sheet: Any) -> Iterator[tuple[Any, Any]]:
     """Give the formula areas of a sheet that hold an unbound call, with their formulas."""
     areas = sheet.queryContentCells(FORMULA)
     for index in range(areas.getCount()):
@@ -91,7 +93,7 @@ def _unbound_areas(sheet: Any) -> Iterator[Tuple[Any, Any]]:
             yield area, formulas
 
 
-def _bind(sheet: Any, found: Tuple[Any, Any]) -> int:
+def _bind(sheet: Any, found: tuple[Any, Any]) -> int:
     area, formulas = found
     if not any(text.startswith("{") for line in formulas for text in line):
         new = tuple(tuple(plain(text) or text for text in line) for line in formulas)
@@ -99,7 +101,7 @@ def _bind(sheet: Any, found: Tuple[Any, Any]) -> int:
         return sum(bool(plain(text)) for line in formulas for text in line)
     count = 0
     place = area.getRangeAddress()
-    done = set()
+    done: set[tuple[int, int]] = set()
     for i, line in enumerate(formulas):
         for j, text in enumerate(line):
             row, column = place.StartRow + i, place.StartColumn + j
@@ -137,16 +139,14 @@ SAVED = ("OnSaveDone", "OnSaveAsDone")
 
 def _native(document: Any) -> bool:
     """Tell whether a document was read from the office's own format, which keeps the bound names."""
-    return any(
-        entry.Name == "FilterName" and "calc8" in str(entry.Value) for entry in document.getArgs()
-    )
+    return any(entry.Name == "FilterName" and "calc8" in str(entry.Value) for entry in document.getArgs())
 
 
 def after_event(
     name: str, document: Any, system_path: Callable[[str], str], write_plain: Callable[[str], str]
 ) -> str:
     """Do what is due after an event of a document; gives "" or what went wrong."""
-    if name not in LOADED and name not in SAVED or not is_spreadsheet(document):
+    if (name not in LOADED and name not in SAVED) or not is_spreadsheet(document):
         return ""
     if name in LOADED:
         if not _native(document):
@@ -169,9 +169,9 @@ def holds_full_names(path: str) -> bool:
     try:
         with zipfile.ZipFile(path) as archive:
             for entry in archive.infolist():
-                if entry.filename.startswith("xl/") and entry.filename.endswith(".xml"):
-                    if needle in archive.read(entry).upper():
-                        return True
+                sheet = entry.filename.startswith("xl/") and entry.filename.endswith(".xml")
+                if sheet and needle in archive.read(entry).upper():
+                    return True
     except (OSError, zipfile.BadZipFile):
         return False
     return False

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import sys
 import traceback
-from typing import Any, Optional
+from typing import Any
 
 import uno
 import unohelper
@@ -27,7 +27,7 @@ class _Service(unohelper.Base, XServiceInfo):
     """What every service of the component answers about itself."""
 
     NAME = ""
-    SERVICES = ()  # type: ignore[var-annotated]
+    SERVICES: tuple[str, ...] = ()
 
     def __init__(self, context: Any, *_arguments: Any) -> None:
         self._context = context
@@ -55,9 +55,7 @@ class _Listener(unohelper.Base, XDocumentEventListener):
             return
         cls._registered = True
         try:
-            broadcaster = context.getValueByName(
-                "/singletons/com.sun.star.frame.theGlobalEventBroadcaster"
-            )
+            broadcaster = context.getValueByName("/singletons/com.sun.star.frame.theGlobalEventBroadcaster")
             broadcaster.addDocumentEventListener(cls())
         except Exception:
             traceback.print_exc(file=sys.stderr)
@@ -87,8 +85,8 @@ class Functions(_Service, XServiceName, XFunctions):
         return settings.FUNCTIONS
 
 
-def _method(name: str, repeats: bool) -> Any:
-    call = _CALLER.call
+def _method(name: str, repeats: bool, single: bool) -> Any:
+    call = _CALLER.value if single else _CALLER.rows
     if repeats:
 
         def function(self: Any, *args: Any) -> Any:
@@ -103,8 +101,8 @@ def _method(name: str, repeats: bool) -> Any:
     return function
 
 
-for _name, _repeats in _SETTINGS["functions"]:
-    setattr(Functions, _name, _method(_name, _repeats))
+for _name, _repeats, _single in _SETTINGS["functions"]:
+    setattr(Functions, _name, _method(_name, _repeats, _single))
 
 
 class Relink(_Service, XJobExecutor):
@@ -121,10 +119,10 @@ class Relink(_Service, XJobExecutor):
             count = books.relink(document)
             document.calculateAll()
         except Exception as error:
-            _show(document, "The formulas could not be linked: %s" % error)
+            _show(document, f"The formulas could not be linked: {error}")
             return
         if count:
-            _show(document, "%d formulas were linked to the functions of thrustbook." % count)
+            _show(document, f"{count} formulas were linked to the functions of thrustbook.")
 
 
 class Batch(_Service, XJobExecutor):
@@ -139,7 +137,7 @@ class Batch(_Service, XJobExecutor):
 
 def _show(document: Any, text: str) -> None:
     """Show a message, where there is a window to show it in."""
-    controller: Optional[Any] = document.getCurrentController()
+    controller: Any | None = document.getCurrentController()
     frame = None if controller is None else controller.getFrame()
     window = None if frame is None else frame.getContainerWindow()
     if window is None or not window.isVisible():

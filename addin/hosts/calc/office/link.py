@@ -7,7 +7,8 @@ import subprocess
 import tempfile
 import threading
 import time
-from typing import Any, Callable, Dict, IO, List, Optional, Sequence
+from collections.abc import Callable, Sequence
+from typing import IO, Any
 
 from . import wire
 
@@ -31,16 +32,16 @@ class Link:
         self._command = list(command)
         self._clock = clock
         self._lock = threading.RLock()
-        self._process: Optional[subprocess.Popen] = None
-        self._errors: Optional[IO[bytes]] = None
-        self._failed_at: Optional[float] = None
+        self._process: subprocess.Popen[bytes] | None = None
+        self._errors: IO[bytes] | None = None
+        self._failed_at: float | None = None
         self._failure = ""
-        self._busy_since: Optional[float] = None
-        self._watch: Optional[threading.Thread] = None
+        self._busy_since: float | None = None
+        self._watch: threading.Thread | None = None
         self.started = 0
 
     @property
-    def pid(self) -> Optional[int]:
+    def pid(self) -> int | None:
         """Process number of the worker, None while there is none."""
         return None if self._process is None else self._process.pid
 
@@ -61,20 +62,20 @@ class Link:
                     gave_up = self._clock() - (self._busy_since or 0.0) > PATIENCE
                     reason = self._ended()
                     if gave_up:
-                        raise Unavailable("the call took longer than %d s" % PATIENCE) from None
-                    if attempt == 2 or fresh and self.started > 1:
+                        raise Unavailable(f"the call took longer than {PATIENCE:.0f} s") from None
+                    if attempt == 2 or (fresh and self.started > 1):
                         self._fail("the calculation process ended" + reason)
                 finally:
                     self._busy_since = None
         raise AssertionError("not reached")
 
-    def _running(self) -> subprocess.Popen:
+    def _running(self) -> subprocess.Popen[bytes]:
         if self._process is not None:
             return self._process
         if self._failed_at is not None and self._clock() - self._failed_at < RETRY_AFTER:
             raise Unavailable(self._failure)
-        environment: Dict[str, str] = {k: v for k, v in os.environ.items() if k not in _FOREIGN}
-        self._errors = tempfile.TemporaryFile()
+        environment: dict[str, str] = {k: v for k, v in os.environ.items() if k not in _FOREIGN}
+        self._errors = tempfile.TemporaryFile()  # noqa: SIM115 - kept as long as the worker
         try:
             self._process = subprocess.Popen(
                 self._command,
@@ -86,7 +87,7 @@ class Link:
                 creationflags=getattr(subprocess, "CREATE_NO_WINDOW", 0),
             )
         except OSError as error:
-            self._fail("%s cannot be started (%s)" % (self._command[0], error.strerror or error))
+            self._fail(f"{self._command[0]} cannot be started ({error.strerror or error})")
         self.started += 1
         process = self._process
         assert process is not None
@@ -96,9 +97,7 @@ class Link:
             self._fail("the calculation process could not start" + self._ended())
         if hello != b"thrustbook %d" % wire.PROTOCOL:
             self.close()
-            self._fail(
-                "the extension and the installed thrustbook differ; run: thrustbook install calc"
-            )
+            self._fail("the extension and the installed thrustbook differ; run: thrustbook install calc")
         self._failed_at = None
         if self._watch is None:
             self._watch = threading.Thread(target=self._guard, name="thrustbook watch", daemon=True)
@@ -148,22 +147,27 @@ class Link:
 
 
 class Caller:
-    """Calls worksheet functions through a link; gives rows, as the office takes them."""
+    """Calls worksheet functions through a link. Never raises: what fails is an error value."""
 
     def __init__(self, link: Link) -> None:
         self._link = link
 
-    def call(self, name: str, args: Sequence[Any]) -> Any:
-        """Call a function; never raises."""
+    def value(self, name: str, args: Sequence[Any]) -> Any:
+        """Call a function; gives a value, or rows of them."""
         try:
             answer = self._link.request(wire.pack_call(name, args))
-            value, _ = wire.unpack(answer, 0, wire.read_rows)
+            return wire.unpack(answer, 0, wire.read_rows)[0]
         except Unavailable as error:
             # The one call that must answer when nothing works is the one that tells why.
-            text = name == "TB_WHY"
-            value = "not calculated: " + str(error) if text else wire.error_number(wire.ERROR_CODES["VALUE"])
+            if name == "TB_WHY":
+                return "not calculated: " + str(error)
         except TypeError:
-            value = wire.error_number(wire.ERROR_CODES["VALUE"])
+            pass  # a value that no cell can hold
+        return wire.error_number(wire.ERROR_CODES["VALUE"])
+
+    def rows(self, name: str, args: Sequence[Any]) -> Any:
+        """Call a function; gives rows, the form in which the office takes arrays."""
+        value = self.value(name, args)
         return value if type(value) is tuple else ((value,),)
 
     def plain_names(self, path: str) -> str:
@@ -174,7 +178,7 @@ class Caller:
             return str(error)
 
 
-def worker_command(python: str) -> List[str]:
+def worker_command(python: str) -> list[str]:
     """Give the command line of the worker."""
     # -E and -P: neither the office's environment nor a file in the current folder may come between.
     return [python, "-E", "-P", "-m", "thrustbook.addin.hosts.calc.worker"]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import os
-from typing import Any, Dict
+from typing import Any
 
 PREFIX = "org.thrustbook.calc"
 FUNCTIONS = PREFIX + ".Functions"
@@ -13,8 +13,8 @@ RELINK = PREFIX + ".Relink"
 BATCH = PREFIX + ".Batch"
 
 
-def read() -> Dict[str, Any]:
+def read() -> dict[str, Any]:
     """Read settings.json: the interpreter, the release, the names of the functions."""
     path = os.path.join(os.path.dirname(os.path.abspath(__file__)), "settings.json")
     with open(path, encoding="utf-8") as file:
-        return json.load(file)  # type: ignore[no-any-return]
+        return json.load(file)

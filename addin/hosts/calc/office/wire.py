@@ -12,8 +12,9 @@ from __future__ import annotations
 import struct
 import sys
 from array import array
+from collections.abc import Callable, Sequence
 from itertools import chain
-from typing import Any, BinaryIO, Callable, List, Sequence, Tuple
+from typing import Any, BinaryIO
 
 PROTOCOL = 1
 CALL, PLAIN_NAMES = 1, 2
@@ -33,7 +34,7 @@ _LONGEST = 1 << 31
 
 # Unit tables and the like come again with every call; their bytes are kept.
 _SMALL = 400
-_known: dict = {}
+_known: dict[Any, bytes] = {}
 
 
 class Closed(Exception):
@@ -79,7 +80,7 @@ def pack_call(name: str, args: Sequence[Any]) -> bytes:
     return b"".join(parts)
 
 
-def unpack_call(data: bytes, grid: Callable[[bytes], Any]) -> Tuple[str, List[Any]]:
+def unpack_call(data: bytes, grid: Callable[[bytes], Any]) -> tuple[str, list[Any]]:
     """Read what :func:`pack_call` wrote."""
     _, length, count = _HEAD.unpack_from(data)
     at = _HEAD.size + length
@@ -113,7 +114,7 @@ def _pack_rows(rows: Any) -> bytes:
     if small:
         found = _known.get(rows)
         if found is not None:
-            return found  # type: ignore[no-any-return]
+            return found
     data = pack_columns(len(rows), [pack_column(column) for column in zip(*rows)])
     if small and any(type(v) is str and v for v in chain.from_iterable(rows)):
         if len(_known) > 256:
@@ -148,13 +149,13 @@ def _texts(texts: Sequence[str]) -> bytes:
     return _U32.pack(len(data)) + data
 
 
-def _doubles(numbers: array) -> bytes:
+def _doubles(numbers: array[float]) -> bytes:
     if _SWAP:
         numbers.byteswap()
     return numbers.tobytes()
 
 
-def unpack(data: bytes, at: int, grid: Callable[[bytes], Any]) -> Tuple[Any, int]:
+def unpack(data: bytes, at: int, grid: Callable[[bytes], Any]) -> tuple[Any, int]:
     """Read a value at a position; gives it and the position behind it.
 
     ``grid`` reads the bytes of a range, in the form that :func:`read_grid` takes.
@@ -175,11 +176,11 @@ def unpack(data: bytes, at: int, grid: Callable[[bytes], Any]) -> Tuple[Any, int
     return grid(data[at:end]), end
 
 
-def read_columns(data: bytes) -> List[Sequence[Any]]:
+def read_columns(data: bytes) -> list[Sequence[Any]]:
     """Read the columns of a range."""
     _, _, height, width = _GRID.unpack_from(data)
     at = _GRID.size
-    columns: List[Sequence[Any]] = []
+    columns: list[Sequence[Any]] = []
     for _ in range(width):
         kind = data[at]
         at += 1
@@ -207,12 +208,12 @@ def read_columns(data: bytes) -> List[Sequence[Any]]:
     return columns
 
 
-def read_rows(data: bytes) -> Tuple[Tuple[Any, ...], ...]:
+def read_rows(data: bytes) -> tuple[tuple[Any, ...], ...]:
     """Read a range as rows, the form that the office takes."""
     return tuple(zip(*read_columns(data)))
 
 
-def _read_doubles(data: bytes, at: int, count: int) -> List[float]:
+def _read_doubles(data: bytes, at: int, count: int) -> list[float]:
     numbers = array("d")
     numbers.frombytes(data[at : at + 8 * count])
     if _SWAP:
@@ -220,7 +221,7 @@ def _read_doubles(data: bytes, at: int, count: int) -> List[float]:
     return numbers.tolist()
 
 
-def _read_texts(data: bytes, at: int, count: int) -> Tuple[List[str], int]:
+def _read_texts(data: bytes, at: int, count: int) -> tuple[list[str], int]:
     (length,) = _U32.unpack_from(data, at)
     at += 4
     texts = data[at : at + length].decode("utf-8", "surrogatepass").split("\0")
@@ -241,9 +242,9 @@ _QUIET = 0x7FF8000000000000
 
 def error_number(code: int) -> float:
     """Give the NaN that stands for an error of the office."""
-    return _DOUBLE.unpack(_BITS.pack(_QUIET | code))[0]  # type: ignore[no-any-return]
+    return _DOUBLE.unpack(_BITS.pack(_QUIET | code))[0]
 
 
 def error_code(number: float) -> int:
     """Give the error that a NaN stands for; 0 for a NaN without one."""
-    return _BITS.unpack(_DOUBLE.pack(number))[0] & 0xFFFF  # type: ignore[no-any-return]
+    return _BITS.unpack(_DOUBLE.pack(number))[0] & 0xFFFF
