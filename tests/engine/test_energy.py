@@ -95,7 +95,8 @@ def test_discharge_and_pressure_undo_each_other(
     from_pressure = discharge(rho, D1, D2, p1=from_flow.p1, p2=p2, K=K, dz=dz)
     assert from_pressure.Q == pytest.approx(Q, rel=1e-8)
     assert from_pressure.V1 == pytest.approx(from_pressure.Q / (math.pi / 4 * D1**2), rel=1e-12)
-    assert from_pressure.hL == pytest.approx(K * from_pressure.V2**2 / (2.0 * G), rel=1e-9, abs=1e-12)
+    head = from_pressure.V2**2 / (2.0 * G)
+    assert from_pressure.hL == pytest.approx(K * head, rel=1e-9, abs=1e-12 * (1.0 + head))
 
 
 def test_discharge_with_a_coefficient_is_the_meter_formula() -> None:
