@@ -41,8 +41,8 @@ _TO_ENGINE: dict[str, str] = {
     "NULL": "Null",
 }
 _NOTHING = type(None)
-_CLEAN = frozenset((float, bool, _NOTHING))
 _CLEAN_INSIDE = frozenset((float, bool, _NOTHING, str))
+_CLEAN_OR_RANGE = _CLEAN_INSIDE | {list}
 _ANSWERS = frozenset((float, bool, str))
 _NO_VALUE = CellError("NA", "the function gave no value")
 _NOT_FINITE = CellError("NUM", "the result is not a finite number")
@@ -97,19 +97,20 @@ def _argument(value: Any) -> Cell:
 
 def arguments(values: Sequence[Any]) -> Sequence[Cell]:
     """The arguments of a call as cell values; the common case is handed on as it is."""
-    for value in values:
-        kind = type(value)
-        if kind in _CLEAN or (kind is str and value != OMITTED):
-            continue
-        if (
-            kind is list
-            and value
-            and type(value[0]) is list
-            and set(map(type, chain.from_iterable(value))) <= _CLEAN_INSIDE
-        ):
-            continue
-        return [_argument(item) for item in values]
-    return values
+    kinds = set(map(type, values))
+    if kinds <= _CLEAN_INSIDE:
+        return values if OMITTED not in values else [_argument(item) for item in values]
+    if kinds <= _CLEAN_OR_RANGE and OMITTED not in values:
+        for value in values:
+            if type(value) is list and not (
+                value
+                and type(value[0]) is list
+                and set(map(type, chain.from_iterable(value))) <= _CLEAN_INSIDE
+            ):
+                break
+        else:
+            return values
+    return [_argument(item) for item in values]
 
 
 def engine_value(value: Any) -> Any:

@@ -33,9 +33,9 @@ def path(tmp_path: Path) -> Path:
 
 
 def run(
-    path: Path, formulas: dict[str, str], cells: dict[str, Any] = {}
+    path: Path, formulas: dict[str, str], cells: dict[str, Any] | None = None
 ) -> tuple[dict[str, Any], Evaluation]:
-    make(path, {"S": {**cells, **formulas}})
+    make(path, {"S": {**(cells or {}), **formulas}})
     evaluation = evaluate(path, REAL)
     return values(path), evaluation
 
