@@ -29,7 +29,7 @@ _HEAD: Final = (
     "allowed",
 )
 _CELL_HEAD: Final = ("cell", "", "formula in it", "long-hand", "", "its own value", "difference", "", "", "")
-_WIDTHS: Final = (11.0, 36.0, 46.0, 15.0, 9.0, 15.0, 11.0, 16.0, 9.0, 15.0)
+_WIDTHS: Final = (10.0, 36.0, 44.0, 13.0, 8.0, 13.0, 10.0, 14.0, 8.0, 16.0)
 
 
 @dataclass(slots=True, eq=False)
@@ -149,6 +149,7 @@ class Block:
             sheet.put(at, 3, shown(step.formula), "mono")
             sheet.put(at, 8, Formula(fill(step.formula, cells.__getitem__)), "number")
             sheet.put(at, 9, si_unit(step.role), "text")
+            sheet.fit_height(at)
             cells[step.symbol] = local(at, 8)
         for i, name in enumerate(self.results):
             at = self._results_at() + i
@@ -165,6 +166,8 @@ class Block:
             sheet.put(at, 7, datum, "result")
             sheet.put(at, 8, Formula(cells[step_name]), "result")
             sheet.put(at, 9, si_unit(result.role), "resulttext")
+            sheet.put(at, 10, "", "resulttext")
+            sheet.fit_height(at)
 
     def _write_argument(
         self, sheet: Sheet, row: Row, i: int, at: int, ambient: str, written: Written
@@ -180,7 +183,7 @@ class Block:
         raw = local(at, 4)
         if arg.role == "choice":
             si = raw
-            sheet.put(at, 10, ", ".join(arg.choices), "note")
+            sheet.put(at, 10, ", ".join(arg.choices), "wrapped")
         else:
             unit = own or self.conversion(arg.role)
             sheet.put(at, 5, unit.unit, "text")
@@ -190,9 +193,10 @@ class Block:
             si = to_si(raw, local(at, 6), unit.shift, ambient)
             bound = row.bound(arg)
             text = "" if bound is None else str(bound)
-            sheet.put(at, 10, "" if text == "any number" else text, "note")
+            sheet.put(at, 10, "" if text == "any number" else text, "wrapped")
             sheet.put(at, 9, si_unit(arg.role), "text")
         sheet.put(at, 8, Formula(in_use(row, arg, raw, si)), "number")
+        sheet.fit_height(at)
 
     def _write_check(self, sheet: Sheet, check: Check, tolerance: str) -> None:
         at = check.at
@@ -205,6 +209,7 @@ class Block:
         sheet.put(at, 7, Formula(f"{local(at, 4)}-{local(at, 6)}"), "difference")
         verdict = agreement(local(at, 4), local(at, 6), tolerance, check.scale())
         sheet.put(at, 10, Formula(verdict), "verdict")
+        sheet.fit_height(at)
 
 
 def new_block_sheet(name: str) -> Sheet:

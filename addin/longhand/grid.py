@@ -25,6 +25,10 @@ class Link(NamedTuple):
     target: str
 
 
+WRAPPED = frozenset(("wrapped", "mono", "resulttext"))
+"""Styles whose text runs over several lines."""
+
+
 @dataclass(slots=True)
 class Sheet:
     """Cells by row and column, both counted from 1; a style is a name of ``styles.py``."""
@@ -52,6 +56,19 @@ class Sheet:
         cells = self.cells.setdefault(row, {})
         for i, content in enumerate(contents):
             cells[col + i] = (content, style)
+
+    def fit_height(self, row: int) -> None:
+        """Make a row as tall as its wrapped texts need; spreadsheets do not do so for a row they did not lay."""
+        lines = max(
+            (
+                -(-len(content) // max(1, int(self.widths.get(col, 9.0) * 1.1)))
+                for col, (content, style) in self.cells[row].items()
+                if isinstance(content, str) and style in WRAPPED
+            ),
+            default=1,
+        )
+        if lines > 1:
+            self.heights[row] = 13.0 * lines + 2
 
     def ref(self, row: int, col: int) -> str:
         """The absolute reference to a cell from another sheet."""

@@ -114,7 +114,9 @@ class RowSheet:
             self._head_column(col + 1, name, "value in the cell", "", "")
             self._head_column(col + 2, name, "difference", "", "")
             self._head_column(col + 3, name, "verdict", "", "")
+            sheet.widths |= {col + 2: 10.0, col + 3: 9.0}
         self._head_column(self._verdict, "", "the whole row", "", "")
+        sheet.widths[self._verdict] = 9.0
         sheet.widths |= {1: 16.0, 2: 14.0}
         sheet.heights |= {MEANING: 66.0, FORMULA: 78.0}
         sheet.title_rows, sheet.title_columns, sheet.fit_width = (SYMBOL, FORMULA), (1, LABELS), False
@@ -149,7 +151,7 @@ class RowSheet:
 
     def _write(self, top: int, group: Group) -> None:
         sheet = self.sheet
-        sheet.put(top, 1, group.caption, "block")
+        sheet.line(top, [group.caption, *[""] * (self._verdict - 1)], "block")
         if group.target:
             sheet.links.append(Link(top, 1, group.target))
         for at, text in ((top + 1, "unit"), (top + 2, "factor to SI")):

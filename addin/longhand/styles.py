@@ -38,7 +38,7 @@ STYLES: Final[dict[str, Style]] = {
     "number": Style(across="right"),
     "factor": Style(font="note", across="right"),
     "result": Style(font="bold", across="right", border="top"),
-    "resulttext": Style(font="bold", border="top"),
+    "resulttext": Style(font="bold", border="top", wrap=True),
     "difference": Style(number=_DIFFERENCE, across="right"),
     "verdict": Style(font="bold", across="center"),
 }

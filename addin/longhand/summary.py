@@ -49,6 +49,7 @@ class Summary:
 
     def write(self, entries: list[Entry], book: str) -> None:
         sheet = self.sheet
+        sheet.widths = {1: 20.0, 2: 16.0, 3: 56.0, 4: 13.0, 5: 13.0, 6: 10.0, 7: 10.0, 8: 26.0}
         sheet.put(1, 1, "Long-hand working and check", "title")
         sheet.line(3, ["workbook", book])
         sheet.line(4, ["tolerance", TOLERANCE])
@@ -71,7 +72,6 @@ class Summary:
             entry.row = first + i
             self._entry(entry)
         sheet.verdicts.append(f"G{first}:G{last}")
-        sheet.widths = {1: 22.0, 2: 18.0, 3: 60.0, 4: 15.0, 5: 15.0, 6: 12.0, 7: 12.0, 8: 30.0}
         sheet.title_rows = (HEAD_ROW, HEAD_ROW)
         sheet.freeze = (HEAD_ROW, 1)
 
@@ -82,9 +82,11 @@ class Summary:
         names = dict.fromkeys(i.name for i in cell.items if isinstance(i, Call))
         sheet.put(at, 2, ", ".join(names))
         sheet.put(at, 3, f"={cell.cell.text}", "mono")
+        sheet.fit_height(at)
         if entry.trouble:
             sheet.put(at, 7, "not worked", "verdict")
             sheet.put(at, 8, entry.trouble, "wrapped")
+            sheet.fit_height(at)
         elif entry.words:
             sheet.put(at, 7, "text", "verdict")
         elif entry.rows is not None:

@@ -106,9 +106,10 @@ class UnitSheet:
             first, last = self._list(role, given)
             names = f"{fixed(first, _LIST_COLUMN)}:{fixed(last, _LIST_COLUMN)}"
             factors = f"{fixed(first, _LIST_COLUMN + 1)}:{fixed(last, _LIST_COLUMN + 1)}"
-            here = fixed(at, 3)
-            same = f"EXACT({names},TRIM({here}))"
-            formula = f"IF(SUMPRODUCT({same}*1)=1,SUMPRODUCT({same}*{factors}),NA())"
+            # MATCH does not mind capitals, so the spelling found is compared once more.
+            here = f"TRIM({fixed(at, 3)})"
+            found = f"MATCH({here},{names},0)"
+            formula = f"IF(EXACT(INDEX({names},{found}),{here}),INDEX({factors},{found}),NA())"
             sheet.put(at, 4, Formula(formula), "number")
         sheet.put(at, 5, si_unit(role))
         return Conversion(Formula(sheet.ref(at, 3)), Formula(sheet.ref(at, 4)), given.shift)
@@ -131,7 +132,7 @@ class UnitSheet:
         if key not in self._lists:
             first = self._list_at
             names = [n for n in known_units(role) if unit(n, role).shift == given.shift]
-            for name in [*names, *([] if given.symbol in names else [given.symbol])]:
+            for name in dict.fromkeys((given.symbol, *names)):
                 self.sheet.put(self._list_at, _LIST_COLUMN, name)
                 self.sheet.put(self._list_at, _LIST_COLUMN + 1, unit(name, role).factor, "number")
                 self.sheet.put(self._list_at, _LIST_COLUMN + 2, role)
