@@ -39,13 +39,20 @@ class Surroundings:
                     self._texts.setdefault((sheet, col), []).append(row)
         for rows in self._texts.values():
             rows.sort()
+        self._used = [
+            sorted({r for (r, _), v in cells.items() if v not in (None, "")}) for cells in book.values
+        ]
 
     def above(self, place: Place) -> Place | None:
-        """The nearest text above a cell."""
+        """The nearest text above a cell, where no empty row of the sheet lies between."""
         sheet, row, col = place
-        rows = self._texts.get((sheet, col), [])
+        rows, used = self._texts.get((sheet, col), []), self._used[sheet]
         at = bisect_left(rows, row)
-        return (sheet, rows[at - 1], col) if at else None
+        if not at:
+            return None
+        found = rows[at - 1]
+        together = bisect_left(used, row) - bisect_left(used, found) == row - found
+        return (sheet, found, col) if together else None
 
     def left(self, place: Place) -> Place | None:
         """The text to the left of a cell, where nothing but empty cells lies between."""

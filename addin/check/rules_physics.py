@@ -151,7 +151,7 @@ def _distinct(book: Book, names: Sequence[str]) -> Iterator[Call]:
     """Calls of some functions, one for each set of arguments."""
     seen = set()
     for call in book.calls:
-        if call.row.name in names:
+        if call.row.name in names and not _only_headings(call):
             key = call.row.name, figures(list(call.inputs))
             if key not in seen:
                 seen.add(key)

@@ -18,6 +18,8 @@ RELATIVE = 1e-9
 """Difference between stored and recomputed value that is accepted, as a fraction of the value."""
 OF_LARGEST = 1e-12
 """The same as a fraction of the largest number in the same result: rounding of what should be zero."""
+_FOLLOWS = "no result: "
+"""How the message of a row begins that has no result because of another row."""
 _VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
 
 
@@ -124,7 +126,8 @@ def errors(book: Book) -> Iterator[Finding]:
             continue
         rows = _error_rows(book, index)
         if rows:
-            for row, col, error in rows:
+            own = [r for r in rows if not r[2].message.startswith(_FOLLOWS)]
+            for row, col, error in own or rows:
                 text = error.message or reason(book.settlement, node, book.results.values)
                 remarks.append(_error(book, node, row, col, error, text))
             continue
@@ -132,11 +135,26 @@ def errors(book: Book) -> Iterator[Finding]:
         assert isinstance(value, CellError)
         text = value.message or reason(book.settlement, node, book.results.values)
         remarks.append(_error(book, node, node.cell.row, node.cell.col, value, text))
-    yield from joined("V03", Severity.ERROR, remarks)
+    yield from joined("V03", Severity.ERROR, _one_a_row(remarks))
+
+
+def _one_a_row(remarks: list[Remark]) -> list[Remark]:
+    """The first cell of each row for each reason: one bad input often spoils several results of its row."""
+    rows: dict[tuple[str, int, str], list[Remark]] = {}
+    for remark in remarks:
+        rows.setdefault((remark.sheet, remark.row, remark.kind), []).append(remark)
+    out = []
+    for found in rows.values():
+        first = min(found, key=lambda r: r.col)
+        others = len(found) - 1
+        more = f", and so do {others} others of this row" if others > 1 else ""
+        more = ", and so does another of this row" if others == 1 else more
+        out.append(first._replace(what=first.what + more))
+    return out
 
 
 def _error(book: Book, node: Node, row: int, col: int, error: CellError, text: str) -> Remark:
-    why = text[:1].upper() + text[1:] + "."
+    why = f"The reason: {text}."
     return Remark(
         book.sheet(node.sheet), row, col, text, f"the formula gives {error}", why, f"{error} {text}"
     )

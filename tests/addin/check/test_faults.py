@@ -1,0 +1,221 @@
+"""Each kind of fault, put into a workbook without one: the check finds it, and nothing else."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from pathlib import Path
+
+import openpyxl
+import pytest
+from openpyxl import Workbook
+from openpyxl.formatting.rule import FormulaRule
+from openpyxl.worksheet.formula import ArrayFormula
+
+from thrustbook.addin.check import rules_physics
+from thrustbook.addin.check.rules import RULES
+from thrustbook.addin.check.types import Severity
+
+from .books import LAST, Values, clean_book, findings, stored
+
+
+def test_a_clean_workbook_gives_no_finding(tmp_path: Path) -> None:
+    path = stored(clean_book(), tmp_path / "clean.xlsx")
+    assert findings(path) == []
+    # The workbook is one with results in it, not one in which there is nothing to find.
+    values = openpyxl.load_workbook(path, data_only=True)
+    area, rho_v2 = math.pi * 0.3**2 / 4, 998.0 * (0.1 / (math.pi * 0.3**2 / 4)) ** 2
+    expected = (400e3 + rho_v2) * area * (1 - math.cos(math.radians(30))) / 1e3
+    assert values["Bends"]["G5"].value == pytest.approx(expected, rel=1e-9)
+    assert values["Run"]["L10"].value > 0
+    assert values["Balance"]["B8"].value != 0
+    assert values["Run"]["B18"].value < 1e-9
+
+
+@dataclass
+class Fault:
+    """A fault: how it gets into the workbook, and what is to be found."""
+
+    change: Callable[[Workbook], object]
+    code: str
+    places: tuple[str, ...]
+    words: str
+    severity: Severity = Severity.ERROR
+    before: Values = field(default_factory=dict)
+    after: Values = field(default_factory=dict)
+
+
+def _put(sheet: str, **cells: object) -> Callable[[Workbook], None]:
+    def change(book: Workbook) -> None:
+        for place, value in cells.items():
+            book[sheet][place] = value
+
+    return change
+
+
+def _nothing(book: Workbook) -> None:
+    pass
+
+
+def _hide_row(book: Workbook) -> None:
+    book["Bends"].row_dimensions[7].hidden = True
+
+
+def _hide_columns(book: Workbook) -> None:
+    for letter in "CD":
+        book["Bends"].column_dimensions[letter].hidden = True
+
+
+def _hide_sheet(book: Workbook) -> None:
+    book["Inputs"].sheet_state = "hidden"
+
+
+def _format_with_a_call(book: Workbook) -> None:
+    book["Bends"].conditional_formatting.add("A5:A10", FormulaRule(formula=["TB_AREA(Units,$B5)>0.2"]))
+
+
+def _no_surge(book: Workbook) -> None:
+    book["Run"]["B16"] = "peak"
+    book["Run"]["D16"] = None
+
+
+def _no_cases(book: Workbook) -> None:
+    for row in range(8, 12):
+        book["Run"].cell(row, 15).value = None
+
+
+def _uneven_units(book: Workbook) -> None:
+    book["Bends"]["A16"] = "bore of the drain, area"
+    book["Bends"]["B16"] = '=TB_AREA("US",12)'
+
+
+W = Severity.WARNING
+FAULTS = {
+    "stored value": Fault(_nothing, "V01", ("Bends!G7",), "99", after={"Bends": {(7, 7): 99.0}}),
+    "stored value of a block": Fault(_nothing, "V01", ("Run!L9",), "1.5", after={"Run": {(9, 12): 1.5}}),
+    "stored value of a formula that depends on a call": Fault(
+        _nothing, "V01", ("Bends!I11",), "1.5", after={"Bends": {(11, 9): 1.5}}
+    ),
+    "missing value": Fault(_nothing, "V02", ("Bends!G7",), "no value", W, after={"Bends": {(7, 7): None}}),
+    "error": Fault(_put("Bends", E7=400.0), "V03", ("Bends!G7",), "theta = 6.98"),
+    "error in a row of a table": Fault(
+        _put("Run", D10="x", B18=None), "V03", ("Run!J10",), '"x" is not a number'
+    ),
+    "not recomputed": Fault(
+        _put("Inputs", B2='=CUBEVALUE("c","m")'),
+        "V04",
+        ("Inputs!B2",),
+        "CUBEVALUE",
+        W,
+        before={"Inputs": {(2, 2): 998.0}},
+    ),
+    "formula in a format": Fault(_format_with_a_call, "V05", ("Bends!A5:A10",), "TB_AREA", Severity.NOTE),
+    "number over a formula": Fault(_put("Bends", G8=5.0), "P01", ("Bends!G8",), "5 stands"),
+    "number over the last formula": Fault(
+        _put("Bends", **{f"G{LAST}": 5.0}), "P01", (f"Bends!G{LAST}",), "5"
+    ),
+    "number over a formula that depends on a call": Fault(
+        _put("Bends", I8=5.0), "P01", ("Bends!I8",), "1.5*G"
+    ),
+    "odd formula": Fault(
+        _put("Bends", G8='=TB_BEND("Fx",Units,rho,B8,C8,$D$5,E8)'), "P02", ("Bends!G8",), "$D$5", W
+    ),
+    "odd constant": Fault(_put("Bends", I7="=1.4*G7"), "P02", ("Bends!I7",), "1.4", W),
+    "odd last formula": Fault(
+        _put("Bends", **{f"F{LAST}": f"=TB_VELOCITY(Units,D{LAST},B{LAST - 1})"}),
+        "P02",
+        (f"Bends!F{LAST}",),
+        "TB_VELOCITY",
+        W,
+    ),
+    "two sets of units": Fault(_uneven_units, "U01", ("Bends!B16",), "diameter in in", W),
+    "unit above an argument": Fault(_put("Bends", D4="Q [gpm]"), "U02", ("Bends!D4",), '"gpm"'),
+    "unit above a result": Fault(_put("Bends", G4="Fx [N]"), "U02", ("Bends!G4",), '"N"'),
+    "unit beside a result": Fault(_put("Bends", C14="N"), "U02", ("Bends!C14",), '"N"'),
+    "unit beside an input": Fault(_put("Inputs", C3="bar"), "U02", ("Inputs!C3",), '"bar"'),
+    "unit of another quantity": Fault(_put("Bends", C4="p1 [mm]"), "U02", ("Bends!C4",), "no unit of"),
+    "unit above a column of a block": Fault(
+        lambda book: (
+            _put("Balance", F3="gpm")(book),
+            _put("Balance", B8='=TB_BALANCE("Fx",Units,rho,A2:F2,A4:F6)')(book),
+        ),
+        "U02",
+        ("Balance!F3",),
+        '"gpm"',
+    ),
+    "unit above a result of a block": Fault(_put("Run", O7="F [lbf]"), "U02", ("Run!O7",), '"lbf"'),
+    "flows that do not close": Fault(_put("Balance", F6=70.0), "M01", ("Balance!B8",), "do not close"),
+    "flows that close only by a wide tolerance": Fault(
+        _put("Balance", F6=79.0, B8='=TB_BALANCE("Fx",Units,rho,A2:F3,A4:F6,,,,,0.05)'),
+        "M01",
+        ("Balance!B8",),
+        "0.005",
+        W,
+    ),
+    "another density typed into a formula": Fault(
+        _put("Balance", B8='=TB_BALANCE("Fx",Units,1000,A2:F3,A4:F6)'), "D01", ("Balance!B8",), "1000", W
+    ),
+    "another density in the start of a run": Fault(_put("Run", B2=1000.0), "D01", ("Run!B2",), "1000", W),
+    "one label with two values": Fault(
+        _put("Balance", A10="test pressure", B10=950.0, A11="cap", B11='=TB_CLOSED("F",Units,400,B10)'),
+        "D01",
+        ("Balance!B10",),
+        "950",
+        W,
+    ),
+    "circle": Fault(_put("Inputs", E1="=E2+1", E2="=E1*2"), "S01", ("Inputs!E1",), "E1 -> Inputs!E2"),
+    "circle that a call is part of": Fault(
+        _put("Inputs", B3="=Bends!B14+1"), "S01", ("Inputs!B3",), "Inputs!B3 -> Bends!B14"
+    ),
+    "hidden row": Fault(_hide_row, "S02", ("Bends!7:7",), "row 7", W),
+    "hidden columns": Fault(_hide_columns, "S02", ("Bends!C:D",), "columns C to D", W),
+    "hidden sheet": Fault(_hide_sheet, "S02", ("Inputs",), "sheet is hidden", W),
+    "fast flow": Fault(_put("Bends", D6=700.0), "H01", ("Bends!G6",), "above 6 m/s", W),
+    "low pressure in a run": Fault(
+        lambda book: (_put("Run", D10=70.0)(book), _no_cases(book), _put("Run", O8=_cases(book))(book)),
+        "H01",
+        ("Run!I10", "Run!O10"),
+        "below",
+        W,
+    ),
+    "no surge case": Fault(_no_surge, "C01", ("Run!O8",), "no surge among", W),
+    "no load case": Fault(_no_cases, "C01", ("Run!I8",), "no load cases", W),
+}
+
+
+def _cases(book: Workbook) -> ArrayFormula:
+    return ArrayFormula("O8:O11", '=TB_RUNCASES("F",Units,A2:C5,A7:F7,A8:F11,A13:D16)')
+
+
+@pytest.mark.parametrize("name", FAULTS)
+def test_a_fault_is_found_and_nothing_else(name: str, tmp_path: Path) -> None:
+    fault = FAULTS[name]
+    book = clean_book()
+    fault.change(book)
+    found = findings(stored(book, tmp_path / "book.xlsx", fault.before, fault.after))
+    assert [(f.code, f.place) for f in found] == [(fault.code, place) for place in fault.places]
+    for finding in found:
+        assert finding.severity is fault.severity
+        assert fault.words in f"{finding.what} {finding.why}"
+        assert finding.what
+        assert finding.why
+
+
+def test_a_run_that_does_not_close_is_found(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    # The engine's runs close; so one of them is made to miss, where the rule asks for the closure.
+    call = rules_physics.dispatch.call
+
+    def missing(name: str, args: list[object]) -> object:
+        return 1e-3 if (name, args[0]) == ("TB_RUN", "closure") else call(name, args)
+
+    path = stored(clean_book(), tmp_path / "book.xlsx")
+    monkeypatch.setattr(rules_physics.dispatch, "call", missing)
+    found = [f for f in findings(path) if f.code != "V01"]
+    assert [(f.code, f.place) for f in found] == [("M02", "Run!I8")]
+
+
+def test_every_rule_has_a_fault() -> None:
+    codes = [rule.code for rule in RULES]
+    assert len(set(codes)) == len(codes)
+    assert {fault.code for fault in FAULTS.values()} | {"M02"} == set(codes)
