@@ -41,7 +41,7 @@ def xlwings_module(source: Path | None = None) -> str:
     add-in itself and never from the workbook that happens to be active: a
     workbook from elsewhere could name a program to be started there; and one
     Python serves all workbooks, not one for each. The conf sheet is read whichever
-    sheet is active. And the module is private, so that its helpers do not show
+    sheet is active. And the module is private, so that its functions do not show
     among the worksheet functions.
 
     Raises

@@ -18,6 +18,10 @@ class Omitted:
     """An argument left out, as against an empty cell."""
 
 
+class RowConstant(list[Any]):
+    """A row typed into the formula, {1,2,3}: Excel hands it over with one dimension only."""
+
+
 class Case(NamedTuple):
     """One call: the cells of the formula, and whether Excel hands ranges over as references."""
 
@@ -28,7 +32,10 @@ class Case(NamedTuple):
 
     def expected_arguments(self) -> list[Cell]:
         """Give the arguments as the dispatcher is to see them."""
-        return [None if isinstance(c, Omitted) else c for c in self.cells]
+        return [
+            None if isinstance(c, Omitted) else [list(c)] if isinstance(c, RowConstant) else c
+            for c in self.cells
+        ]
 
     def com_arguments(self) -> tuple[Any, ...]:
         """Give the arguments as COM hands them to xlwings."""
@@ -37,6 +44,8 @@ class Case(NamedTuple):
     def _com(self, cell: Any) -> Any:
         if isinstance(cell, Omitted):
             return MISSING
+        if isinstance(cell, RowConstant):
+            return tuple(self._plain(c) for c in cell)
         if isinstance(cell, list):
             rows = tuple(tuple(self._plain(c) for c in line) for line in cell)
             return ExcelRange(rows) if self.by_reference else rows
@@ -66,7 +75,7 @@ def cases(row: Row) -> Iterator[Case]:
     for i, cell in enumerate(start):
         for label, value in _values(row, i, cell):
             yield Case(name, f"argument {i + 1} {label}", (*start[:i], value, *start[i + 1 :]))
-            if isinstance(value, list) or value is None:
+            if type(value) is list or value is None:
                 changed = (*start[:i], value, *start[i + 1 :])
                 yield Case(name, f"argument {i + 1} {label} by reference", changed, by_reference=True)
 
@@ -90,6 +99,7 @@ def _values(row: Row, i: int, cell: Any) -> Iterator[tuple[str, Any]]:
         return
     yield "column", [[cell], [cell], [cell]]
     yield "row", [[cell, cell, cell]]
+    yield "row constant", RowConstant([cell, CellError("NA"), cell])
     yield "table", [[cell, cell], [cell, cell]]
     yield "mixed column", [[cell], [None], [""], [True], ["abc"], [CellError("DIV0")], [cell]]
     yield "mixed row", [[cell, None, "", False, "abc", CellError("NA"), cell]]

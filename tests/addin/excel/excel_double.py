@@ -64,6 +64,8 @@ class App:
 class Part:
     """A part of Excel that records what is set in it."""
 
+    record: Record
+
     def __init__(self, record: Record) -> None:
         self.__dict__["record"] = record
 

@@ -16,6 +16,7 @@ import sys
 import tempfile
 import threading
 import time
+from typing import Any
 
 import uno
 from com.sun.star.beans import PropertyValue
@@ -24,13 +25,13 @@ START_WITHIN = 90
 END_WITHIN = 240
 
 
-def _property(name, value):
+def _property(name: str, value: Any) -> Any:
     made = PropertyValue()
     made.Name, made.Value = name, value
     return made
 
 
-def _connect(pipe):
+def _connect(pipe: str) -> Any:
     local = uno.getComponentContext()
     resolver = local.ServiceManager.createInstanceWithContext("com.sun.star.bridge.UnoUrlResolver", local)
     last = time.monotonic() + START_WITHIN
@@ -43,7 +44,7 @@ def _connect(pipe):
             time.sleep(0.3)
 
 
-def _work(context, job):
+def _work(context: Any, job: dict[str, Any]) -> dict[str, Any]:
     desktop = context.ServiceManager.createInstanceWithContext("com.sun.star.frame.Desktop", context)
     hidden = (_property("Hidden", True), _property("MacroExecutionMode", 4))
     document = desktop.loadComponentFromURL("private:factory/scalc", "_blank", 0, hidden)
@@ -76,7 +77,7 @@ def _work(context, job):
     return {"answers": answers, "shown": shown}
 
 
-def main():
+def main() -> None:
     job_file, answer_file = sys.argv[1:]
     with open(job_file, encoding="utf-8") as source:
         job = json.load(source)

@@ -99,7 +99,7 @@ def test_an_error_cell_gives_that_same_error(name: str, answers: dict[str, list[
     for case, answer in answers[name]:
         number = case.label.removeprefix("argument ").split()[0]
         if " error " in case.label and not case.by_reference and int(number) > CATALOGUE[name].leading:
-            assert answer == MARKER[case.label.split()[-1]], case.label  # type: ignore[index]
+            assert answer == MARKER[case.label.split()[-1]], case.label
             seen += 1
     assert seen
 

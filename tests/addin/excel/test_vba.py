@@ -2,7 +2,7 @@
 
 LibreOffice stands for Excel, and a double written in Basic for xlwings' link to
 Python. Changed for the run are only the line that names the module, the word
-``Private`` where a test calls a helper, and ``Value2``, which LibreOffice knows
+``Private`` where a test calls an inner function, and ``Value2``, which LibreOffice knows
 as ``Value``. What LibreOffice cannot show is how Excel itself spreads an array.
 """
 
@@ -178,7 +178,7 @@ def office(tmp_path_factory: pytest.TempPathFactory) -> dict[str, Any]:
         stdin=subprocess.DEVNULL,
     )
     told = json.loads((folder / "answers").read_text(encoding="utf-8"))
-    return dict(zip(checks, told["answers"], strict=True)) | told["shown"]
+    return {**dict(zip(checks, told["answers"], strict=True)), **told["shown"]}
 
 
 RELINK_PARTS = r"""
