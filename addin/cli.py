@@ -12,8 +12,11 @@ COMMANDS = {
     "evaluate": "evaluate every formula of a workbook and store the values",
     "check": "find what a checker should look at: stale values, odd formulas, units, physics",
     "longhand": "make a copy with the long-hand working of every cell",
+    "detach": "make a copy that recalculates with no add-in",
     "new": "make a calculation workbook from a template",
     "functions": "list the worksheet functions, or describe one",
+    "install": "put the functions into a spreadsheet program: calc or excel",
+    "uninstall": "take the functions out of a spreadsheet program: calc or excel",
     "doctor": "tell what is installed and which hosts are available",
 }
 """Command -> what it does; the module of the same name in addin/commands runs it."""

@@ -30,12 +30,14 @@ def find(name: str = "soffice") -> Path | None:
     given = os.environ.get("THRUSTBOOK_SOFFICE")
     if given:
         beside = Path(given) if name == "soffice" else Path(given).resolve().with_name(name)
-        return next((p for p in (beside, beside.with_suffix(".exe")) if p.is_file()), None)
+        return next(
+            (p for p in (beside, beside.with_suffix(".com"), beside.with_suffix(".exe")) if p.is_file()), None
+        )
     found = shutil.which(name) or (shutil.which("libreoffice") if name == "soffice" else None)
     if found:
         return Path(found)
     for folder in _usual_folders():
-        for file in (folder / name, folder / f"{name}.exe", folder / f"{name}.com"):
+        for file in (folder / name, folder / f"{name}.com", folder / f"{name}.exe"):
             if file.is_file():
                 return file
     return None
