@@ -71,6 +71,13 @@ def why(args: Sequence[Cell]) -> Cell:
     return dispatch.why(name, args[1:])
 
 
+def working(args: Sequence[Cell]) -> Cell | Grid:
+    """TB_WORKING: the long-hand working of a call."""
+    from .longhand.working import working as shown  # late, as above
+
+    return shown(args)
+
+
 @functools.cache
 def product_version() -> str:
     """Give the version of the installed distribution."""

@@ -80,4 +80,30 @@ ROWS = (
         example='TB_VERSION("product")',
         longhand=NoLonghand(reason="The answer is text."),
     ),
+    Row(
+        name="TB_WORKING",
+        family=FAMILY,
+        summary="Shows the long-hand working of one call as a table: symbol, meaning, unit, equation, value. "
+        "The steps are worked as worksheet formulas, not by the engine.",
+        kind="tool",
+        has_units=False,
+        block=True,
+        args=(
+            Arg(name="name", role="text", text='name of the function, such as "TB_BEND"'),
+            Arg(
+                name="argument",
+                role="any",
+                text="the arguments of that call, in the same order",
+                empty="none",
+                required=False,
+                repeats=True,
+            ),
+        ),
+        results=_ANY,
+        routine=tools.working,
+        sign="As the function whose working is shown.",
+        reference="The long-hand working of that function",
+        example='TB_WORKING("TB_AREA", "metric", 300)',
+        longhand=NoLonghand(reason="It shows the working of another function."),
+    ),
 )

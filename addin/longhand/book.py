@@ -18,7 +18,7 @@ from ..units import UnitError
 from .arguments import Argument, Shape, in_group, resolve, same_datum, taken
 from .block import FIRST as FIRST_BLOCK
 from .block import Block, Check, new_block_sheet
-from .calls import Call, NotWorked, Outcome
+from .calls import Call, NotWorked, Outcome, render
 from .convert import Conversion
 from .grid import Sheet, quoted_sheet
 from .outcomes import BlockOutcome, Guard, RowsOutcome, WordsOutcome, named, written
@@ -197,7 +197,7 @@ class Book:
             last = [item for item in cell.items if isinstance(item, Call)][-1].outcome
             block = last.block if isinstance(last, BlockOutcome) else self._loose
             entry.formula = lambda: plain(cell.items, self.source, cell.sheet, written)
-            entry.formula_of = lambda i, j: entry.formula()
+            entry.formula_of = lambda i, j: render(cell.items, str, written)
             self._add_check(block, cell, entry, 0, 0, entry.formula, "")
             return
         outcome = only.outcome

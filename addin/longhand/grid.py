@@ -58,7 +58,7 @@ class Sheet:
             cells[col + i] = (content, style)
 
     def fit_height(self, row: int) -> None:
-        """Make a row as tall as its wrapped texts need; spreadsheets do not do so for a row they did not lay."""
+        """Make a row as tall as its wrapped texts need; not every spreadsheet does so by itself."""
         lines = max(
             (
                 -(-len(content) // max(1, int(self.widths.get(col, 9.0) * 1.1)))

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Collection, Iterator, Mapping, Sequence
 from typing import NamedTuple
 
 from ...cells import Scalar
@@ -70,10 +70,13 @@ def stored_values(xml: bytes, shared_strings: Sequence[str]) -> dict[Place, Scal
     return values
 
 
-def set_formulas(xml: bytes, formulas: Mapping[Place, str]) -> bytes:
+def set_formulas(
+    xml: bytes, formulas: Mapping[Place, str], single: Collection[Place] = frozenset()
+) -> bytes:
     """The sheet with other formulas, given without equals sign, in some cells.
 
-    The stored values of those cells go. An array formula stays one, with its extent. When a
+    The stored values of those cells go. An array formula stays one, with its extent, unless
+    its cell is in ``single``: it becomes an ordinary formula of that one cell. When a
     cell belongs to a group that shares one formula, every other cell of the group gets that
     formula written out and keeps its value. Raises ValueError for an empty formula or one
     that begins with an equals sign, :class:`Refusal` as :func:`store`.
@@ -96,13 +99,16 @@ def set_formulas(xml: bytes, formulas: Mapping[Place, str]) -> bytes:
         text, keep_value = change
         parts = frame.content(cell)
         kept = parts["fattrs"] or b""
-        if attributes(kept).get("t") != "array":
-            kept = _without(kept, ("t", "ref", "si", "dt2D", "dtr", "r1", "r2", "del1", "del2"))
+        alone = (cell.row, cell.col) in single
+        if alone or attributes(kept).get("t") != "array":
+            kept = _without(kept, ("t", "ref", "aca", "si", "dt2D", "dtr", "r1", "r2", "del1", "del2"))
         formula = f"<{prefix}f".encode() + kept + f">{escape(text)}</{prefix}f>".encode()
         if keep_value:
             attrs, value = cell.attrs, (parts["v"] or b"") + (parts["is"] or b"")
         else:
             attrs, value = with_type(cell.attrs, ""), b""
+            if alone:
+                attrs = _without(attrs, ("cm",))
         return f"<{prefix}c".encode() + attrs + b">" + formula + value + parts["rest"] + _end(prefix)
 
     def fresh(change: tuple[str, bool], place: str, style: str) -> str:
