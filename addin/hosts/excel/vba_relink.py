@@ -33,9 +33,10 @@ End Sub
 ' Excel does not take stays as it was.
 Private Function TbRelinkBook(ByVal tb_book As Object, ByVal tb_app As Object) As String
     Dim tb_sheet As Object, tb_cells As Object, tb_cell As Object, tb_name As Object
-    Dim tb_mode As Long, tb_done As Long, tb_left As String
+    Dim tb_mode As Long, tb_done As Long, tb_left As String, tb_whole As Boolean
     tb_mode = tb_app.Calculation
     tb_app.Calculation = -4135
+    On Error GoTo tb_out
     For Each tb_sheet In tb_book.Worksheets
         Set tb_cells = TbFormulaCells(tb_sheet)
         If Not tb_cells Is Nothing Then
@@ -51,6 +52,9 @@ Private Function TbRelinkBook(ByVal tb_book As Object, ByVal tb_app As Object) A
     For Each tb_name In tb_book.Names
         TbRelinkName tb_name, tb_done, tb_left
     Next tb_name
+    tb_whole = True
+tb_out:
+    If Not tb_whole Then tb_left = tb_left & vbLf & "the rest: " & Err.Description
     tb_app.Calculation = tb_mode
     TbRelinkBook = tb_done & " formulas with functions of thrustbook were entered again."
     If tb_left <> "" Then TbRelinkBook = TbRelinkBook & vbLf & "Left as they were:" & Left$(tb_left, 800)

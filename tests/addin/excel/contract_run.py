@@ -45,7 +45,7 @@ def main(target: Path) -> None:
 
     from .cases import all_cases
 
-    server = XLPython()
+    server: Any = XLPython()
     answers = [server.CallUDF(MODULE, case.name, case.com_arguments()) for case in all_cases()]
     book = Workbook()
     xlwings.import_udfs(MODULE, book)

@@ -118,7 +118,7 @@ def load_xlwings() -> Any:
         "win32com.server", util=util, policy=policy, dispatcher=dispatcher, exception=exception, __path__=[]
     )
     module("win32com", client=client, server=server, __path__=[])
-    ctypes.windll, ctypes.oledll = Anything(), Anything()
+    vars(ctypes).update(windll=Anything(), oledll=Anything())
     real_dll, ctypes.PyDLL = ctypes.PyDLL, Anything()  # type: ignore[misc, assignment]
     platform, sys.platform = sys.platform, "win32"
     try:

@@ -140,6 +140,12 @@ def office(tmp_path_factory: pytest.TempPathFactory) -> dict[str, Any]:
             f"s = TbPlain({quoted(formula)}, n)",
             f'Plain{i} = s & " " & n',
         ]
+    checks["RelinkFault"] = [
+        "Dim b As Object",
+        "Set b = New Book",
+        "b.Calculation = -4105",
+        "RelinkFault = TbRelinkBook(b, b) & Chr(10) & b.Calculation",
+    ]
     checks["Relink"] = RELINK.strip().split("\n")
     job = {
         "modules": {
@@ -275,6 +281,13 @@ def test_ranges_of_a_sheet_arrive_as_values(office: dict[str, Any]) -> None:
 def test_prefixes_are_stripped_from_our_functions_only(i: int, formula: str, office: dict[str, Any]) -> None:
     plain, calls = FORMULAS[formula]
     assert office[f"Plain{i}"] == f"{plain} {calls}"
+
+
+def test_relink_puts_the_calculation_back_after_a_fault(office: dict[str, Any]) -> None:
+    told = office["RelinkFault"].split("\n")
+    assert told[0].startswith("0 formulas")
+    assert told[2].startswith("the rest: ")
+    assert told[-1] == "-4105"
 
 
 def test_relink_enters_our_formulas_again_and_reports_the_rest(office: dict[str, Any]) -> None:
