@@ -76,7 +76,7 @@ def working(args: Sequence[Cell]) -> Cell | Grid:
 def _row(name: Cell) -> Row:
     if isinstance(name, CellError):
         raise Refused(name.kind, name.message or f"name is the error {name}")
-    if not isinstance(name, str):
+    if not isinstance(name, str) or is_blank(name):
         raise Refused("VALUE", 'name is not a word (allowed: a function, such as "TB_BEND")')
     row = CATALOGUE.get(name.strip().upper())
     if row is None:
