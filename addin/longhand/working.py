@@ -74,6 +74,8 @@ def working(args: Sequence[Cell]) -> Cell | Grid:
 
 
 def _row(name: Cell) -> Row:
+    if isinstance(name, list) and len(name) == 1 and len(name[0]) == 1:
+        name = name[0][0]
     if isinstance(name, CellError):
         raise Refused(name.kind, name.message or f"name is the error {name}")
     if not isinstance(name, str) or is_blank(name):
