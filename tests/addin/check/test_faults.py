@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
+from types import MappingProxyType
 
 import openpyxl
 import pytest
@@ -13,7 +14,9 @@ from openpyxl import Workbook
 from openpyxl.formatting.rule import FormulaRule
 from openpyxl.worksheet.formula import ArrayFormula
 
-from thrustbook.addin.check import rules_physics
+from thrustbook.addin.catalogue.registry import CATALOGUE
+from thrustbook.addin.catalogue.types import Longhand
+from thrustbook.addin.check import calls, rules_physics
 from thrustbook.addin.check.rules import RULES
 from thrustbook.addin.check.types import Severity
 
@@ -215,7 +218,44 @@ def test_a_run_that_does_not_close_is_found(tmp_path: Path, monkeypatch: pytest.
     assert [(f.code, f.place) for f in found] == [("M02", "Run!I8")]
 
 
+def _working(monkeypatch: pytest.MonkeyPatch, name: str, symbol: str, formula: str) -> None:
+    """Put another formula into one step of a working, as if function and working came apart."""
+    row = CATALOGUE[name]
+    assert isinstance(row.longhand, Longhand)
+    steps = [replace(s, formula=formula) if s.symbol == symbol else s for s in row.longhand.steps]
+    assert list(row.longhand.steps) != steps
+    changed = MappingProxyType(
+        dict(CATALOGUE) | {name: replace(row, longhand=replace(row.longhand, steps=tuple(steps)))}
+    )
+    monkeypatch.setattr(calls, "CATALOGUE", changed)
+
+
+@pytest.mark.parametrize(
+    ("formula", "words"), [("{Q}/{A}*(1+1E-7)", "1.41471"), ("{Q}/0", "#DIV/0!")], ids=["near", "error"]
+)
+def test_a_working_that_gives_another_value_is_found(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, formula: str, words: str
+) -> None:
+    path = stored(clean_book(), tmp_path / "book.xlsx")
+    _working(monkeypatch, "TB_VELOCITY", "V", formula)
+    found = findings(path)
+    assert [(f.code, f.place, f.severity) for f in found] == [("L01", "Bends!F5:F10", Severity.ERROR)]
+    assert words in found[0].what
+
+
+def test_a_working_of_ranges_is_compared_element_by_element(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    book = clean_book()
+    book["Bends"]["K5"] = ArrayFormula("K5:K10", "=TB_VELOCITY(Units,D5:D10,B5:B10)")
+    path = stored(book, tmp_path / "book.xlsx")
+    assert findings(path) == []
+    _working(monkeypatch, "TB_VELOCITY", "V", "IF({D}>0.5,1.1,1)*{Q}/{A}")
+    # The array comes first; the single cell F10 has the same arguments and is not told again.
+    assert [(f.code, f.place) for f in findings(path)] == [("L01", "Bends!K10")]
+
+
 def test_every_rule_has_a_fault() -> None:
     codes = [rule.code for rule in RULES]
     assert len(set(codes)) == len(codes)
-    assert {fault.code for fault in FAULTS.values()} | {"M02"} == set(codes)
+    assert {fault.code for fault in FAULTS.values()} | {"L01", "M02", "M03"} == set(codes)
