@@ -8,8 +8,9 @@ from dataclasses import dataclass, field
 from typing import NamedTuple
 
 from ...cells import CellError, Grid, Scalar
+from ...dispatch import headings
 from .a1 import to_a1
-from .areas import OUTSIDE
+from .areas import OUTSIDE, Area
 from .elsewhere import elsewhere
 from .host import Functions, Host
 from .model import Model, Node
@@ -72,6 +73,9 @@ class Table(NamedTuple):
     a1: str
     function: str
     grid: Grid
+    result: str = ""
+    labels: tuple[str, ...] = ()
+    units: tuple[str, ...] = ()
 
 
 @dataclass
@@ -135,17 +139,32 @@ def evaluate_workbook(
             for node in model.nodes
             if node.cell.value is None and node.index not in settlement.kept
         }
+    results = Results(settlement, wanted)
+    evaluation.warnings += settlement.warnings + _built_on_stale(settlement, affected)
+    _Report(evaluation, settlement, results, affected).write()
+    settlement.release()  # the evaluated copy and the new sheets together would be the peak of memory
     if progress is not None:
         progress("store", 0, len(package.sheets))
-    results = Results(settlement, wanted)
     evaluation.replaced, evaluation.stored = results.stored()
-    evaluation.warnings += settlement.warnings
     if package.signed and evaluation.replaced:
         evaluation.warnings.append("the digital signature of the file becomes invalid when values are stored")
-    _Report(evaluation, settlement, results, affected).write()
     if progress is not None:
         progress("store", len(package.sheets), len(package.sheets))
     return evaluation
+
+
+def _built_on_stale(settlement: Settlement, affected: set[int]) -> list[str]:
+    """Results that rest on a stored value which should have changed."""
+    stale = affected & settlement.kept.keys()
+    model = settlement.model
+    below = sorted(model.graph().dependents(stale) - settlement.kept.keys()) if stale else []
+    if not below:
+        return []
+    places = ", ".join(model.where(model.nodes[index]) for index in below[:5])
+    return [
+        f"{len(below)} cells were computed from values that could not be renewed: {places}"
+        + (", ..." if len(below) > 5 else "")
+    ]
 
 
 def _ticker(progress: Progress | None, total: int) -> Callable[[], None] | None:
@@ -198,7 +217,7 @@ class _Report:
         area = node.area
         if area is not None and area.grid is not None and node.index not in self._settlement.failed:
             if area.function is not None and self._model.functions.block.get(area.function):
-                self._to.tables.append(Table(self._sheet(node), node.a1, area.function, area.result()))
+                self._table(node, area)
             several = area.kind == "plain" and area.grid.size > 1
         else:
             several = area is None and self._settlement.gave_several(node)
@@ -207,6 +226,17 @@ class _Report:
                 f"{self._model.where(node)}: the formula gives several cells but stands in one; "
                 "it shows the first. Enter it as an array formula to see all of them."
             )
+
+    def _table(self, node: Node, area: Area) -> None:
+        """List the result of a block; headings and single values are no tables."""
+        result = area.leading[0] if area.leading else None
+        head = isinstance(result, str) and result.strip().lower().startswith(("labels", "units"))
+        grid = area.result()
+        if head or grid.size == 1 or area.function is None:
+            return
+        labels, units = headings(area.function, area.leading, grid.shape[1])
+        table = Table(self._sheet(node), node.a1, area.function, grid, str(result or ""), labels, units)
+        self._to.tables.append(table)
 
     def _errors(self, node: Node) -> None:
         failed = self._settlement.failed.get(node.index)

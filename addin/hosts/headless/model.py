@@ -17,7 +17,6 @@ from .formulas import (
     Rewritten,
     Unreadable,
     calls,
-    function_name,
     functions,
     join,
     one_cell,
@@ -34,6 +33,7 @@ _A1 = re.compile(
     r"\$?([A-Za-z]{1,3})\$?([0-9]{1,7})(?::\$?([A-Za-z]{1,3})\$?([0-9]{1,7}))?"
     r"|\$?([A-Za-z]{1,3}):\$?([A-Za-z]{1,3})|\$?([0-9]{1,7}):\$?([0-9]{1,7})"
 )
+_DIGITS = re.compile(r"[0-9]+")
 _ANYWHERE = frozenset(("INDIRECT", "OFFSET"))  # may read any cell
 
 
@@ -123,6 +123,8 @@ class Model:
         self._sheet_index = {name.casefold(): i for i, name in enumerate(self.sheet_names)}
         self._known = Known()
         self._of_name: dict[NameRef, _Seen] = {}
+        # Formulas of the spreadsheet's own that need no rewriting, row numbers apart.
+        self._unchanged: set[str] = set()
         self._missing: dict[frozenset[str], str] = {}
         self.nodes: list[Node] = []
         self.areas: list[Area] = []
@@ -190,11 +192,15 @@ class Model:
     def _copy(self, node: Node, parts: list[Part]) -> str:
         """The formula in the evaluation copy."""
         cell = node.cell
-        if cell.kind == "plain" and not node.calls and not _wants_rewriting(parts):
+        own = cell.kind == "plain" and not node.calls
+        shape = _DIGITS.sub("0", cell.text) if own else ""
+        if own and shape in self._unchanged:
             return join(parts)
         if cell.kind == "plain":
             parts = one_cell(parts)
         rewritten = rewrite(parts)
+        if own and not rewritten.may_be_array and rewritten.text == cell.text:
+            self._unchanged.add(shape)
         if node.calls:
             node.rewritten = rewritten
         whole = rewritten.whole
@@ -285,25 +291,6 @@ class Model:
         seen.anywhere = seen.anywhere or inner.anywhere
         seen.outside = seen.outside or inner.outside
         seen.functions |= inner.functions
-
-
-def _wants_rewriting(parts: list[Part]) -> bool:
-    for part in parts:
-        if part.kind is Kind.ARRAY_OPEN or (part.kind is Kind.REFERENCE and not _one_cell(part.text)):
-            return True
-        if part.kind is Kind.OPEN and function_name(part.text) in _MAY_GIVE_ARRAY:
-            return True
-    return False
-
-
-_ONE = re.compile(r"(?:.*!)?\$?[A-Za-z]{1,3}\$?[0-9]+", re.DOTALL)
-_MAY_GIVE_ARRAY = frozenset(
-    ("SINGLE", "ANCHORARRAY", "INDEX", "INDIRECT", "MUNIT", "OFFSET", "RANDARRAY", "SEQUENCE", "TEXTSPLIT")
-)
-
-
-def _one_cell(operand: str) -> bool:
-    return _ONE.fullmatch(operand) is not None
 
 
 def _rect(match: re.Match[str]) -> tuple[int, int, int, int] | None:

@@ -53,6 +53,11 @@ class Settlement:
                     "results that depend on each other did not settle; look for a circular reference"
                 )
                 return
+            self.release()  # two evaluated copies at a time would take twice the memory
+
+    def release(self) -> None:
+        """Let go of the evaluated copy; nothing can be asked of it any more."""
+        del self.run
 
     def affected(self) -> set[int]:
         """The formulas that call a TB_ function or depend on one that does."""

@@ -4,12 +4,16 @@ from __future__ import annotations
 
 import re
 import zipfile
+from datetime import datetime
 from pathlib import Path
 from typing import Any
 
 import pytest
 
 from thrustbook.addin.hosts.headless.host import Functions
+from thrustbook.addin.hosts.headless.model import Model
+from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.hosts.headless.run import reader
 
 from .books import FUNCTIONS, evaluate, make, values, with_values
 
@@ -222,9 +226,7 @@ def test_kinds_of_values(path: Path) -> None:
 
 
 def test_a_date_reaches_the_function_as_its_number(path: Path) -> None:
-    import datetime
-
-    make(path, {"S": {"A1": datetime.datetime(2024, 1, 5), "B1": "=TB_TWICE(A1)", "B2": "=TB_ECHO(A1:A1)"}})
+    make(path, {"S": {"A1": datetime(2024, 1, 5), "B1": "=TB_TWICE(A1)", "B2": "=TB_ECHO(A1:A1)"}})
     evaluate(path)
     assert values(path)["B1"] == 2 * 45296
     assert "45296.0" in values(path)["B2"]
@@ -358,3 +360,36 @@ def test_functions_are_called_once_for_a_cell(path: Path) -> None:
     make(path, {"S": {"A1": 3, "B1": "=TB_TWICE(A1)", "B2": "=B1+1", "B3": "=SUM(B1:B2)"}})
     evaluate(path, Functions(call, FUNCTIONS.block))
     assert made == ["TB_TWICE"]
+
+
+@pytest.mark.parametrize("chosen", ["native", "umya"])
+def test_both_readers_of_the_evaluator_see_the_same_workbook(
+    path: Path, monkeypatch: pytest.MonkeyPatch, chosen: str
+) -> None:
+    monkeypatch.setattr("thrustbook.addin.hosts.headless.run.reader", lambda model: chosen)
+    make(
+        path,
+        {
+            "S": {"A1": 3, "A2": "text", "A3": True, "A4": "#DIV/0!", "A5": datetime(2024, 1, 5),
+                  "B1": "=TB_ECHO(A1:A6)",
+                  "C1": ("C1:D2", "=TB_GRID(2,2)"), "E1": "=SUM(C1:D2)+TB_TWICE(Q)",
+                  "E2": "=TB_DEFAULT(1,,3)"},
+            "In puts": {"A1": "Flow", "A2": 10, "B1": "=SUM(T[Flow])+S!E1"},
+        },
+        names={"Q": "'In puts'!$A$2"},
+        tables=[("In puts", "T", "A1:A2")],
+    )  # fmt: skip
+    evaluate(path)
+    stored = values(path)
+    assert stored["B1"] == (
+        "[[[3.0], ['text'], [True], [CellError(kind='DIV0', message='')], [45296.0], [None]]]"
+    )
+    assert (stored["E1"], stored["E2"], values(path, "In puts")["B1"]) == (30, 173, 40)
+
+
+def test_the_slow_reader_is_for_many_formulas_with_ranges(path: Path) -> None:
+    chosen: dict[int, str] = {}
+    for rows in (20, 6000):
+        make(path, {"S": {f"B{row}": f"=TB_TWICE(1)+SUM(A{row}:A{row + 1})" for row in range(1, rows + 1)}})
+        chosen[rows] = reader(Model(Package.read(path), FUNCTIONS))
+    assert chosen == {20: "native", 6000: "umya"}

@@ -172,3 +172,14 @@ def test_a_kept_array_formula_keeps_all_its_cells(path: Path) -> None:
     )
     evaluate(path)
     assert values(path) == {"A1": 3, "B1": 7, "B2": 8, "C1": 16, "C2": 14}
+
+
+def test_results_that_rest_on_a_stale_value_are_named(path: Path) -> None:
+    make(
+        path,
+        {"S": {"A1": 3, "B1": "=TB_TWICE(A1)", "B2": "=NOSUCHFUNCTION(B1)", "B3": "=TB_TWICE(B2)"}},
+        edit=with_values({"B2": "<v>5</v>"}),
+    )
+    evaluation = evaluate(path)
+    assert values(path)["B3"] == 10
+    assert evaluation.warnings == ["1 cells were computed from values that could not be renewed: S!B3"]
