@@ -10,6 +10,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+import numpy as np
+
 from thrustbook.engine.errors import EngineError
 
 from . import elements, tabular
@@ -52,6 +54,21 @@ def call(name: str, args: Sequence[Cell]) -> Cell | Grid:
         return CellError("VALUE", "the call needs more memory than there is")
     except Exception as error:  # a fault of ours must not take the host down
         return CellError("VALUE", f"internal fault in {name}: {type(error).__name__}: {error}")
+
+
+def headings(name: str, leading: Sequence[Cell], width: int) -> tuple[tuple[str, ...], tuple[str, ...]]:
+    """Give the labels and units over the columns of a block call's answer.
+
+    ``leading`` are the call's first two arguments, wanted result and units. Both are
+    empty where the answer has no headings of that width.
+    """
+    result = leading[0] if leading and isinstance(leading[0], str) else ""
+    units = leading[1] if len(leading) > 1 else None
+    found = []
+    for form in ("labels", "units"):
+        row = call(name, [f"{form}: {result}", units])
+        found.append(tuple(map(str, row[0])) if isinstance(row, np.ndarray) and row.shape[1] == width else ())
+    return found[0], found[1]
 
 
 def why(name: str, args: Sequence[Cell]) -> str:

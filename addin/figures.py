@@ -43,7 +43,9 @@ def table(
 def _column(cells: Sequence[object], headings: int, digits: int) -> list[str]:
     body = cells[headings:]
     values = [float(c) for c in body if isinstance(c, int | float | np.floating) and not isinstance(c, bool)]
-    if values:
+    if values and all(type(c) is int for c in body):
+        texts = [str(c) for c in body]
+    elif values:
         largest = max(map(abs, values))
         decimals = min(6, max(0, digits - 1 - int(np.floor(np.log10(largest)))) if largest else 0)
         texts = [

@@ -38,7 +38,7 @@ THRUST: Final = (
     "bearing",
     "note",
 )
-HYDRAULICS: Final = ("Q1", "Q2", "HGL2", "EGL2", "hf", "hK", "po", "drag", "W")
+HYDRAULICS: Final = ("name", "Q1", "Q2", "HGL2", "EGL2", "hf", "hK", "po", "drag", "W")
 ENVELOPE: Final = ("name", "F", "case_F", "Fh", "case_Fh", "bearing") + (
     "Fx",
     "case_Fx",

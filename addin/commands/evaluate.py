@@ -52,7 +52,8 @@ def run(options: argparse.Namespace) -> int:
         with Progress() as progress:
             evaluation = _evaluator(options.host)(package, progress=progress, fill_native=options.fill)
         changed = {part: data for part, data in evaluation.replaced.items() if data != package.part(part)}
-        if changed or target.resolve() != options.book.resolve():
+        wrote = bool(changed) or target.resolve() != options.book.resolve()
+        if wrote:
             package.save(target, changed)
     except Refusal as refusal:
         print(f"{options.book}: {refusal}", file=sys.stderr)
@@ -64,7 +65,7 @@ def run(options: argparse.Namespace) -> int:
     if options.json:
         print(json.dumps(as_data(evaluation, options.book, target), indent=1, ensure_ascii=False))
     else:
-        print("\n".join(report(evaluation, options.book, target, seconds, options.rows)))
+        print("\n".join(report(evaluation, options.book, target, seconds, options.rows, wrote)))
     return 0 if evaluation.ok else 1
 
 
@@ -76,7 +77,9 @@ def _evaluator(host: str) -> Callable[..., Evaluation]:
     return evaluate_in_calc
 
 
-def report(evaluation: Evaluation, book: Path, target: Path, seconds: float, rows: int) -> list[str]:
+def report(
+    evaluation: Evaluation, book: Path, target: Path, seconds: float, rows: int, changed: bool
+) -> list[str]:
     """Lay the outcome out for reading."""
     out = [
         f"{book.name}: {len(evaluation.cells)} cells with our functions, {evaluation.stored} values stored"
@@ -86,7 +89,7 @@ def report(evaluation: Evaluation, book: Path, target: Path, seconds: float, row
     if evaluation.counts:
         out += ["", "Calls"]
         out += figures.table(
-            [("function", "cells"), *((name, float(n)) for name, n in sorted(evaluation.counts.items()))]
+            [("function", "cells"), *((name, n) for name, n in sorted(evaluation.counts.items()))]
         )
     for table in evaluation.tables:
         out += ["", *table_text(table, rows)]
@@ -116,7 +119,8 @@ def table_text(table: Table, rows: int) -> list[str]:
     grid = table.grid.tolist()
     shown = grid if len(grid) <= rows else grid[:rows]
     headings = [list(h) for h in (table.labels, table.units) if h]
-    out = [f"{table.sheet}!{table.a1}  {table.function}, {len(grid)} rows"]
+    wanted = "" if table.labels else f" {table.result}"
+    out = [f"{table.sheet}!{table.a1}  {table.function}{wanted}, {len(grid)} rows"]
     out += figures.table([*headings, *shown], headings=len(headings))
     if len(grid) > len(shown):
         out.append(f"  ... {len(grid) - len(shown)} more rows")

@@ -18,7 +18,7 @@ from formualizer import Workbook
 
 from ...cells import CellError, Grid
 from .a1 import to_a1
-from .host import Host, as_grid, engine_rows, engine_value, storable
+from .host import Host, arguments, as_grid, engine_rows, engine_value, storable
 
 SPILL_LIMIT = 10_000  # cells that the evaluator is willing to spill
 AREA = "THRUSTBOOK.AREA"  # AREA(number, value)
@@ -33,7 +33,8 @@ OUTSIDE = CellError("NA", "the array formula covers more cells than its result h
 class Area:
     """One formula that may give several cells.
 
-    ``function`` is set when the formula is one TB_ call and nothing else. ``grid`` is
+    ``function`` is set when the formula is one TB_ call and nothing else; ``leading``
+    are then its first two arguments, wanted result and units. ``grid`` is
     the latest result, whole. ``tiled`` is the shape that the evaluation copy has tiles for.
     """
 
@@ -44,6 +45,7 @@ class Area:
     ref: Extent | None
     function: str | None
     grid: Grid | None = None
+    leading: tuple[Any, ...] = ()
     tiled: tuple[int, int] | None = None
 
     def __post_init__(self) -> None:
@@ -138,6 +140,7 @@ def register_areas(workbook: Workbook, host: Host, areas: list[Area]) -> None:
 
     def call(number: float, *values: Any) -> Any:
         area = areas[int(number)]
+        area.leading = tuple(arguments(values[:2]))
         return area.settle(host.call(area.function or "", values))
 
     def keep(number: float, value: Any) -> Any:
