@@ -81,11 +81,10 @@ def report(
     evaluation: Evaluation, book: Path, target: Path, seconds: float, rows: int, changed: bool
 ) -> list[str]:
     """Lay the outcome out for reading."""
-    out = [
-        f"{book.name}: {len(evaluation.cells)} cells with our functions, {evaluation.stored} values stored"
-    ]
-    out[0] += f" in {target}" if target != book else ""
-    out.append(f"  in {seconds:.2f} s")
+    cells = len(evaluation.cells)
+    done = f"{cells} cell{'s' * (cells != 1)} with our functions, {evaluation.stored} values"
+    where = f"stored in {target}" if changed else "all as they stand in the file"
+    out = [f"{book.name}: {done}, {where} ({seconds:.2f} s)"]
     if evaluation.counts:
         out += ["", "Calls"]
         out += figures.table(
