@@ -228,6 +228,14 @@ class _Outcome:
     def _errors(self, node: Node, grid: Grid) -> None:
         bad = 0
         sheet, formula = self._model.sheet_names[node.sheet], "=" + node.cell.text
+        if node.cell.kind == "array":
+            inside = _without_outside(grid)
+            if inside.size < grid.size:
+                self._to.warnings.append(
+                    f"{self._model.where(node)}: the array formula covers more cells than its result has; "
+                    "the others hold #N/A"
+                )
+            grid = inside
         for row, line in enumerate(grid.tolist(), node.cell.row):
             for col, value in enumerate(line, node.cell.col):
                 if isinstance(value, CellError):
@@ -240,6 +248,15 @@ class _Outcome:
                 f"{self._model.where(node)}: {bad} cells of the result are errors; "
                 f"the first {_MOST_ERRORS} are listed"
             )
+
+
+def _without_outside(grid: Grid) -> Grid:
+    """The part of an array without the rows and columns at its end that are all #N/A."""
+    na = np.array([[type(v) is CellError and v.kind == "NA" for v in line] for line in grid.tolist()])
+    rows, columns = np.flatnonzero(~na.all(axis=1)), np.flatnonzero(~na.all(axis=0))
+    if not rows.size or not columns.size:
+        return grid
+    return grid[: rows[-1] + 1, : columns[-1] + 1]
 
 
 def _grid(node: Node, answer: Any) -> Grid:

@@ -157,7 +157,8 @@ class Formula:
         taken = new.queryContentCells(OF_CELLS)
         if taken.getCount():
             self.blocked = taken.getByIndex(0).getCellByPosition(0, 0).AbsoluteName
-            old.setArrayFormula("=" + expression)
+            # What refers to the formula must fail with it.
+            self.sheet.getCellByPosition(self.column, self.row).setFormula("=#VALUE!")
             return
         new.setArrayFormula("=" + expression)
         self.row2, self.column2 = row2, column2

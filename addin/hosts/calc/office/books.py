@@ -95,7 +95,9 @@ def _unbound_areas(sheet: Any) -> Iterator[tuple[Any, Any]]:
 
 def _bind(sheet: Any, found: tuple[Any, Any]) -> int:
     area, formulas = found
-    if not any(text.startswith("{") for line in formulas for text in line):
+    arrays = any(text.startswith("{") for line in formulas for text in line)
+    # A whole area at once is quick; a protected sheet takes only cell by cell.
+    if not arrays and not sheet.isProtected():
         new = tuple(tuple(plain(text) or text for text in line) for line in formulas)
         area.setFormulaArray(new)
         return sum(bool(plain(text)) for line in formulas for text in line)
