@@ -110,6 +110,7 @@ def sheet(report: Report, taken: Iterable[str]) -> Sheet:
     used = {name.casefold() for name in taken}
     names = ("Findings", *(f"Findings {n}" for n in range(2, len(used) + 3)))
     out = Sheet(next(name for name in names if name.casefold() not in used))
+    out.footer = "Findings of the check"
     out.widths = dict(enumerate(map(float, _WIDTHS), 1))
     out.put(1, 1, f"Findings of the check of {report.record.workbook}", "title")
     row = 3
@@ -128,8 +129,7 @@ def sheet(report: Report, taken: Iterable[str]) -> Sheet:
         out.line(row, [severity, finding.code, finding.place, finding.what, finding.why], "wrapped")
         if entry is not None:
             out.line(row, [f"{entry.initials} {entry.date}", entry.reason], "wrapped", col=6)
-        lines = max(-(-len(text) // 50) for text in (finding.what, finding.why))
-        out.heights[row] = 15.0 * max(1, lines)
+        out.fit_height(row)
         target = finding.cell or "A1"
         out.links.append(Link(row, 3, f"{quoted_sheet(finding.sheet)}!{target}"))
     if not report.open and not report.accepted:

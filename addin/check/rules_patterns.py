@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator
 
 from ..figures import figure
@@ -12,7 +13,7 @@ from .gather import Remark, figures, joined
 from .types import Finding, Rule, Severity
 
 _LONG = 3
-"""Formulas in a row, all alike, that make a run which the next cell is expected to continue."""
+"""Formulas in line, all alike, that the next cell is expected to continue."""
 _GAP = 50
 """Cells of numbers inside a run of formulas that are still taken for typed over."""
 _DOWN, _ACROSS = (1, 0), (0, 1)
@@ -22,9 +23,14 @@ def overtyped(book: Book) -> Iterator[Finding]:
     """P01: a number stands where the formulas around it say that a formula belongs."""
     found: dict[Place, Node] = {}
     for step in (_DOWN, _ACROSS):
-        for run in _runs(book, step):
+        runs = list(_runs(book, step))
+        in_line: Counter[tuple[int, int, str]] = Counter()
+        for run in runs:
+            in_line[_line(book, run[0], step)] += len(run)
+        for run in runs:
             if run[0].index in book.affected and not run[0].area:
-                for place in _numbers_after(book, run, step):
+                long = in_line[_line(book, run[0], step)] >= _LONG
+                for place in _numbers_after(book, run, step, long):
                     found.setdefault(place, run[-1])
     remarks = []
     for (sheet, row, col), like in found.items():
@@ -69,7 +75,12 @@ def _runs(book: Book, step: tuple[int, int]) -> Iterator[list[Node]]:
         yield run
 
 
-def _numbers_after(book: Book, run: list[Node], step: tuple[int, int]) -> Iterator[Place]:
+def _line(book: Book, node: Node, step: tuple[int, int]) -> tuple[int, int, str]:
+    """The column (or row) of a formula and its form: what a long run has in common."""
+    return node.sheet, node.cell.col if step == _DOWN else node.cell.row, book.signatures[node.index]
+
+
+def _numbers_after(book: Book, run: list[Node], step: tuple[int, int], long: bool) -> Iterator[Place]:
     """Numbers that interrupt a run, or that stand at either end of a long one with inputs of their own."""
     last, first = run[-1], run[0]
     gap: list[Place] = []
@@ -92,7 +103,7 @@ def _numbers_after(book: Book, run: list[Node], step: tuple[int, int]) -> Iterat
     before = [ahead] if ahead is not None and _typed_number(book, ahead) else []
     if before and _typed_number(book, _moved(before[0], back)):
         before = []
-    if len(run) >= _LONG:
+    if long:
         for place in after + before:
             if _has_inputs(book, last, place):
                 yield place

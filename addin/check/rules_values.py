@@ -86,7 +86,7 @@ def stale(book: Book) -> Iterator[Finding]:
 def _apart(old: Scalar, new: Scalar) -> str:
     if isinstance(old, float) and isinstance(new, float) and new:
         share = abs(old - new) / abs(new)
-        return f" ({share:.2g} of it apart)" if math.isfinite(share) else ""
+        return f" (a difference of {share:.2g} of it)" if math.isfinite(share) else ""
     return ""
 
 

@@ -43,8 +43,11 @@ class Sheet:
     title_rows: tuple[int, int] | None = None
     title_columns: tuple[int, int] | None = None
     fit_width: bool = True
+    merges: list[tuple[int, int, int]] = field(default_factory=list)
+    """Cells of a row that are one: row, first and last column."""
     verdicts: list[str] = field(default_factory=list)
     """Areas whose words "agrees" and "differs" are coloured."""
+    footer: str = "Long-hand working"
     freeze: tuple[int, int] | None = None
     """Rows and columns that stay when the sheet is scrolled."""
 
@@ -56,6 +59,17 @@ class Sheet:
         cells = self.cells.setdefault(row, {})
         for i, content in enumerate(contents):
             cells[col + i] = (content, style)
+
+    def spread(self, row: int, first: int, last: int, content: str, style: str) -> None:
+        """Put a text over several columns."""
+        self.put(row, first, content, style)
+        for col in range(first + 1, last + 1):
+            self.put(row, col, "", style)
+        self.merges.append((row, first, last))
+        width = sum(self.widths.get(col, 13.0) for col in range(first, last + 1))
+        lines = -(-len(content) // int(width * (1.0 if style == "mono" else 1.1)))
+        if lines > 1:
+            self.heights[row] = max(self.heights.get(row, 0.0), 13.0 * lines + 2)
 
     def fit_height(self, row: int) -> None:
         """Make a row as tall as its wrapped texts need; not every spreadsheet does so by itself."""

@@ -86,6 +86,11 @@ def _formula(text: str, value: Any) -> str:
 
 def _below(sheet: Sheet, dxfs: Mapping[str, int]) -> Iterator[str]:
     """What follows the cells, in the order that the format asks for."""
+    if sheet.merges:
+        yield f'<mergeCells count="{len(sheet.merges)}">'
+        for row, first, last in sheet.merges:
+            yield f'<mergeCell ref="{local(row, first)}:{local(row, last)}"/>'
+        yield "</mergeCells>"
     priority = 1
     for area in sheet.verdicts:
         yield f'<conditionalFormatting sqref="{area}">'
@@ -108,7 +113,7 @@ def _below(sheet: Sheet, dxfs: Mapping[str, int]) -> Iterator[str]:
     yield f'<pageSetup orientation="landscape"{fit}/>'
     yield (
         "<headerFooter><oddHeader>&amp;L&amp;F&amp;R&amp;A</oddHeader>"
-        "<oddFooter>&amp;LLong-hand working&amp;RPage &amp;P of &amp;N</oddFooter></headerFooter>"
+        f"<oddFooter>&amp;L{escape(sheet.footer)}&amp;RPage &amp;P of &amp;N</oddFooter></headerFooter>"
     )
     for tag, breaks, end in (
         ("rowBreaks", sheet.row_breaks, 16383),
