@@ -94,8 +94,9 @@ def _bare(text: str, role: str) -> Unit | None:
     """A text that is nothing but a unit of the role."""
     if not text or text[0].isdigit() or text == "-":
         return None
+    inside = text[1:-1] if text[0] + text[-1] in ("[]", "()") else text
     try:
-        return unit(text.strip("[]()"), role)
+        return unit(inside, role)
     except UnitError:
         return None
 

@@ -26,7 +26,8 @@ def overtyped(book: Book) -> Iterator[Finding]:
         runs = list(_runs(book, step))
         in_line: Counter[tuple[int, int, str]] = Counter()
         for run in runs:
-            in_line[_line(book, run[0], step)] += len(run)
+            if len(run) > 1:
+                in_line[_line(book, run[0], step)] += len(run)
         for run in runs:
             if run[0].index in book.affected and not run[0].area:
                 long = in_line[_line(book, run[0], step)] >= _LONG
@@ -103,10 +104,22 @@ def _numbers_after(book: Book, run: list[Node], step: tuple[int, int], long: boo
     before = [ahead] if ahead is not None and _typed_number(book, ahead) else []
     if before and _typed_number(book, _moved(before[0], back)):
         before = []
-    if long:
-        for place in after + before:
-            if _has_inputs(book, last, place):
+    for near, places in ((last, after), (first, before)):
+        for place in places:
+            if (long or _goes_on_beside(book, near, place, step)) and _has_inputs(book, near, place):
                 yield place
+
+
+def _goes_on_beside(book: Book, near: Node, place: Place, step: tuple[int, int]) -> bool:
+    """Whether the line beside this one has a filled formula next to both, the last formula and the place."""
+    for side in (-1, 1):
+        across = (step[1] * side, step[0] * side)
+        one, two = _moved(_place(near), across), _moved(place, across)
+        nodes = [book.model.at.get(p) if p is not None else None for p in (one, two)]
+        forms = {book.signatures.get(n.index) if n is not None else None for n in nodes}
+        if None not in forms and len(forms) == 1 and nodes[0] is not None and nodes[0].index in book.affected:
+            return True
+    return False
 
 
 def _reads(node: Node, place: Place) -> bool:
