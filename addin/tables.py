@@ -179,7 +179,7 @@ def read_table(
         plan = [(column, None) for column in columns[: len(rows[0])]]
         found: list[tuple[Column, str | None] | None] = list(plan)
     else:
-        found = _match_headings(columns, as_range(headings, "headings"), len(rows[0]), what)
+        found = match_headings(columns, as_range(headings, "headings"), len(rows[0]), what)
     present = {entry[0].name for entry in found if entry}
     missing = [c.name for c in columns if c.required and c.name not in present]
     if missing:
@@ -230,7 +230,7 @@ def _plain_text(value: Scalar) -> str:
     return str(value)
 
 
-def _match_headings(
+def match_headings(
     columns: Sequence[Column], rows: list[list[Scalar]], width: int, what: str
 ) -> list[tuple[Column, str | None] | None]:
     if len(rows) > 2:

@@ -10,6 +10,7 @@ from thrustbook.engine.constants import G
 
 from ..blocks.balance import PORT_COLUMNS, balance
 from .types import Arg, Caution, Result, Row
+from .workings import balance as workings_balance
 from .workings import fittings as workings_fittings
 
 FAMILY: Final = "Fittings"
@@ -157,6 +158,7 @@ ROWS: Final = (
         routine=balance,
         sign="x east, y north, z up. Normals point outward, flows are positive outward. F is the thrust of "
         "the fluid on the fitting, R the opposite reaction of the restraint.",
+        longhand=workings_balance.TB_BALANCE,
         reference="Momentum theorem: F = - sum (p + beta rho V^2) A n - W z - dM/dt",
         example='TB_BALANCE("Fx", "metric", 998, {"nx","ny","nz","D","p","Q"}, '
         "{-1,0,0,300,400,-100; 0,1,0,300,400,100})",

@@ -8,7 +8,8 @@ from ..blocks.run import RESULTS, run
 from ..blocks.runcases import RESULTS as CASE_RESULTS
 from ..blocks.runcases import runcases
 from ..blocks.runread import CASE_COLUMNS, NODE_COLUMNS, START_COLUMNS
-from .types import Arg, NoLonghand, Row
+from .types import Arg, Row
+from .workings import runs as workings_runs
 
 FAMILY = "Blocks"
 
@@ -49,7 +50,6 @@ _START_EXAMPLE: Final = '{"rho",1000;"mu",1;"Q",100;"p",500}'
 _HEADINGS_EXAMPLE: Final = '{"name","x","y","z","D","e"}'
 _TABLE_EXAMPLE: Final = '{"A",0,0,10,300,0.1;"B",50,0,10,300,0.1;"C",50,60,12,300,0.1}'
 _CASES_EXAMPLE: Final = '{"case","kind","p";"normal","operating",500;"test","test",900}'
-_NO_LONGHAND: Final = "Each row depends on all others through flow and head."
 
 ROWS = (
     Row(
@@ -64,7 +64,7 @@ ROWS = (
         reference=_REFERENCE,
         example=f'TB_RUN("F","metric",{_START_EXAMPLE},{_HEADINGS_EXAMPLE},{_TABLE_EXAMPLE})',
         block=True,
-        longhand=NoLonghand(reason=_NO_LONGHAND),
+        longhand=workings_runs.TB_RUN,
     ),
     Row(
         name="TB_RUNCASES",
@@ -79,6 +79,6 @@ ROWS = (
         example=f'TB_RUNCASES("F","metric",{_START_EXAMPLE},{_HEADINGS_EXAMPLE},{_TABLE_EXAMPLE},'
         f"{_CASES_EXAMPLE})",
         block=True,
-        longhand=NoLonghand(reason=_NO_LONGHAND),
+        longhand=workings_runs.TB_RUN,
     ),
 )

@@ -110,10 +110,11 @@ class Longhand:
 class RowStep(Step):
     """A step worked on every row of a table.
 
-    In its formula {name} is a column or an earlier step on the same row, {name.prev}
-    and {name.next} the same on the row before and after, {name.column} all rows of it,
-    {start.name} a single step, or an entry of a start block. ``first`` and ``last``
-    are the formulas of the first and the last row where those differ.
+    In its formula {name} is a column or an earlier step on the same row, or else a single
+    step or an entry of the start block; {name.prev} and {name.next} are the same on the row
+    before and after, {name.first} and {name.last} on the first and the last row, and
+    {name.column} all rows of it. ``first`` and ``last`` are the formulas of the first and
+    the last row where those differ.
     """
 
     first: str = ""
@@ -124,15 +125,17 @@ class RowStep(Step):
 class TableLonghand:
     """The long-hand working of a table function: one row a port, fitting or node.
 
-    ``single`` are steps worked once, in front of the rows or after them as their
-    formulas need ({name.column}, {name.first}, {name.last} for a row step). Results are
-    row steps, or single ones where ``one_row`` says that the answer is one row.
+    ``single`` are steps worked once; their formulas may use whole columns, and those of
+    the rows may use them. A result is a row step, or a single step where the answer is
+    one value. ``defaults`` are what empty cells of a column or entry stand for, as
+    formulas; without one they read as "". ``bounds`` are the ranges allowed, in SI.
     """
 
     rows: tuple[RowStep, ...]
     single: tuple[Step, ...] = ()
     results: Mapping[str, str] = field(default_factory=dict)
-    one_row: bool = False
+    defaults: Mapping[str, str] = field(default_factory=dict)
+    bounds: Mapping[str, Bound] = field(default_factory=dict)
     method: Literal["", "unrolled", "residual"] = ""
 
 

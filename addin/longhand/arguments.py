@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any, Literal
 
-from ..catalogue.types import Arg
+from ..catalogue.types import Arg, Column
 from ..cells import Scalar
 from ..hosts.headless.formulas import Kind, Part
 from ..tables import is_blank
@@ -199,7 +199,7 @@ def linked(ref: str) -> Formula:
 
 
 def taken(
-    argument: Argument, arg: Arg, written: Written, i: int = 0, j: int = 0
+    argument: Argument, arg: Arg | Column, written: Written, i: int = 0, j: int = 0
 ) -> tuple[Content | None, Conversion | None]:
     """What the checking sheet puts for an element of an argument, and its own unit where it brings one."""
     if argument.form == "empty":
@@ -255,7 +255,7 @@ def in_group(content: Content | None, own: Conversion | None, group: Conversion)
     return Formula(f"({inside})*{number(float(own.factor))}/{factor}")  # type: ignore[arg-type]
 
 
-def same_datum(argument: Argument, arg: Arg, group: Conversion) -> None:
+def same_datum(argument: Argument, arg: Arg | Column, group: Conversion) -> None:
     """Refuse elements that bring a unit against another datum than their column. Raises NotWorked."""
     for line in argument.values or []:
         for cell in line:

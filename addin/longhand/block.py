@@ -9,7 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Longhand, Row
 from .arguments import Argument, Written, taken
-from .convert import P_ATM, Conversion, agreement, from_si, in_use, to_si
+from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, to_si
 from .grid import Formula, Link, Sheet, local
 from .source import TbCell
 from .symbols import fill, shown, si_unit
@@ -101,6 +101,8 @@ class Block:
             if s.role == role and s.symbol != step
         ]
         factor = local(self._results_at() + self.results.index(result), 6)
+        if role == "angle":
+            return f"{ANGLE_SCALE}/{factor}"
         return f"MAX({','.join(same)})/{factor}" if same else ""
 
     def place(self, sheet: Sheet, top: int) -> int:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from functools import partial
 from typing import Any, Final
 
 import numpy as np
@@ -25,6 +26,8 @@ from .outcomes import BlockOutcome, Guard, RowsOutcome, WordsOutcome, named, wri
 from .rows import Group, Line, RowSheet
 from .source import Source, TbCell, plain
 from .summary import Entry, Summary
+from .tablecalls import TableCalls
+from .tableplan import TableOutcome
 from .tools import convert_formula
 from .unitsheet import UnitSheet
 
@@ -53,6 +56,7 @@ class Book:
             )
         self.summary = Summary(Sheet(SUMMARY))
         self.units = UnitSheet(Sheet(UNITS))
+        self.tables = TableCalls(self.source)
         self._loose = Block(None, [], lambda role: Conversion("", 1.0))
         self._known: dict[Any, Any] = {}
         self._rows: dict[str, list[RowsOutcome]] = {}
@@ -103,9 +107,11 @@ class Book:
         if isinstance(row.longhand, NoLonghand) or row.longhand is None:
             reason = row.longhand.reason if row.longhand is not None else "it has no long-hand working"
             raise NotWorked(f"{row.name}: {reason}")
-        if not isinstance(row.longhand, Longhand):
-            raise NotWorked(f"{row.name}: tables are not worked")
         self.units.read(units)
+        if not isinstance(row.longhand, Longhand):
+            key = self._key(row, units, arguments)
+            of_role = partial(self.units.conversion, units)
+            return self.tables.outcome(row, key, arguments, of_role, results, guard, cell)
         shapes = [a.shape for a in arguments]
         if all(shape == (1, 1) for shape in shapes):
             return self._block(row, units, arguments, results, guard)
@@ -140,7 +146,7 @@ class Book:
         key = self._key(row, units, arguments)
         block = self._known.get(key)
         if block is None:
-            block = Block(row, arguments, lambda role: self.units.conversion(units, role))
+            block = Block(row, arguments, partial(self.units.conversion, units))
             self._known[key] = block
             self.blocks.append(block)
         for result in results:
@@ -215,6 +221,9 @@ class Book:
                 self._add_check(outcome.block, cell, entry, i, j, value, outcome.results[j])
             elif isinstance(outcome, RowsOutcome):
                 self._own_line(outcome, cell, entry, i, j)
+            elif isinstance(outcome, TableOutcome):
+                outcome.own(i, j, f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}")
+                entry.table = outcome
 
     def _add_check(
         self, block: Block, cell: TbCell, entry: Entry, i: int, j: int, value: Callable[[], str], result: str
@@ -260,14 +269,16 @@ class Book:
                 if id(outcome.group) not in numbers:
                     numbers[id(outcome.group)] = rows.place(outcome.group)
                 outcome.rows, outcome.number = rows, numbers[id(outcome.group)]
+        table_sheets = self.tables.place()
         for i, block in enumerate(self.blocks):
             if self.progress is not None and i & 255 == 0:
                 self.progress("write", i, len(self.blocks))
             block.write(written, tolerance)
         for rows in row_sheets:
             rows.write()
+        self.tables.write(tolerance)
         self.summary.write(self.entries, self.source.package.path.name)
-        self.sheets = [self.summary.sheet, *block_sheets, *(rows.sheet for rows in row_sheets)]
+        self.sheets = [self.summary.sheet, *block_sheets, *(rows.sheet for rows in row_sheets), *table_sheets]
         if self.units.used:
             self.sheets.append(self.units.sheet)
 

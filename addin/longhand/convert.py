@@ -13,6 +13,10 @@ P_ATM = "101325"
 """The ambient pressure of a function that takes none [Pa]."""
 
 
+ANGLE_SCALE = "1000"
+"""Scale of an angle [rad]: below a thousandth of a millionth of a millionth it is rounding."""
+
+
 class Conversion(NamedTuple):
     """The unit of a column: its name, its factor to SI, and the shift of its datum."""
 

@@ -12,15 +12,13 @@ from ..cells import CellError, Scalar
 from ..hosts.headless.opc import MAIN, parse
 from ..hosts.headless.package import Package
 from ..hosts.headless.plainvalues import evaluate_sheets
-from ..hosts.headless.shadow import literal
 from ..hosts.headless.sheetxml import set_formulas, store
 from .calls import NotWorked
+from .detachtext import constant
 from .make import Made, Progress
 from .summary import Entry
 
 Place = tuple[int, int]
-_TEXT = 250
-"""The longest text that a formula may hold in one piece."""
 _BEHIND_CALCULATION = (
     "oleSize",
     "customWorkbookViews",
@@ -109,16 +107,6 @@ class Detached:
                 unknown = isinstance(value, CellError) and not isinstance(old, CellError)
                 new[row, col] = old if unknown or value is None else value
             replaced[sheets[name]] = store(replaced[sheets[name]], new)
-
-
-def constant(value: Scalar) -> str:
-    """A value as a formula; a long text in pieces, as formulas allow them."""
-    if value is None:
-        return '""'
-    if isinstance(value, str) and len(value) > _TEXT:
-        pieces = [value[i : i + _TEXT] for i in range(0, len(value), _TEXT)]
-        return "&".join(literal(piece) for piece in pieces)
-    return literal(value)
 
 
 def _recalculating(content: bytes, part: str, label: str) -> bytes:

@@ -9,7 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
 from ..hosts.headless.a1 import column_letters
-from .convert import P_ATM, Conversion, agreement, from_si, in_use, to_si
+from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, to_si
 from .grid import Content, Formula, Link, Sheet, fixed, local
 from .sheetpart import SCALE
 from .symbols import fill, shown, si_unit
@@ -19,7 +19,7 @@ SYMBOL, MEANING, UNIT, FORMULA = 2, 3, 4, 5
 FIRST: Final = 7
 LABELS: Final = 2
 """Columns in front: what the row is, and where its result stands."""
-_NARROW: Final = 13.0
+NARROW: Final = 13.0
 _WIDE: Final = 30.0
 _PAPER: Final = 255.0
 """Width in mm that both A4 and Letter have between the margins, lying down."""
@@ -106,7 +106,7 @@ class RowSheet:
         for step in self._steps:
             col = self._column[step.symbol]
             self._head_column(col, step.symbol, step.text, si_unit(step.role), shown(step.formula))
-            sheet.widths[col] = max(_NARROW, min(_WIDE, len(step.formula) / 4))
+            sheet.widths[col] = max(NARROW, min(_WIDE, len(step.formula) / 4))
         for name in self.results:
             col = self._result[name]
             meaning = next(r.text for r in row.results if r.name == name)
@@ -121,14 +121,14 @@ class RowSheet:
         sheet.heights |= {MEANING: 66.0, FORMULA: 78.0}
         sheet.title_rows, sheet.title_columns, sheet.fit_width = (SYMBOL, FORMULA), (1, LABELS), False
         sheet.freeze = (FORMULA, LABELS)
-        sheet.column_breaks = _breaks(sheet.widths, self._verdict)
+        sheet.column_breaks = column_breaks(sheet.widths, self._verdict)
 
     def _head_column(self, col: int, symbol: str, meaning: str, unit: str, formula: str) -> None:
         sheet = self.sheet
         for at, text in ((SYMBOL, symbol), (MEANING, meaning), (UNIT, unit)):
             sheet.put(at, col, text, "head")
         sheet.put(FORMULA, col, formula, "headmono")
-        sheet.widths.setdefault(col, _NARROW)
+        sheet.widths.setdefault(col, NARROW)
 
     def place(self, group: Group) -> int:
         """Give a group its place under what is there; the number of the group comes back."""
@@ -221,6 +221,8 @@ class RowSheet:
     def _scale(self, name: str, cells: dict[str, str]) -> str:
         """The largest of the quantities of the same kind: a difference of them keeps their rounding."""
         role = self._roles[name]
+        if role == "angle":
+            return ANGLE_SCALE
         same = [cells[s.symbol] for s in self._steps if s.role == role and s.symbol != self._step_of[name]]
         return f"MAX({','.join(f'ABS({cell})' for cell in same)})" if same else ""
 
@@ -246,7 +248,7 @@ def _range(row: Row, arg: Arg) -> str:
     return "" if text == "any number" else text
 
 
-def _breaks(widths: dict[int, float], last: int) -> list[int]:
+def column_breaks(widths: dict[int, float], last: int) -> list[int]:
     """Columns behind which a page ends, so that no column is cut."""
     front = sum(_mm(widths[c]) for c in range(1, LABELS + 1))
     breaks: list[int] = []

@@ -11,6 +11,7 @@ from .calls import Call
 from .grid import Formula, Link, Sheet, fixed, local, quoted_sheet
 from .outcomes import RowsOutcome
 from .source import TbCell
+from .tableplan import TableOutcome
 
 TOLERANCE: Final = 1e-9
 HEAD_ROW: Final = 12
@@ -33,6 +34,7 @@ class Entry:
     words: bool = False
     checks: list[tuple[Block, Check]] = field(default_factory=list)
     rows: RowsOutcome | None = None
+    table: TableOutcome | None = None
     formula: Callable[[], str] = lambda: ""
     formula_of: Callable[[int, int], str] | None = None
     """The long-hand formula of each cell that the formula fills, counted from its first."""
@@ -91,6 +93,11 @@ class Summary:
             sheet.put(at, 7, "text", "verdict")
         elif entry.rows is not None:
             self._rows(entry, entry.rows)
+        elif entry.table is not None:
+            section = entry.table.section
+            sheet.put(at, 4, f"{len(section.lines)} rows", "note")
+            sheet.put(at, 7, Formula(section.verdict_area()), "verdict")
+            self._link(at, section.sheet, local(section.top, 1))
         elif entry.checks:
             self._checks(entry)
 

@@ -5,6 +5,8 @@ from __future__ import annotations
 import re
 from collections.abc import Callable
 
+from thrustbook.engine.guard import Bound
+
 from ..catalogue.types import Arg, Row
 from ..units import ROLES
 
@@ -47,7 +49,11 @@ def default_of(row: Row, arg: Arg) -> float | str | None:
 
 def within(row: Row, arg: Arg, value: str) -> str:
     """A condition that a value (a cell) lies in the range allowed; empty where any number does."""
-    bound = row.bound(arg)
+    return inside(row.bound(arg), value)
+
+
+def inside(bound: Bound | None, value: str) -> str:
+    """A condition that a value (a cell) lies in a range; empty where any number does."""
     if bound is None:
         return ""
     tests = []

@@ -9,7 +9,7 @@ from ..types import Step
 NEWTON_STEPS = 4
 
 
-def friction_steps(Re: str, eD: str, method: str) -> tuple[Step, ...]:
+def friction_steps(Re: str, eD: str, method: str, f: str = "f") -> tuple[Step, ...]:
     """Darcy factor ``f`` from the names of the Reynolds number, relative roughness and method."""
     steps = [
         Step("Ret", "Reynolds number for the turbulent formula, at least 4000", "ratio", f"MAX({Re},4000)"),
@@ -42,6 +42,6 @@ def friction_steps(Re: str, eD: str, method: str) -> tuple[Step, ...]:
             "ratio",
             f"MIN(1,MAX(0,({Re}-2300)/(4000-2300)))",
         ),
-        Step("f", "Darcy friction factor", "ratio", "{fl}+{w}*({ft}-{fl})"),
+        Step(f, "Darcy friction factor", "ratio", "{fl}+{w}*({ft}-{fl})"),
     ]
     return tuple(steps)

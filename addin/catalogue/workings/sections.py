@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from ..types import Longhand, RowStep, Step, TableLonghand
+from ..types import Longhand, Step, TableLonghand
 
 TB_AREA = Longhand(
     steps=(
@@ -60,6 +60,7 @@ TB_PROFILE = Longhand(
 )
 
 TB_BRANCHFLOW = TableLonghand(
-    rows=(RowStep("Q'", "what must flow in to make the sum zero", "flow", "0-SUM({Q.range})"),),
+    rows=(),
+    single=(Step("Q'", "what must flow in to make the sum zero", "flow", "0-SUM({Q.column})"),),
     results={"Q": "Q'"},
 )
