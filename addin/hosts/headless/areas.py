@@ -48,11 +48,12 @@ class Area:
     leading: tuple[Any, ...] = ()
     tiled: tuple[int, int] | None = None
 
-    def __post_init__(self) -> None:
+    def expect(self) -> None:
+        """Provide for a large result of the extent that the file gives: very likely it has that again."""
         if self.ref is not None:
             rows, cols = self.ref[2] - self.ref[0] + 1, self.ref[3] - self.ref[1] + 1
             if rows * cols > SPILL_LIMIT:
-                self.tiled = rows, cols  # very likely the result has that size again
+                self.tiled = rows, cols
 
     def settle(self, value: Any) -> Any:
         """Keep a result; return what the evaluator is to put in the cells."""

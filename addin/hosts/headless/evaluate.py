@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import gc
 from collections import Counter
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
@@ -117,7 +119,25 @@ def evaluate_workbook(
     that have no value in the file. ``progress(stage, done, total)`` is called now and then.
     Raises :class:`Refusal` when the embedded evaluator gives up on the workbook.
     """
-    functions = functions or Functions.of_catalogue()
+    with _no_collector():
+        return _evaluated(package, functions or Functions.of_catalogue(), progress, fill_native)
+
+
+@contextmanager
+def _no_collector() -> Iterator[None]:
+    """Keep the garbage collector from walking millions of live cells again and again; they form no circles."""
+    was_on = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if was_on:
+            gc.enable()
+
+
+def _evaluated(
+    package: Package, functions: Functions, progress: Progress | None, fill_native: bool
+) -> Evaluation:
     model = Model(package, functions, progress)
     evaluation = Evaluation()
     for sheet in package.sheets:

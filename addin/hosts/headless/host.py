@@ -172,7 +172,9 @@ def storable(grid: Grid) -> Grid:
     if kinds == {float}:
         if np.isfinite(flat.astype(float)).all():
             return grid
-    elif kinds <= {str, bool, CellError}:
+    elif kinds <= {float, str, bool, CellError} and all(
+        isfinite(x) for x in flat.tolist() if type(x) is float
+    ):
         return grid
     out = np.empty(grid.shape, dtype=object)
     out[:] = [[_storable(item) for item in row] for row in grid.tolist()]

@@ -42,6 +42,9 @@ class Settlement:
         for node in self.model.nodes:
             if node.reason:
                 self._set_aside(node, node.reason)
+        for area, node in self._live_areas():
+            if self._is_read(node):
+                area.expect()
         left = _PATIENCE + len(self.model.areas)
         while True:
             self.run = self._evaluate()
@@ -190,13 +193,14 @@ class Settlement:
             if not area.large:
                 again = again or area.tiled is not None
                 area.tiled = None
-            elif area.tiled != shape and (
-                area.tiled is not None
-                or self.model.graph().readers(Reference(node.sheet, *area.extent())) - {node.index}
-            ):
+            elif area.tiled != shape and (area.tiled is not None or self._is_read(node)):
                 area.tiled = (shape[0], shape[1])
                 again = True
         return again
+
+    def _is_read(self, node: Node) -> bool:
+        """Whether another formula refers to the cells that this one fills."""
+        return bool(self.model.graph().readers(Reference(node.sheet, *node.extent())) - {node.index})
 
     def _find_uncomputable(self) -> bool:
         found = False

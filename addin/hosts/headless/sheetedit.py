@@ -168,6 +168,16 @@ class Editor(Generic[Change]):
             if found.get("customFormat") in ("1", "true"):
                 style = f' s="{found["s"]}"' if found.get("s", "0") != "0" else ""
         wanted = list(changes.items())
+        if wanted[0][0] > self._frame.last_column(row):  # behind all cells: no need to look at them
+            if all(change is None for _, change in wanted):
+                return xml[row.start : row.stop]
+            texts = [(col, self._new_cell(row.number, col, change, style)) for col, change in wanted]
+            new = "".join([text for _, text in texts])
+            if not new:
+                return xml[row.start : row.stop]
+            return self._with(
+                row, xml[row.body : row.body_end] + new.encode(), [col for col, text in texts if text]
+            )
         out: list[bytes] = []
         added: list[int] = []
         index, count = 0, len(wanted)
@@ -199,7 +209,11 @@ class Editor(Generic[Change]):
             at = cell.stop
         insert(None)
         out.append(xml[at : row.body_end])
-        body = b"".join(out)
+        return self._with(row, b"".join(out), added)
+
+    def _with(self, row: Row, body: bytes, added: list[int]) -> bytes:
+        """The row with another body, in which the columns ``added`` are new."""
+        xml = self._frame.xml
         if not added:
             return xml[row.start : row.body] + body + xml[row.body_end : row.stop]
         tag = _SPANS.sub(

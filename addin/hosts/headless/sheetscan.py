@@ -220,6 +220,15 @@ class Frame:
         if at != row.body_end and _SPACE.fullmatch(self.xml, at, row.body_end) is None:
             raise refused(f"holds something other than a cell in row {row.number}")
 
+    def last_column(self, row: Row) -> int:
+        """The column of the last cell of a row, 0 where it has none; the other cells are not looked at."""
+        start = self.xml.rfind(b"<" + self.prefix + b"c ", row.body, row.body_end)
+        match = self.grammar.cell.match(self.xml, start, row.body_end) if start >= 0 else None
+        if match is None or _PLACE.search(match[1]) is None or match.end() != row.body_end:
+            # Something unusual: the careful way finds out, or refuses.
+            return max((cell.col for cell in self.cells(row)), default=0)
+        return self._mark(match, row.number, 0).col
+
     def _mark(self, match: re.Match[bytes], row: int, before: int) -> CellMark:
         attrs, content = match[1], match[2] or b""
         start = self.xml.index(b"<", match.start())

@@ -70,9 +70,7 @@ def stored_values(xml: bytes, shared_strings: Sequence[str]) -> dict[Place, Scal
     return values
 
 
-def set_formulas(
-    xml: bytes, formulas: Mapping[Place, str], single: Collection[Place] = frozenset()
-) -> bytes:
+def set_formulas(xml: bytes, formulas: Mapping[Place, str], single: Collection[Place] = frozenset()) -> bytes:
     """The sheet with other formulas, given without equals sign, in some cells.
 
     The stored values of those cells go. An array formula stays one, with its extent, unless

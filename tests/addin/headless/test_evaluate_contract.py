@@ -144,7 +144,12 @@ def test_a_bad_row_of_a_block_fails_alone_and_says_why(path: Path) -> None:
     assert stored["I2"] == "#NUM!"
     assert stored["I3"] == 0
     assert "D1" in next(failed.reason for failed in evaluation.errors if failed.a1 == "H2")
-    assert {table.a1 for table in evaluation.tables} == {"H1", "I4", "K1", "K2"}
+    # Headings and single values are no tables; a table comes with its headings.
+    tables = {table.a1: table for table in evaluation.tables}
+    assert set(tables) == {"H1", "K2"}
+    assert tables["H1"].labels == ("F",)
+    assert tables["H1"].units == ("kN",)
+    assert tables["K2"].labels[0] == "name"
     labels = {stored[cell] for cell in stored if cell.endswith("1") and cell[0] in "KLMNOPQRSTUVWXYZA"}
     assert any("note" in str(label).lower() for label in labels)
 
