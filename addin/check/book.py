@@ -35,6 +35,8 @@ class Book:
     def __init__(self, package: Package, progress: Progress | None = None) -> None:
         self.package = package
         self.progress = progress
+        self.remarks: list[str] = []
+        """What a reader of the report should know of the check itself."""
         self.recorder = Recorder(Functions.of_catalogue())
         self.model = Model(package, self.recorder.functions, progress)
         self.settlement = Settlement(self.model, Host(self.recorder.functions, self._ticker()))

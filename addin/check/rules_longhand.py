@@ -22,6 +22,7 @@ from ..units import UnitError, UnitSet
 from .book import Book
 from .calls import Call
 from .gather import Remark, figures, joined
+from .tableworkings import table_remarks
 from .types import Finding, Rule, Severity
 
 TOLERANCE = 1e-9
@@ -115,7 +116,7 @@ def difference(book: Book) -> Iterator[Finding]:
             uses.append(_Use(call, element, sheet.lines.setdefault(given, len(sheet.lines))))
     for sheet in sheets.values():
         sheet.evaluate(book)
-    yield from joined("L01", Severity.ERROR, _remarks(book, sheets, uses))
+    yield from joined("L01", Severity.ERROR, [*_remarks(book, sheets, uses), *table_remarks(book)])
 
 
 def _elements(call: Call, units: UnitSet) -> Iterator[tuple[tuple[int, int], Given]]:

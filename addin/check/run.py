@@ -95,7 +95,7 @@ def check(
     sorted_out = match(found, accepted.entries if accepted is not None else ())
     cells = sum(1 for node in book.model.nodes if node.calls)
     remarks = [] if cells else ["no cell of this workbook holds a TB_ formula"]
-    remarks += book.settlement.warnings
+    remarks += [*book.settlement.warnings, *book.remarks]
     return Report(
         record=_record(package, cells, sorted_out.open, len(sorted_out.accepted)),
         open=sorted_out.open,
