@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from ..blocks.schedule import Schedule
 from . import ends, fittings
-from .types import Arg, Result, Row
+from .types import Arg, Result, Row, TableLonghand
 
 FAMILY = "Blocks"
 
@@ -61,6 +61,7 @@ ROWS = (
         routine=_READER,
         sign="Plane fittings: x along the incoming flow, y towards the side to which the outlet turns. "
         "F is the thrust of the fluid on the fitting, R the reaction of the restraint, its opposite.",
+        longhand=TableLonghand(rows=()),  # every row has the working of its fitting's own function
         reference="Each row as the function of its fitting: TB_BEND, TB_REDUCER, TB_TEE, TB_NOZZLE, "
         "TB_CLOSED, TB_INLINE, TB_STRAIGHT",
         example='TB_SCHEDULE("F", "metric", {"fitting","rho","D1","p1","Q","theta"}, '

@@ -9,6 +9,7 @@ from typing import Any, Final
 
 import numpy as np
 
+from ..blocks.schedule import Schedule
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Longhand, NoLonghand, Row
 from ..cells import Refused
@@ -21,13 +22,16 @@ from .block import FIRST as FIRST_BLOCK
 from .block import Block, Check, new_block_sheet
 from .calls import Call, NotWorked, Outcome, render
 from .convert import Conversion
+from .detachtext import constant
 from .grid import Sheet, quoted_sheet
 from .outcomes import BlockOutcome, Guard, RowsOutcome, WordsOutcome, named, written
 from .rows import Group, Line, RowSheet
+from .schedule import ScheduleOutcome, plan_schedule, schedule_outcome
 from .source import Source, TbCell, plain
 from .summary import Entry, Summary
 from .tablecalls import TableCalls
 from .tableplan import TableOutcome
+from .tableread import OfRole
 from .tools import convert_formula
 from .unitsheet import UnitSheet
 
@@ -111,6 +115,8 @@ class Book:
         if not isinstance(row.longhand, Longhand):
             key = self._key(row, units, arguments)
             of_role = partial(self.units.conversion, units)
+            if isinstance(row.routine, Schedule):
+                return self._schedule(row, key, arguments, of_role, results, guard, cell)
             return self.tables.outcome(row, key, arguments, of_role, results, guard, cell)
         shapes = [a.shape for a in arguments]
         if all(shape == (1, 1) for shape in shapes):
@@ -192,6 +198,27 @@ class Book:
         self._rows.setdefault(row.name, []).append(outcome)
         return outcome
 
+    def _schedule(
+        self,
+        row: Row,
+        key: Any,
+        arguments: list[Argument],
+        of_role: OfRole,
+        results: tuple[str, ...],
+        guard: Guard | None,
+        cell: TbCell,
+    ) -> ScheduleOutcome:
+        plan = self._known.get(key)
+        if plan is None:
+            plan = self._known[key] = plan_schedule(row, arguments, of_role, cell)
+            for kind, carrier in plan.carriers.items():
+                self._rows.setdefault(row.routine.kinds[kind].name, []).append(carrier)
+        notes = {}
+        if "note" in results:
+            values, col = self.source.values(cell.sheet), cell.cell.col + results.index("note")
+            notes = {i: constant(values.get((cell.cell.row + i, col))) for i in range(plan.table.size)}
+        return schedule_outcome(row, plan, of_role, results, guard, notes)
+
     # The cells that show the results
 
     def _check(self, cell: TbCell, entry: Entry) -> None:
@@ -221,7 +248,7 @@ class Book:
                 self._add_check(outcome.block, cell, entry, i, j, value, outcome.results[j])
             elif isinstance(outcome, RowsOutcome):
                 self._own_line(outcome, cell, entry, i, j)
-            elif isinstance(outcome, TableOutcome):
+            elif isinstance(outcome, TableOutcome | ScheduleOutcome):
                 outcome.own(i, j, f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}")
                 entry.table = outcome
 

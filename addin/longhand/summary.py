@@ -10,6 +10,7 @@ from .block import Block, Check
 from .calls import Call
 from .grid import Formula, Link, Sheet, fixed, local, quoted_sheet
 from .outcomes import RowsOutcome
+from .schedule import ScheduleOutcome
 from .source import TbCell
 from .tableplan import TableOutcome
 
@@ -34,7 +35,7 @@ class Entry:
     words: bool = False
     checks: list[tuple[Block, Check]] = field(default_factory=list)
     rows: RowsOutcome | None = None
-    table: TableOutcome | None = None
+    table: TableOutcome | ScheduleOutcome | None = None
     formula: Callable[[], str] = lambda: ""
     formula_of: Callable[[int, int], str] | None = None
     """The long-hand formula of each cell that the formula fills, counted from its first."""
@@ -93,6 +94,8 @@ class Summary:
             sheet.put(at, 7, "text", "verdict")
         elif entry.rows is not None:
             self._rows(entry, entry.rows)
+        elif isinstance(entry.table, ScheduleOutcome):
+            self._schedule(entry, entry.table)
         elif entry.table is not None:
             section = entry.table.section
             sheet.put(at, 4, f"{len(section.lines)} rows", "note")
@@ -123,6 +126,16 @@ class Summary:
         sheet.put(at, 7, Formula(joint(outcome.rows.verdict_area(outcome.number))), "verdict")
         self._link(at, outcome.rows.sheet, local(outcome.rows.verdicts[outcome.number][0] - 3, 1))
 
+    def _schedule(self, entry: Entry, outcome: ScheduleOutcome) -> None:
+        sheet, at = self.sheet, entry.row
+        sheet.put(at, 4, f"{len(outcome.table.rows)} rows", "note")
+        areas = []
+        for carrier in outcome.carriers.values():
+            assert carrier.rows is not None
+            areas.append(carrier.rows.verdict_area(carrier.number))
+            self._link(at, carrier.rows.sheet, local(carrier.rows.verdicts[carrier.number][0] - 3, 1))
+        sheet.put(at, 7, Formula(joint(*areas)), "verdict")
+
     def _link(self, at: int, sheet: Sheet, a1: str) -> None:
         self.sheet.put(at, 8, f"{sheet.name}!{a1}", "link")
         self.sheet.links.append(Link(at, 8, f"{quoted_sheet(sheet.name)}!{a1}"))
@@ -139,6 +152,10 @@ class Summary:
         return found
 
 
-def joint(area: str) -> str:
-    """One verdict for an area of them."""
-    return f'IF(COUNTIF({area},"differs")>0,"differs",IF(COUNTIF({area},"agrees")>0,"agrees","error"))'
+def joint(*areas: str) -> str:
+    """One verdict for areas of them."""
+    if not areas:
+        return '"error"'
+    differ = "+".join(f'COUNTIF({area},"differs")' for area in areas)
+    agree = "+".join(f'COUNTIF({area},"agrees")' for area in areas)
+    return f'IF({differ}>0,"differs",IF({agree}>0,"agrees","error"))'

@@ -45,6 +45,11 @@ class ReadTable:
         at = self._at.get(name)
         return None if at is None else self.argument.value(row + self.top, at)
 
+    def ref(self, row: int, name: str) -> str:
+        """A reference to a cell of the table; "" for a constant or a column that it has not."""
+        at, area = self._at.get(name), self.argument.area
+        return "" if at is None or area is None else area.ref(row + self.top, at)
+
     def given(self, row: int) -> dict[str, Content | None]:
         return {column.name: self.content(row, column.name) for column, _ in self.columns}
 
