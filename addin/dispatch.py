@@ -57,17 +57,17 @@ def call(name: str, args: Sequence[Cell]) -> Cell | Grid:
 
 
 def headings(name: str, leading: Sequence[Cell], width: int) -> tuple[tuple[str, ...], tuple[str, ...]]:
-    """Give the labels and units over the columns of a block call's answer.
+    """Give the labels and units over the columns of a block call's answer in cells ``width`` wide.
 
-    ``leading`` are the call's first two arguments, wanted result and units. Both are
-    empty where the answer has no headings of that width.
+    ``leading`` are the call's first two arguments, wanted result and units.
     """
     result = leading[0] if leading and isinstance(leading[0], str) else ""
     units = leading[1] if len(leading) > 1 else None
     found = []
     for form in ("labels", "units"):
         row = call(name, [f"{form}: {result}", units])
-        found.append(tuple(map(str, row[0])) if isinstance(row, np.ndarray) and row.shape[1] == width else ())
+        texts = [str(text) for text in row[0]] if isinstance(row, np.ndarray) else []
+        found.append(tuple((texts + [""] * width)[:width]))
     return found[0], found[1]
 
 

@@ -117,9 +117,8 @@ def table_text(table: Table, rows: int) -> list[str]:
     """Write a table of results with its headings, units below them."""
     grid = table.grid.tolist()
     shown = grid if len(grid) <= rows else grid[:rows]
-    headings = [list(h) for h in (table.labels, table.units) if h]
-    wanted = "" if table.labels else f" {table.result}"
-    out = [f"{table.sheet}!{table.a1}  {table.function}{wanted}, {len(grid)} rows"]
+    headings = [list(table.labels), list(table.units)]
+    out = [f"{table.sheet}!{table.a1}  {table.function}, {len(grid)} rows"]
     out += figures.table([*headings, *shown], headings=len(headings))
     if len(grid) > len(shown):
         out.append(f"  ... {len(grid) - len(shown)} more rows")

@@ -14,7 +14,6 @@
 from __future__ import annotations
 
 import gc
-import resource
 import statistics
 import subprocess
 import sys
@@ -154,35 +153,26 @@ def bench_single_cells() -> None:
     print(f"  {statistics.median(ratios):.2f} times an empty callback (median of 5; asked: at most 2.5)")
 
 
-def peak(count: int) -> None:
-    """Evaluate and store the table; print this process's peak memory."""
-    with tempfile.TemporaryDirectory() as folder:
-        path = Path(folder) / "block.xlsx"
-        # The workbook is made by another process, so that only evaluating it counts here.
-        code = (
-            "from pathlib import Path; from tests.benchmarks.bench_headless import save, schedule; "
-            f"save(Path({str(path)!r}), {count}, schedule({count}))"
-        )
-        subprocess.run([sys.executable, "-c", code], check=True)
-        package = Package.read(path)
-        package.save(path.with_name("out.xlsx"), evaluate_workbook(package).replaced)
-    print(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1000)
+def peak(path: Path) -> float:
+    """Peak memory [MB] of the command that evaluates and stores a workbook."""
+    code = (
+        "import resource, subprocess, sys; "
+        "subprocess.run(sys.argv[1:], check=True, stdout=subprocess.DEVNULL); "
+        "print(resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss / 1000)"
+    )
+    command = [sys.executable, "-m", "thrustbook.addin.cli", "evaluate", str(path), "-o", f"{path}.out.xlsx"]
+    done = subprocess.run([sys.executable, "-c", code, *command], check=True, capture_output=True, text=True)
+    return float(done.stdout)
 
 
 def main() -> None:
     """Print all figures."""
-    if sys.argv[1:2] == ["--peak"]:
-        peak(int(sys.argv[2]))
-        return
     count = int(sys.argv[1]) if len(sys.argv) > 1 else 100_000
     with tempfile.TemporaryDirectory() as folder:
         bench_schedule(Path(folder), count)
+        memory = peak(Path(folder) / "block.xlsx")
+    print(f"  peak memory of the whole command {memory:.0f} MB (asked: below 500)")
     bench_single_cells()
-    command = [sys.executable, "-m", "tests.benchmarks.bench_headless", "--peak", str(count)]
-    memory = float(subprocess.run(command, check=True, capture_output=True, text=True).stdout)
-    print(
-        f"Peak memory of evaluating and storing {count} rows by 12 columns: {memory:.0f} MB (asked: below 500)"
-    )
     start = [
         timed(lambda: subprocess.run([sys.executable, "-m", "thrustbook.addin.cli", "functions"], check=True,
                                      capture_output=True))[0]

@@ -75,7 +75,6 @@ class Table(NamedTuple):
     a1: str
     function: str
     grid: Grid
-    result: str = ""
     labels: tuple[str, ...] = ()
     units: tuple[str, ...] = ()
 
@@ -125,7 +124,7 @@ def evaluate_workbook(
 
 @contextmanager
 def _no_collector() -> Iterator[None]:
-    """Keep the garbage collector from walking millions of live cells again and again; they form no circles."""
+    """Keep the garbage collector from walking millions of live cells over and over; they form no circles."""
     was_on = gc.isenabled()
     gc.disable()
     try:
@@ -255,8 +254,7 @@ class _Report:
         if head or grid.size == 1 or area.function is None:
             return
         labels, units = headings(area.function, area.leading, grid.shape[1])
-        table = Table(self._sheet(node), node.a1, area.function, grid, str(result or ""), labels, units)
-        self._to.tables.append(table)
+        self._to.tables.append(Table(self._sheet(node), node.a1, area.function, grid, labels, units))
 
     def _errors(self, node: Node) -> None:
         failed = self._settlement.failed.get(node.index)

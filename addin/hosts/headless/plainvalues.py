@@ -58,3 +58,26 @@ def evaluate_formulas(formulas: Sequence[str], values: Sequence[Scalar]) -> list
         workbook.set_value("S", row, 1, shown)
     workbook.evaluate_all()
     return [scalar(workbook.evaluate_cell("S", row, 2)) for row in range(1, len(formulas) + 1)]
+
+
+ROW = "\x00"
+"""Stands for the number of the row in a formula of :func:`evaluate_rows`."""
+
+
+def evaluate_rows(given: Sequence[Sequence[Scalar]], formulas: Sequence[str]) -> list[list[Scalar]]:
+    """Evaluate the same formulas over many rows of values.
+
+    The values of a row stand in its columns from A on, the formulas in the columns behind
+    them; each may refer to the columns before its own, as ``A`` + ``ROW``. The answer is the
+    values of the formulas, row by row.
+    """
+    workbook = Workbook()
+    workbook.add_sheet("S")
+    sheet = workbook.sheet("S")
+    count, width = len(given), len(given[0])
+    sheet.set_values_batch(1, 1, count, width, [[engine_value(v) for v in line] for line in given])
+    rows = [[f"={text.replace(ROW, str(r))}" for text in formulas] for r in range(1, count + 1)]
+    sheet.set_formulas_batch(1, width + 1, count, len(formulas), rows)
+    workbook.evaluate_all()
+    columns = range(width + 1, width + len(formulas) + 1)
+    return [[scalar(workbook.get_value("S", r, c)) for c in columns] for r in range(1, count + 1)]
