@@ -7,6 +7,7 @@ language of ``office/wire.py``, until the office closes the pipe.
 from __future__ import annotations
 
 import contextlib
+import gc
 import os
 import sys
 from collections.abc import Sequence
@@ -118,6 +119,10 @@ def main() -> None:
     """Serve the office that started this process."""
     requests = os.fdopen(os.dup(0), "rb", buffering=1 << 16)
     answers = os.fdopen(os.dup(1), "wb", buffering=1 << 16)
+    # A table makes a hundred thousand lists at once; searching them for cycles again and again
+    # takes longer than the calculation.
+    gc.freeze()
+    gc.set_threshold(500_000, 20, 100)
     # Whatever a library prints must not get into the answers.
     os.dup2(2, 1)
     sys.stdout = sys.stderr

@@ -87,6 +87,11 @@ class Driver:
         area = self._sheet(book, sheet).getCellRangeByName(place)
         return [list(line) for line in area.getFormulaArray()]
 
+    def enter_again(self, book, sheet, place):
+        """Enters the formulas of an area anew, so that unknown names are bound."""
+        area = self._sheet(book, sheet).getCellRangeByName(place)
+        area.setFormulaArray(area.getFormulaArray())
+
     def values(self, book, sheet, place):
         """Values of an area; an error as {"error": number}."""
         area = self._sheet(book, sheet).getCellRangeByName(place)

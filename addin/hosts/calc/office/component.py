@@ -6,6 +6,7 @@ It is copied to the root of the extension; the other files of this folder lie in
 
 from __future__ import annotations
 
+import gc
 import sys
 import traceback
 from typing import Any
@@ -17,6 +18,10 @@ from com.sun.star.lang import XServiceInfo, XServiceName
 from com.sun.star.task import XJobExecutor
 from org.thrustbook.calc import XFunctions
 from thrustbook_office import batch, books, link, settings
+
+# A table comes as a hundred thousand tuples at once. Searching them for cycles while they
+# are made takes as long as the making; it is put off, for all Python in the office.
+gc.set_threshold(max(gc.get_threshold()[0], 200_000), *gc.get_threshold()[1:])
 
 _SETTINGS = settings.read()
 _LINK = link.Link(link.worker_command(_SETTINGS["python"]))

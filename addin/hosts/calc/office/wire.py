@@ -130,14 +130,16 @@ def pack_columns(height: int, columns: Sequence[bytes]) -> bytes:
 
 
 def pack_column(column: Sequence[Any]) -> bytes:
-    """Write a column of cells."""
+    """Write a column of cells; a logical value among numbers alone crosses as 1 or 0."""
     try:
         return bytes((NUMBERS,)) + _doubles(array("d", column))
     except TypeError:
         pass
-    mask = bytes(map(MASK.__getitem__, map(type, column)))
-    if mask.count(1) == len(mask):
+    try:
         return bytes((TEXTS,)) + _texts(column)
+    except TypeError:
+        pass
+    mask = bytes(map(MASK.__getitem__, map(type, column)))
     numbers = array("d", [v if m == 0 or m == 3 else 0.0 for v, m in zip(column, mask)])
     texts = [v for v in column if type(v) is str]
     return bytes((MIXED,)) + mask + _doubles(numbers) + _U32.pack(len(texts)) + _texts(texts)
