@@ -227,9 +227,10 @@ def _dimensions(expression: str) -> Any:
 
 def _si_factor(expression: str) -> float:
     quantity = _pint_unit(expression)
-    return (
-        float(quantity.to_base_units().magnitude) if hasattr(quantity, "to_base_units") else float(quantity)
-    )
+    factor = float(quantity.to_base_units().magnitude if hasattr(quantity, "to_base_units") else quantity)
+    # pint multiplies prefixes in floating point: a litre comes out as 0.0010000000000000002 m3.
+    clean = float(f"{factor:.12g}")
+    return clean if abs(clean - factor) <= 4e-16 * factor else factor
 
 
 @functools.cache
