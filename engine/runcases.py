@@ -24,6 +24,9 @@ KINDS: Final = ("operating", "peak", "shut", "test", "surge", "empty")
 STILL: Final = ("shut", "test", "empty")
 """Kinds in which nothing flows."""
 
+EQUAL: Final = 1e-9
+"""Relative difference below which two cases count as equal."""
+
 CASE_BOUNDS: Final[dict[str, Bound]] = {
     "Q": ANY,
     "p": ANY,
@@ -204,10 +207,12 @@ def governing(values: Array, signed: bool = False) -> Governing:
     """Pick at each node the case of the largest magnitude, or of the largest value if ``signed``.
 
     ``values`` has shape (cases, N). A node that lacks a value in any case has none.
+    Cases closer than ``EQUAL`` differ by rounding, and the first of them governs.
     """
-    size = values if signed else np.abs(values)
     lacking = np.isnan(values).any(axis=0)
-    case = np.argmax(np.where(np.isnan(size), -np.inf, size), axis=0)
+    size = np.where(np.isnan(values), -np.inf, values if signed else np.abs(values))
+    largest = size.max(axis=0)
+    case = np.argmax(size >= largest - EQUAL * np.abs(largest), axis=0)
     value = np.where(lacking, np.nan, np.take_along_axis(values, case[None, :], axis=0)[0])
     return Governing(value, np.where(lacking, -1, case))
 

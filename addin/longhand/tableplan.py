@@ -235,7 +235,8 @@ def envelope(
         rows.append(RowStep(f"{quantity}m", f"largest of {quantity}", role, f"MAX({','.join(sized)})"))
         at = str(len(cases))
         for n in range(len(cases) - 1, 0, -1):
-            at = f"IF({sized[n - 1]}={{{quantity}m}},{n},{at})"
+            # Cases that differ by rounding alone are equal: the first of them governs.
+            at = f"IF({sized[n - 1]}>={{{quantity}m}}-0.000000001*ABS({{{quantity}m}}),{n},{at})"
         rows.append(RowStep(f"{quantity}k", "number of the first case that has it", "ratio", at))
         rows.append(RowStep(quantity, f"{quantity} in that case", role, f"CHOOSE({{{quantity}k}},{listed})"))
         rows.append(

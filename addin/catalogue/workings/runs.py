@@ -257,7 +257,7 @@ _PRESSURE = (
         "Ho",
         "total head at the offtake: of the side with the larger flow, less its loss",
         "head",
-        "IF(ABS({Q2})>ABS({Q1}),{H2},{H1})-{Ko}*{Vo}*ABS({Vo})/(2*{g})",
+        'IF({kind}="empty",{z},{E0}+IF(ABS({Q2})>ABS({Q1}),{e2},{e1})-{Ko}*{Vo}*ABS({Vo})/(2*{g}))',
     ),
     RowStep(
         "po",
