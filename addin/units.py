@@ -103,9 +103,11 @@ _spell("foot/second", "ft/s", "fps")
 _spell("kilometer/hour", "km/h")
 _spell("meter**3/second", "m3/s", "cumec")
 _spell("meter**3/hour", "m3/h", "m3/hr")
+_spell("meter**3/minute", "m3/min")
 _spell("meter**3/day", "m3/d", "m3/day")
 _spell("liter/second", "L/s", "l/s", "lps")
-_spell("liter/minute", "L/min", "l/min")
+_spell("liter/minute", "L/min", "l/min", "lpm")
+_spell("liter/hour", "L/h", "l/h")
 _spell("megaliter/day", "ML/d", "Ml/d", "MLD")
 _spell("gallon/minute", "gpm", "US gpm", "usgpm")
 _spell("imperial_gallon/minute", "UK gpm", "igpm")
@@ -316,7 +318,8 @@ def examples(role: str) -> str:
     return ", ".join(dict.fromkeys((known.si, known.metric, known.us)))
 
 
-_QUANTITY = re.compile(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?)\s*(\S.*?)\s*$")
+# A unit starts with no digit, point or comma: "0.25" must not read as 0.2 of the unit "5".
+_QUANTITY = re.compile(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?)\s*([^\s\d.,].*?)\s*$")
 
 
 def quantity(text: str, role: str) -> tuple[float, int]:

@@ -26,6 +26,9 @@ def test_published_factors(check: dict) -> None:
         ("-3 ft", "level", -0.9144),
         ("5 m³/s", "flow", 5.0),
         ("3600 m3/h", "flow", 1.0),
+        ("60 m3/min", "flow", 1.0),
+        ("600 lpm", "flow", 0.01),
+        ("3600 l/h", "flow", 0.001),
         ("10 l/s", "flow", 0.01),
         ("10 L/s", "flow", 0.01),
         ("4.5 bar", "pressure", 4.5e5),
@@ -69,6 +72,10 @@ def test_absolute_pressures_shift_by_the_ambient_pressure() -> None:
         ("3 furlong", "length", "not known"),
         ("3", "length", "number with its unit"),
         ("three m", "length", "number with its unit"),
+        ("0.21", "ratio", "number with its unit"),  # never 0.2 of a unit "1"
+        ("11", "ratio", "number with its unit"),
+        ("0,3 m", "length", "number with its unit"),
+        ("1.000,5 m", "length", "number with its unit"),
         ("2 deg", "ratio", "not a unit of ratio"),
         ("2 kpa", "pressure", "kPa"),  # case matters, and the nearest is offered
     ],
