@@ -174,3 +174,13 @@ def test_version_and_help(capsys: pytest.CaptureFixture[str]) -> None:
     assert "thrustbook" in capsys.readouterr().out
     assert cli.main([]) == 2
     assert "evaluate" in capsys.readouterr().out
+
+
+@pytest.mark.parametrize("name", ["b.xlsm", "b.xls", "b.ods", "b"])
+def test_a_copy_keeps_the_kind_of_the_workbook(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], name: str
+) -> None:
+    path = book(tmp_path / "a.xlsx", {"B1": '=TB_AREA("metric",300)'})
+    assert cli.main(["evaluate", str(path), "-o", str(tmp_path / name)]) == 2
+    assert "must end in .xlsx" in capsys.readouterr().err
+    assert not (tmp_path / name).exists()

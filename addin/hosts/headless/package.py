@@ -165,10 +165,17 @@ class Package:
     ) -> None:
         """Write :meth:`to_bytes` beside the target and rename, so that no crash harms an old file.
 
-        Raises :class:`Refusal` when the place cannot be written, or when the target is
-        this workbook and somebody else has saved it since it was read.
+        Raises :class:`Refusal` when the place cannot be written, when its name ends
+        otherwise than the workbook's, or when the target is this workbook and somebody
+        else has saved it since it was read.
         """
         target = Path(target)
+        if target.suffix.lower() != self.path.suffix.lower():
+            # A spreadsheet program opens no file whose content and name disagree.
+            raise Refusal(
+                f"{target} would hold a copy of {self.path.name}, so its name must end in "
+                f"{self.path.suffix or 'no extension'} too. Nothing was written."
+            )
         own = target.exists() and self.path.exists() and target.samefile(self.path)
         if own and self._seen is not None and _mark(target.stat()) != self._seen:
             raise Refusal(
