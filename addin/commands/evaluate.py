@@ -3,16 +3,18 @@
 from __future__ import annotations
 
 import argparse
+import itertools
 import json
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from pathlib import Path
+from string import ascii_uppercase
 from typing import Any
 
 from .. import figures
 from ..cells import CellError
-from ..hosts.headless.evaluate import Evaluation, Table, evaluate_workbook
+from ..hosts.headless.evaluate import Evaluation, Failed, Kept, Table, evaluate_workbook
 from ..hosts.headless.package import Package
 from ..hosts.headless.refusals import Refusal
 from .progress import Progress
@@ -92,9 +94,7 @@ def report(
         )
     for table in evaluation.tables:
         out += ["", *table_text(table, rows)]
-    out += _findings(
-        "Errors", [(f"{e.sheet}!{e.a1}", e.error, e.reason, e.formula) for e in evaluation.errors]
-    )
+    out += _findings("Errors", error_lines(evaluation.errors))
     out += _findings(
         "Not computed here: the value stored in the file was kept",
         [
@@ -122,6 +122,19 @@ def table_text(table: Table, rows: int) -> list[str]:
     out += figures.table([*headings, *shown], headings=len(headings))
     if len(grid) > len(shown):
         out.append(f"  ... {len(grid) - len(shown)} more rows")
+    return out
+
+
+def error_lines(errors: Sequence[Failed]) -> list[tuple[str, ...]]:
+    """List errors for a reader: the cells of one row of a block that share a reason make one line."""
+    out: list[tuple[str, ...]] = []
+    shared = itertools.groupby(
+        errors, lambda e: (e.sheet, e.a1.lstrip(ascii_uppercase), e.error, e.reason, e.formula)
+    )
+    for (sheet, _, error, reason, formula), cells in shared:
+        first, *others = (e.a1 for e in cells)
+        place = f"{first}:{others[-1]}" if others else first
+        out.append((f"{sheet}!{place}", error, reason, formula))
     return out
 
 
@@ -162,11 +175,15 @@ def as_data(evaluation: Evaluation, book: Path, target: Path) -> dict[str, Any]:
             }
             for t in evaluation.tables
         ],
-        "errors": [e._asdict() for e in evaluation.errors],
-        "kept": [k._asdict() for k in evaluation.native_kept],
+        "errors": [_finding(e) for e in evaluation.errors],
+        "kept": [_finding(k) for k in evaluation.native_kept],
         "not_evaluated": [e._asdict() for e in evaluation.not_evaluated],
         "remarks": evaluation.warnings,
     }
+
+
+def _finding(found: Failed | Kept) -> dict[str, Any]:
+    return {("cell" if name == "a1" else name): value for name, value in found._asdict().items()}
 
 
 def _plain(value: Any) -> Any:

@@ -78,7 +78,7 @@ def test_json_for_machines(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -
     assert data["tables"][0]["labels"] == ["F"]
     assert data["tables"][0]["units"] == ["kN"]
     assert data["tables"][0]["rows"][0][0] == pytest.approx(12.566370614)
-    assert data["errors"][0]["cell"] if "cell" in data["errors"][0] else data["errors"][0]["a1"] == "B2"
+    assert [e["cell"] for e in data["errors"]] == ["B2"]
 
 
 @pytest.mark.parametrize(
@@ -184,3 +184,15 @@ def test_a_copy_keeps_the_kind_of_the_workbook(
     assert cli.main(["evaluate", str(path), "-o", str(tmp_path / name)]) == 2
     assert "must end in .xlsx" in capsys.readouterr().err
     assert not (tmp_path / name).exists()
+
+
+def test_a_failed_row_of_a_block_is_one_line(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    table = '{"fitting","D1","p1"},{"closed",200,400;"closed",-1,400;"cap",200,400}'
+    path = book(tmp_path / "a.xlsx", {"A1": 1})
+    wb = openpyxl.load_workbook(path)
+    formula = f'=TB_SCHEDULE("name,Fx,F,Rx","metric",{table})'
+    wb["S"]["B1"] = openpyxl.worksheet.formula.ArrayFormula("B1:E3", formula)
+    wb.save(path)
+    assert cli.main(["evaluate", str(path)]) == 1
+    lines = [line.split()[:2] for line in capsys.readouterr().out.splitlines() if "S!" in line]
+    assert lines[-2:] == [["S!C2:E2", "#NUM!"], ["S!C3:E3", "#VALUE!"]]
