@@ -6,7 +6,6 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
-from formualizer import Workbook
 
 from thrustbook.engine.constants import P_ATM
 
@@ -15,7 +14,7 @@ from ..catalogue.types import Longhand, Row
 from ..cells import Cell, CellError, Grid, Refused, Scalar
 from ..figures import figure
 from ..hosts.headless.a1 import column_letters
-from ..hosts.headless.host import engine_value, scalar
+from ..hosts.headless.plainvalues import ROW, evaluate_rows
 from ..longhand.symbols import default_of, fill
 from ..tables import is_blank, number
 from ..units import UnitError, UnitSet
@@ -31,7 +30,6 @@ OF_LARGEST = 1e-13
 """The same as a fraction of the largest quantity of the same kind in the working: its rounding."""
 _BATCH = 4_000
 """Workings evaluated in one go, to bound the memory."""
-_ROW = "\x00"
 
 Given = tuple[Scalar, ...]
 """The arguments of one working: SI numbers, words, "" where nothing is given."""
@@ -53,13 +51,13 @@ class _Sheet:
         columns = {name: column_letters(i) for i, name in enumerate(names, 1)}
         templates = []
         for i, step in enumerate(self.working.steps, len(names) + 1):
-            templates.append("=" + fill(step.formula, lambda name: f"{columns[name]}{_ROW}"))
+            templates.append(fill(step.formula, lambda name: columns[name] + ROW))
             columns[step.symbol] = column_letters(i)
         given = list(self.lines)
         for start in range(0, len(given), _BATCH):
             book.tell(f"long-hand of {self.row.name}", start, len(given))
             batch = given[start : start + _BATCH]
-            self.values += _worked(batch, templates)
+            self.values += evaluate_rows(batch, templates)
 
     def step(self, line: int, result: str) -> Scalar:
         """The value of the step that is a result, SI."""
@@ -77,19 +75,6 @@ class _Sheet:
         """The largest of the steps of one kind of quantity, SI."""
         found = zip(self.working.steps, self.values[line], strict=True)
         return max((abs(v) for s, v in found if s.role == role and isinstance(v, float)), default=0.0)
-
-
-def _worked(given: Sequence[Given], templates: Sequence[str]) -> list[list[Scalar]]:
-    workbook = Workbook()
-    workbook.add_sheet("S")
-    sheet = workbook.sheet("S")
-    width = len(given[0])
-    sheet.set_values_batch(1, 1, len(given), width, [[engine_value(v) for v in line] for line in given])
-    formulas = [[t.replace(_ROW, str(r)) for t in templates] for r in range(1, len(given) + 1)]
-    sheet.set_formulas_batch(1, width + 1, len(given), len(templates), formulas)
-    workbook.evaluate_all()
-    columns = range(width + 1, width + len(templates) + 1)
-    return [[scalar(workbook.get_value("S", r, c)) for c in columns] for r in range(1, len(given) + 1)]
 
 
 @dataclass(slots=True)

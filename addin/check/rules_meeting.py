@@ -18,7 +18,7 @@ from ..figures import figure
 from ..units import UnitError
 from .book import Book
 from .calls import Call
-from .gather import figures
+from .gather import digest, figures
 from .types import Finding, Rule, Severity
 
 TOLERANCE = 1e-6
@@ -118,7 +118,7 @@ def _run_calls(book: Book) -> Iterator[Call]:
     seen = set()
     for call in book.calls:
         if call.row.name == "TB_RUN" and call.wanted is not None and call.wanted.form == "values":
-            key = figures(list(call.inputs))
+            key = digest(list(call.inputs))
             if key not in seen:
                 seen.add(key)
                 yield call

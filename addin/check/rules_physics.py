@@ -13,7 +13,7 @@ from ..figures import figure
 from ..units import UnitError
 from .book import Book
 from .calls import Call
-from .gather import Remark, figures, joined
+from .gather import Remark, digest, joined
 from .types import Finding, Rule, Severity
 
 BALANCE_TOLERANCE = 1e-6
@@ -33,7 +33,7 @@ def cautions(book: Book) -> Iterator[Finding]:
             book.tell("cautions", done, len(book.calls))
         if call.row.kind == "tool" or _only_headings(call):
             continue
-        basis = figures(list(call.inputs))
+        basis = digest(list(call.inputs))
         for row, text in _remarks(call):
             key = f"{call.row.name} {basis} {row}", text
             if key in seen:
@@ -94,14 +94,14 @@ def junctions(book: Book) -> Iterator[Finding]:
             node.a1,
             f"{call.row.name}: {said}",
             "What flows into a control volume must flow out of it; without that there is no thrust.",
-            figures(list(call.values)),
+            digest(list(call.values)),
         )
     seen = set()
     for call in book.calls:
         if call.row.name != "TB_BALANCE" or call.node.index in book.unclosed:
             continue
         share = _residual(call)
-        basis = figures(list(call.inputs))
+        basis = digest(list(call.inputs))
         if share > BALANCE_TOLERANCE and basis not in seen:
             seen.add(basis)
             yield Finding(
@@ -143,7 +143,7 @@ def run_closure(book: Book) -> Iterator[Finding]:
                 f"{call.row.name}: node thrusts, wall drag and weight miss the balance of the whole run "
                 f"by {figure(closure, 3)} of its largest force",
                 f"The two must agree to {RUN_TOLERANCE:g}; do not use these thrusts.",
-                figures(list(call.inputs)),
+                digest(list(call.inputs)),
             )
 
 
@@ -152,7 +152,7 @@ def _distinct(book: Book, names: Sequence[str]) -> Iterator[Call]:
     seen = set()
     for call in book.calls:
         if call.row.name in names and not _only_headings(call):
-            key = call.row.name, figures(list(call.inputs))
+            key = call.row.name, digest(list(call.inputs))
             if key not in seen:
                 seen.add(key)
                 yield call
@@ -201,7 +201,7 @@ def _table_key(call: Call) -> str:
     given = call.given[call.row.leading + 2 : call.row.leading + 3]
     if given and given[0].area is not None:
         return " ".join(map(str, given[0].area))
-    return figures(list(call.values[call.row.leading + 2 : call.row.leading + 3]))
+    return digest(list(call.values[call.row.leading + 2 : call.row.leading + 3]))
 
 
 def _kinds(row: Row, values: Sequence[Cell]) -> set[str]:
