@@ -206,3 +206,23 @@ def test_convert() -> None:
     assert [c.kind for c in (outcome[0, 1], outcome[1, 0], outcome[1, 1])] == ["VALUE", "VALUE", "NA"]
     for bad in ([None, "ft", "m"], [1.0, "ft"], [1.0, "ft", "psi"], [True, "ft", "m"], [1.0, 3.0, "m"]):
         assert isinstance(call("TB_CONVERT", bad), CellError)
+
+
+@pytest.mark.parametrize(
+    ("name", "args", "words"),
+    [
+        (
+            "TB_BEND",
+            ["F", "metric", 998.0, -300.0, 4.0, 100.0, 200.0],
+            "D1 = -300 mm (allowed: above 0); theta = 200 deg (allowed: at least 0 and at most 180)",
+        ),
+        ("TB_AREA", ["US", [[12.0], [-12.0]]], "element 2: D = -12 in (allowed: above 0)"),
+        (
+            "TB_SCHEDULE",
+            ["F", "metric", [["fitting", "D1", "p1"]], [["closed", -200.0, 3.0], ["closed", 200.0, 3.0]]],
+            "row 1: D1 = -200 mm (allowed: above 0)",
+        ),
+    ],
+)
+def test_a_reason_speaks_in_the_units_and_symbols_of_the_call(name: str, args: list[Any], words: str) -> None:
+    assert dispatch.why(name, args) == words

@@ -132,4 +132,4 @@ def test_negative_diameter_and_every_bad_argument_are_named() -> None:
     error = refused("TB_PIPELOSS", "dp", "metric", -998.0, 1.0, -300.0, 100.0, 0.1, 100.0)
     assert error.kind == "NUM"
     assert "rho = -998" in error.message
-    assert "D = -0.3" in error.message
+    assert "D = -300 mm (allowed: above 0)" in error.message

@@ -94,7 +94,7 @@ def test_a_port_may_have_an_area_in_its_own_unit() -> None:
     [
         ((0, 5, -101.0), "NUM", ("do not close",)),
         ((0, 0, 0.0), "NUM", ("n of port 1",)),
-        ((1, 3, -300.0), "NUM", ("A of port 2",)),
+        ((1, 3, -300.0), "NUM", ("D of port 2 = -300 mm",)),
         ((1, 4, None), "VALUE", ("row 2", "p is empty")),
         ((1, 3, None), "VALUE", ("row 2", "exactly one of D and A")),
         ((1, 4, "high"), "VALUE", ("row 2", "p")),

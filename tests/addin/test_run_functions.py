@@ -134,7 +134,7 @@ def test_vapour_pressure_is_a_remark_and_no_error() -> None:
 @pytest.mark.parametrize(
     ("row", "col", "value", "kind", "message"),
     [
-        (1, 4, -300.0, "NUM", "D = -0.3 (allowed: above 0)"),
+        (1, 4, -300.0, "NUM", "D = -300 mm (allowed: above 0)"),
         (1, 3, "high", "VALUE", 'z: "high"'),
         (1, 3, None, "VALUE", "z = not given"),
         (1, 4, CellError("DIV0"), "DIV0", "#DIV/0!"),
@@ -286,7 +286,7 @@ def test_a_bad_node_under_cases_spoils_every_row() -> None:
         found = tb_runcases(name, table_with(1, 4, -3.0))
         assert found.shape == (4, width)
         assert all(isinstance(v, CellError) for v in found.reshape(-1))
-        assert found[1, 0].message == "D = -0.003 (allowed: above 0)"
+        assert found[1, 0].message == "D = -3 mm (allowed: above 0)"
 
 
 def test_ten_thousand_nodes_through_the_dispatcher() -> None:

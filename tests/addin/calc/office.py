@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import os
 import select
 import shutil
 import subprocess
@@ -13,40 +12,16 @@ from pathlib import Path
 from types import TracebackType
 from typing import Any
 
-import pytest
-
+from tests import libreoffice
 from thrustbook.addin.hosts.calc import soffice
 
 DRIVER = Path(__file__).with_name("driver.py")
 PATIENCE = 120.0
-NEEDED = (
-    "These tests run a real LibreOffice. Install it with its Python module "
-    "(on Debian and Ubuntu: apt install libreoffice-calc python3-uno), or name the programs in the "
-    "environment variables THRUSTBOOK_SOFFICE and THRUSTBOOK_UNO_PYTHON."
-)
 
 
 def office_program() -> Path:
-    """The office; a missing one is a failure, never a skipped test."""
-    program = soffice.find()
-    if program is None:
-        pytest.fail(NEEDED)
-    return program
-
-
-def uno_python() -> str:
-    """A Python that has the office's uno module."""
-    candidates = [os.environ.get("THRUSTBOOK_UNO_PYTHON"), "/usr/bin/python3", shutil.which("python3")]
-    beside = office_program().resolve().parent
-    candidates += [str(beside / "python"), str(beside / "python.exe")]
-    for python in candidates:
-        if python and Path(python).exists():
-            tried = subprocess.run(
-                [python, "-c", "import uno"], capture_output=True, env=soffice.environment(), timeout=60
-            )
-            if tried.returncode == 0:
-                return python
-    pytest.fail(NEEDED)
+    """The office that the tests drive."""
+    return libreoffice.program()
 
 
 class Trouble(Exception):
@@ -72,7 +47,7 @@ class Office:
             start_new_session=True,
         )
         self._driver = subprocess.Popen(
-            [uno_python(), str(DRIVER), pipe],
+            [libreoffice.uno_python(), str(DRIVER), pipe],
             env=soffice.environment(),
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,

@@ -138,7 +138,7 @@ def test_empty_cells(office: Office, book: int) -> None:
     assert values[2] == {"error": NUM}
     assert isinstance(values[3], float)
     assert values[4] == values[3]
-    assert values[5] == "D = 0 (allowed: above 0)"
+    assert values[5] == "D = 0 m (allowed: above 0)"
     assert same(values[6], area)
 
 

@@ -16,6 +16,7 @@ from typing import Any
 
 import pytest
 
+from tests import libreoffice
 from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.addin.catalogue.types import Row
 from thrustbook.addin.hosts.excel.names import identifier, parameters
@@ -178,7 +179,7 @@ def office(tmp_path_factory: pytest.TempPathFactory) -> dict[str, Any]:
     (folder / "job").write_text(json.dumps(job), encoding="utf-8")
     script = Path(__file__).with_name("office_run.py")
     subprocess.run(
-        ["/usr/bin/python3", str(script), str(folder / "job"), str(folder / "answers")],
+        [libreoffice.uno_python(), str(script), str(folder / "job"), str(folder / "answers")],
         check=True,
         timeout=400,
         stdin=subprocess.DEVNULL,

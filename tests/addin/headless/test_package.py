@@ -2,7 +2,6 @@ from __future__ import annotations
 
 import os
 import random
-import shutil
 import signal
 import stat
 import struct
@@ -15,6 +14,7 @@ from pathlib import Path
 
 import pytest
 
+from tests import libreoffice
 from thrustbook.addin.cells import Scalar
 from thrustbook.addin.hosts.headless.package import NameRef, Package, Refusal, SheetRef, TableRef
 from thrustbook.addin.hosts.headless.sheetxml import store, stored_values
@@ -153,12 +153,11 @@ def test_sheet_is_identical_outside_the_changed_cells(book: Path) -> None:
 
 
 def test_opens_in_libreoffice(book: Path, tmp_path: Path) -> None:
-    soffice = shutil.which("soffice")
-    assert soffice, "this check needs LibreOffice (the command soffice)"
+    office = libreoffice.program()
     package = Package.read(book)
     package.save(book, {richbook.SHEET: store(package.part(richbook.SHEET), CHANGES)})
     profile = (tmp_path / "profile").as_uri()
-    command = [soffice, f"-env:UserInstallation={profile}", "--headless", "--convert-to", "pdf"]
+    command = [str(office), f"-env:UserInstallation={profile}", "--headless", "--convert-to", "pdf"]
     subprocess.run(
         [*command, "--outdir", str(tmp_path / "out"), str(book)], check=True, timeout=180, capture_output=True
     )

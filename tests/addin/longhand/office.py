@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-import shutil
 import subprocess
 from pathlib import Path
+
+from tests import libreoffice
 
 # Value 0 of the recalculation mode: always, whoever wrote the file.
 _SETTINGS = """<?xml version="1.0" encoding="UTF-8"?>
@@ -18,8 +19,6 @@ _SETTINGS = """<?xml version="1.0" encoding="UTF-8"?>
 
 def recalculated(book: Path, folder: Path, to: str = "xlsx") -> Path:
     """Load a workbook, recalculate everything, and give the file converted."""
-    program = shutil.which("soffice")
-    assert program, "LibreOffice is needed for this test: install libreoffice-calc"
     profile = folder / "profile"
     (profile / "user").mkdir(parents=True, exist_ok=True)
     (profile / "user" / "registrymodifications.xcu").write_text(_SETTINGS)
@@ -27,7 +26,7 @@ def recalculated(book: Path, folder: Path, to: str = "xlsx") -> Path:
     out.mkdir(exist_ok=True)
     subprocess.run(
         [
-            program,
+            str(libreoffice.program()),
             "--headless",
             "--norestore",
             f"-env:UserInstallation={profile.as_uri()}",
