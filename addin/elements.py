@@ -10,11 +10,12 @@ from typing import Any
 import numpy as np
 
 from thrustbook.engine.constants import P_ATM
+from thrustbook.engine.errors import EngineError
 from thrustbook.engine.guard import Routine
 
 from .catalogue.types import Row
 from .cells import Cell, CellError, Grid, Refused
-from .failures import failures, warnings
+from .failures import failures, refused, warnings
 from .leading import Wanted, heading_row, read_units, wanted
 from .tables import column_from_si, is_blank, number, numbers
 from .units import Unit, UnitSet
@@ -126,7 +127,10 @@ def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
         if any(type(cell) is list for cell in cells):
             return _grid(plan, cells)
         _read_scalars(plan, cells, values)
-    result = plan.routine.scalar(values)
+    try:
+        result = plan.routine.scalar(values)
+    except EngineError as error:
+        return refused(row, plan.units, error)
     if plan.divisor:
         value = result[plan.first]
         if value != value:
@@ -210,7 +214,7 @@ def _grid(plan: _Plan, cells: Sequence[Cell]) -> Grid:
         undefined = np.isnan(column)
         if undefined.any():
             columns[-1][undefined] = CellError("NUM", _undefined(plan.row.results[j].name))
-    failed = failures(plan.routine, values, status, errors)
+    failed = failures(plan.row, plan.units, values, status, errors)
     for column in columns:
         for i, error in failed.items():
             column[i] = error

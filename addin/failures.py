@@ -9,11 +9,12 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
-from thrustbook.engine.errors import EngineError, Status
-from thrustbook.engine.guard import Routine
+from thrustbook.engine.errors import EngineError, Problem, Status
+from thrustbook.engine.guard import Bound
 
 from .catalogue.types import Row
 from .cells import CellError, ErrorKind
+from .units import ROLES, UnitSet, unit
 
 MOST_EXPLAINED = 1000
 """Failed elements of one array call that get a message of their own."""
@@ -25,17 +26,57 @@ def kind_of(error: EngineError) -> ErrorKind:
     return "VALUE" if missing else "NUM"
 
 
+def in_units(problem: Problem, role: str, units: UnitSet, bound: Bound | None = None) -> str:
+    """Word a bad argument with its value, and the range allowed, in the unit of the call.
+
+    A pressure that the set measures from the other datum stays in pascals: the message
+    shows the engine's own number then.
+    """
+    x = problem.value
+    if role not in ROLES or not isinstance(x, float) or x != x:
+        return str(problem)
+    given = units.unit(role)
+    if given.shift:
+        given = unit(ROLES[role].si, role)
+    symbol = "" if given.symbol == "-" else f" {given.symbol}"
+    allowed = problem.allowed
+    if bound is not None and allowed == str(bound):
+        allowed = str(bound._replace(low=bound.low / given.factor, high=bound.high / given.factor))
+    return f"{problem.argument} = {x / given.factor:.6g}{symbol} (allowed: {allowed})"
+
+
+def refused(row: Row, units: UnitSet, error: EngineError, names: Mapping[str, str] = {}) -> CellError:
+    """Turn a refusal of a row's routine into its error value, worded in the units of the call.
+
+    ``names`` gives the arguments that the sheet calls otherwise.
+    """
+    args = {a.name: a for a in row.args}
+    texts = [
+        in_units(
+            p._replace(argument=names.get(p.argument, p.argument)),
+            args[p.argument].role,
+            units,
+            row.bound(args[p.argument]),
+        )
+        for p in error.problems
+    ]
+    return CellError(kind_of(error), "; ".join(texts) or error.reason)
+
+
 def failures(
-    routine: Routine[Any, Any],
+    row: Row,
+    units: UnitSet,
     values: Sequence[Any],
     status: npt.NDArray[np.uint8],
     errors: Mapping[int, CellError],
+    names: Mapping[str, str] = {},
 ) -> dict[int, CellError]:
     """Give each failed element its error; the reason comes from asking again for that element alone."""
     out = dict(errors)
-    for n, i in enumerate(np.flatnonzero(status)):
-        if int(i) not in out:
-            out[int(i)] = explain(routine, values, int(i)) if n < MOST_EXPLAINED else UNEXPLAINED[status[i]]
+    for n, i in enumerate(np.flatnonzero(status).tolist()):
+        if i not in out:
+            asked = n < MOST_EXPLAINED
+            out[i] = _explain(row, units, values, i, names) if asked else UNEXPLAINED[int(status[i])]
     return out
 
 
@@ -45,13 +86,13 @@ UNEXPLAINED = {
 }
 
 
-def explain(routine: Routine[Any, Any], values: Sequence[Any], i: int) -> CellError:
+def _explain(row: Row, units: UnitSet, values: Sequence[Any], i: int, names: Mapping[str, str]) -> CellError:
     """Say why element ``i`` of an array call failed."""
     alone = [float(v.reshape(-1)[i if v.size > 1 else 0]) if isinstance(v, np.ndarray) else v for v in values]
     try:
-        routine.scalar(alone)
+        row.routine.scalar(alone)
     except EngineError as error:
-        return CellError(kind_of(error), error.reason)
+        return refused(row, units, error, names)
     return UNEXPLAINED[int(Status.NO_SOLUTION)]
 
 

@@ -194,7 +194,7 @@ def flow_at_end(geometry: Geometry, start: RunStart, Qo: Array) -> tuple[float, 
         problems.append(Problem("Q", at_end, "out of the jet, not into it"))
     moving = math.isnan(at_end) or at_end != 0 or bool(np.any(Qo != 0))
     if moving and math.isnan(start.viscosity) and np.isnan(geometry.f[:-1]).any():
-        problems.append(Problem("mu", NOT_GIVEN, "a viscosity mu or nu, or f on every leg"))
+        problems.append(Problem("mu", NOT_GIVEN, "a viscosity, or f on every leg"))
     return at_end, problems
 
 

@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 import math
+import re
 from typing import Final
 
 import numpy as np
 
-from thrustbook.engine.balance import CLOSURE_TOLERANCE
+from thrustbook.engine.balance import CLOSURE_TOLERANCE, Array
 from thrustbook.engine.balance import balance as momentum_balance
+from thrustbook.engine.errors import OutOfRange, Problem
 
 from ..catalogue.types import Column
 from ..cells import Cell, CellError, Refused
+from ..failures import in_units, kind_of
 from ..tables import Table, number, read_table
 from .types import TableAnswer, TableCall
 
@@ -46,24 +49,28 @@ def balance(call: TableCall) -> TableAnswer:
             row = int(np.flatnonzero(used & np.isnan(table.number(column.name)))[0])
             raise Refused("VALUE", f"row {row + 1} of the ports: {column.name} is empty (it is required)")
     n = np.stack([table.number(f"n{axis}") for axis in "xyz"], axis=1)
-    result = momentum_balance(
-        n[used],
-        area[used],
-        table.number("p")[used],
-        table.number("Q")[used],
-        rho,
-        table.number("beta", 1.0)[used],
-        W,
-        rate,
-        tol,
-    )
+    try:
+        result = momentum_balance(
+            n[used],
+            area[used],
+            table.number("p")[used],
+            table.number("Q")[used],
+            rho,
+            table.number("beta", 1.0)[used],
+            W,
+            rate,
+            tol,
+        )
+    except OutOfRange as error:
+        D = table.number("D")[used]
+        raise Refused(kind_of(error), "; ".join(_worded(p, D, call) for p in error.problems)) from error
     return TableAnswer(
         columns={name: np.array([x]) for name, x in result._asdict().items()},
         single=True,
     )
 
 
-def _areas(table: Table) -> np.ndarray[tuple[int, ...], np.dtype[np.float64]]:
+def _areas(table: Table) -> Array:
     """Give the area of each port from its diameter or its area; exactly one of the two is given."""
     D, A = table.number("D"), table.number("A")
     both = np.isnan(D) == np.isnan(A)
@@ -71,6 +78,20 @@ def _areas(table: Table) -> np.ndarray[tuple[int, ...], np.dtype[np.float64]]:
         raise Refused("VALUE", f"row {row + 1} of the ports: give exactly one of D and A")
     # A negative diameter must not turn into an area that looks right.
     return np.where(np.isnan(D), A, math.pi / 4 * D * np.abs(D))
+
+
+_PORT: Final = re.compile(r"(\w+) of port (\d+)$")
+_ROLES: Final = {c.name: c.role for c in PORT_COLUMNS} | {"rho": "density", "W": "force"}
+
+
+def _worded(problem: Problem, D: Array, call: TableCall) -> str:
+    """Word a bad argument as the sheet has it: in its unit, and a diameter for the area it gave."""
+    match = _PORT.match(problem.argument)
+    name = match[1] if match else problem.argument
+    if match and name == "A" and not math.isnan(D[int(match[2]) - 1]):
+        name = "D"
+        problem = problem._replace(argument=f"D of port {match[2]}", value=float(D[int(match[2]) - 1]))
+    return in_units(problem, _ROLES.get(name, ""), call.units)
 
 
 def _scalar(call: TableCall, cell: Cell, name: str, role: str, empty: float) -> float:

@@ -72,7 +72,7 @@ def run(call: TableCall) -> TableAnswer:
         try:
             result = engine_run(nodes.run_table, start)
         except EngineError as refusal:
-            raise from_engine(nodes, refusal) from refusal
+            raise from_engine(nodes, refusal, call.units) from refusal
     except RunFault as fault:
         return spoilt_answer(call, fault, _NUMBERS)
     faults = thrust_faults(nodes, result.note)

@@ -72,7 +72,7 @@ def runcases(call: TableCall) -> TableAnswer:
         try:
             result = run_cases(nodes.run_table, start, cases)
         except EngineError as refusal:
-            raise from_engine(nodes, refusal, cases) from refusal
+            raise from_engine(nodes, refusal, call.units, cases) from refusal
     except RunFault as fault:
         return spoilt_answer(call, fault, _NUMBERS, len(cases) if wide else 0)
     faults = thrust_faults(nodes, result.runs[0].note)

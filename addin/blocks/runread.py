@@ -19,7 +19,7 @@ from thrustbook.engine.runshape import RunTable
 
 from ..catalogue.types import Column
 from ..cells import Cell, CellError, Refused
-from ..failures import kind_of
+from ..failures import in_units, kind_of
 from ..tables import Table, as_range, read_pairs, read_table
 from ..units import UnitSet
 
@@ -203,21 +203,28 @@ def place_valves(nodes: Nodes, cases: Sequence[LoadCase], valves: Sequence[str])
     return out
 
 
-def from_engine(nodes: Nodes, error: EngineError, cases: Sequence[LoadCase] = ()) -> Exception:
+def from_engine(
+    nodes: Nodes, error: EngineError, units: UnitSet, cases: Sequence[LoadCase] = ()
+) -> Exception:
     """Turn a refusal of the engine into errors of rows, or of the call where no row is to blame."""
     at_rows: dict[int, list[Problem]] = {}
     general: list[str] = []
     case_entries = {*(c.name for c in CASE_COLUMNS), "mu"}
+    roles = {c.name: c.role for c in (*NODE_COLUMNS, *START_COLUMNS, *CASE_COLUMNS)}
+
+    def worded(problem: Problem) -> str:
+        return in_units(problem, roles.get(problem.argument, ""), units)
+
     for problem in error.problems:
         match = _INDEX.match(problem.argument)
         if not match:
-            general.append(str(problem))
+            general.append(worded(problem))
             continue
         name, index = match[1], int(match[2])
         plain = problem._replace(argument=_INDEX.sub(r"\1", problem.argument))
         # Nodes and cases share no column, so the name tells whose index it is.
         if cases and name in case_entries:
-            general.append(f"case {cases[index].name}: {plain}")
+            general.append(f"case {cases[index].name}: {worded(plain)}")
         else:
             at_rows.setdefault(int(nodes.rows[index]), []).append(plain)
     if not at_rows:
@@ -225,7 +232,7 @@ def from_engine(nodes: Nodes, error: EngineError, cases: Sequence[LoadCase] = ()
     errors = {}
     for row, problems in at_rows.items():
         missing = any(isinstance(p.value, float) and np.isnan(p.value) for p in problems)
-        errors[row] = CellError("VALUE" if missing else "NUM", "; ".join(map(str, problems)))
+        errors[row] = CellError("VALUE" if missing else "NUM", "; ".join(map(worded, problems)))
     return RunFault(nodes, _spoilt(nodes, errors, general))
 
 

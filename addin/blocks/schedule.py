@@ -20,6 +20,7 @@ from ..catalogue.types import Column, Result, Row
 from ..cells import CellError
 from ..failures import failures
 from ..tables import Table, read_table
+from ..units import UnitSet
 from .types import TableAnswer, TableCall
 
 COLUMN_OF: Final[Mapping[str, str]] = {"D": "D1", "p": "p1", "Q1": "Q", "V": "V1"}
@@ -68,7 +69,7 @@ class Schedule:
                 for i in places.tolist():
                     errors.setdefault(i, CellError("VALUE", f"fitting is {shown} (allowed: {allowed})"))
                 continue
-            self._evaluate(row, table, places, columns, errors, notes)
+            self._evaluate(row, call.units, table, places, columns, errors, notes)
         columns["name"] = table.text("name")
         columns["fitting"] = table.text("fitting")
         return TableAnswer(columns=columns, errors=errors, notes=notes, blank=table.blank)
@@ -76,6 +77,7 @@ class Schedule:
     def _evaluate(
         self,
         row: Row,
+        units: UnitSet,
         table: Table,
         places: npt.NDArray[np.intp],
         columns: dict[str, Any],
@@ -103,7 +105,7 @@ class Schedule:
         for name, target in columns.items():
             if name in given:
                 target[places] = given[name]
-        for i, error in failures(routine, values, status, {}).items():
+        for i, error in failures(row, units, values, status, {}, COLUMN_OF).items():
             errors.setdefault(int(places[i]), error)
         _note(row, values, results, places, notes)
 
