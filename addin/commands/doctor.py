@@ -4,13 +4,10 @@ from __future__ import annotations
 
 import argparse
 import json
-import os
 import platform
-import shutil
 import sys
 from collections.abc import Callable
 from importlib import metadata
-from pathlib import Path
 from typing import NamedTuple
 
 from .. import describe
@@ -75,12 +72,9 @@ def _headless() -> tuple[str, str]:
 
 
 def _calc() -> tuple[str, str]:
-    office = shutil.which("soffice") or shutil.which("libreoffice")
-    places = (
-        Path("/Applications/LibreOffice.app/Contents/MacOS/soffice"),
-        Path(os.environ.get("PROGRAMFILES", "C:/Program Files")) / "LibreOffice/program/soffice.exe",
-    )
-    found = office or next((str(p) for p in places if p.exists()), None)
+    from ..hosts.calc import soffice
+
+    found = soffice.find()
     if found is None:
         return "absent", "LibreOffice was not found; it is needed only for use inside Calc"
     return "found", f"{found}; thrustbook install calc puts the functions in"
