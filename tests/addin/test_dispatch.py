@@ -224,5 +224,7 @@ def test_convert() -> None:
         ),
     ],
 )
-def test_a_reason_speaks_in_the_units_and_symbols_of_the_call(name: str, args: list[Cell], words: str) -> None:
+def test_a_reason_speaks_in_the_units_and_symbols_of_the_call(
+    name: str, args: list[Cell], words: str
+) -> None:
     assert dispatch.why(name, args) == words
