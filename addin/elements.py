@@ -15,7 +15,7 @@ from thrustbook.engine.guard import Routine
 
 from .catalogue.types import Row
 from .cells import Cell, CellError, Grid, Refused
-from .failures import failures, refused, warnings
+from .failures import cautions, failures, refused
 from .leading import Wanted, heading_row, read_units, wanted
 from .tables import column_from_si, is_blank, number, numbers
 from .units import Unit, UnitSet
@@ -288,4 +288,4 @@ def remarks(row: Row, args: Sequence[Cell], outcome: Cell | Grid) -> list[str]:
         values = plan.defaults.copy()
         _read_scalars(plan, cells, values)
         results = plan.routine.scalar(values)
-    return warnings(row, values, results)
+    return [text for text, applies in cautions(row, values, results) if applies.any()]

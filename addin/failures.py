@@ -96,10 +96,10 @@ def _explain(row: Row, units: UnitSet, values: Sequence[Any], i: int, names: Map
     return UNEXPLAINED[int(Status.NO_SOLUTION)]
 
 
-def warnings(row: Row, values: Sequence[Any], results: Sequence[Any]) -> list[str]:
-    """List the cautions of a row that apply anywhere to these arguments (SI) and results (SI)."""
+def cautions(row: Row, values: Sequence[Any], results: Sequence[Any]) -> list[tuple[str, Any]]:
+    """Give the cautions of a row, each with where it applies to these arguments and results (SI)."""
     known = dict(zip((a.name for a in row.args), values, strict=True))
     # A name that is both, such as p2, is the result: the same where it was given, found where it was not.
     known |= {r.name: x for r, x in zip(row.results, results, strict=True)}
     with np.errstate(invalid="ignore"):
-        return [c.text for c in row.cautions if bool(np.any(c.test(known)))]
+        return [(c.text, np.asarray(c.test(known), dtype=bool)) for c in row.cautions]

@@ -11,8 +11,9 @@ from typing import NamedTuple
 
 from .constants import G
 from .guard import AT_LEAST_ONE, NON_NEGATIVE, POSITIVE, Bound, routine
-from .momentum import circle, count_given, section_force
+from .momentum import count_given, section_force
 from .numeric import NOT_GIVEN, Num, choose, default, is_given, refuse, sqrt
+from .sections import circle
 
 
 class NozzleForces(NamedTuple):

@@ -18,8 +18,9 @@ import math
 from typing import NamedTuple
 
 from .guard import AT_LEAST_ONE, HALF_TURN, NON_NEGATIVE, POSITIVE, routine
-from .momentum import circle, magnitude, next_pressure, section_force
+from .momentum import magnitude, next_pressure, section_force
 from .numeric import NOT_GIVEN, Num, atan2, cos, default, is_given, minimum, refuse, sin
+from .sections import circle
 
 
 class BendForces(NamedTuple):

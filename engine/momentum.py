@@ -7,17 +7,8 @@ nothing: the routines' guards do.
 
 from __future__ import annotations
 
-import math
-
 from .constants import G
 from .numeric import Num, is_given, sqrt
-
-QUARTER_PI = math.pi / 4
-
-
-def circle(D: Num) -> Num:
-    """Area of a circle of diameter D [m] -> [m2]."""
-    return QUARTER_PI * (D * D)
 
 
 def section_force(p: Num, A: Num, rho: Num, Q: Num, V: Num, beta: Num) -> Num:

@@ -18,6 +18,7 @@ from .errors import Problem
 from .friction import MAX_ROUGHNESS
 from .guard import ANY, NON_NEGATIVE, POSITIVE, Bound
 from .numeric import NOT_GIVEN
+from .sections import circle
 
 Array = npt.NDArray[np.float64]
 Column = npt.ArrayLike
@@ -246,9 +247,9 @@ def _faces(c: dict[str, Array], legs: Array, L: Array, start: str, end: str) -> 
     if end != "continues":
         Dj[-1] = D2[-1]  # no joint there: a cap, or a jet at no pressure
     joint_bad = Dj < D2
-    joint2 = np.where(joint_bad, np.nan, np.pi / 4 * Dj**2)
+    joint2 = np.where(joint_bad, np.nan, circle(Dj))
     D1, joint1 = _shift(D2), _shift(joint2)
-    area1, area2 = np.pi / 4 * D1**2, np.pi / 4 * D2**2
+    area1, area2 = circle(D1), circle(D2)
     if start == "closed":
         area1[0] = joint1[0] = 0.0
     if end == "closed":
@@ -267,7 +268,7 @@ def _faces(c: dict[str, Array], legs: Array, L: Array, start: str, end: str) -> 
     sound = offtake & ~fault
     offtake_u = np.zeros_like(direction)
     offtake_u[sound] = direction[sound] / length[sound, None]
-    offtake_area = np.where(sound, np.pi / 4 * np.nan_to_num(c["Do"]) ** 2, np.where(fault, np.nan, 0.0))
+    offtake_area = np.where(sound, circle(c["Do"]), np.where(fault, np.nan, 0.0))
 
     local = [
         Problem(f"Dj[{j}]", float(Dj[j]), f"at least the diameter {D2[j]:g}")

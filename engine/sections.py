@@ -62,8 +62,8 @@ class Profile(NamedTuple):
 
 
 def circle(D: Num) -> Num:
-    """Area of a full circular section [m2], for other routines; no checks."""
-    return QUARTER_PI * D * D
+    """Area of a circle of diameter D [m] -> [m2], for other routines; no checks."""
+    return QUARTER_PI * (D * D)
 
 
 @routine(D=POSITIVE)

@@ -11,8 +11,9 @@ from typing import NamedTuple
 
 from .constants import G
 from .guard import AT_LEAST_ONE, NON_NEGATIVE, POSITIVE, routine
-from .momentum import circle, count_given
+from .momentum import count_given
 from .numeric import NOT_GIVEN, Num, default, refuse
+from .sections import circle
 
 
 class InlineForces(NamedTuple):

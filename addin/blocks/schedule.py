@@ -18,7 +18,7 @@ from thrustbook.engine.guard import Routine
 
 from ..catalogue.types import Column, Result, Row
 from ..cells import CellError
-from ..failures import failures
+from ..failures import cautions, failures
 from ..tables import Table, read_table
 from ..units import UnitSet
 from .types import TableAnswer, TableCall
@@ -107,7 +107,9 @@ class Schedule:
                 target[places] = given[name]
         for i, error in failures(row, units, values, status, {}, COLUMN_OF).items():
             errors.setdefault(int(places[i]), error)
-        _note(row, values, results, places, notes)
+        for text, applies in cautions(row, values, results):
+            for i in places[np.broadcast_to(applies, places.shape)].tolist():
+                notes[i] = f"{notes[i]}; {text}" if i in notes else text
 
 
 def _groups(table: Table, errors: Mapping[int, CellError]) -> dict[str, npt.NDArray[np.intp]]:
@@ -129,19 +131,3 @@ def _along_axis(given: Mapping[str, Any], size: int) -> dict[str, Any]:
         return {}
     zero = np.zeros(size)
     return dict(zip(_SYMMETRIC, (zero, zero, np.where(given["Fx"] < 0, np.pi, 0.0)), strict=True))
-
-
-def _note(
-    row: Row,
-    values: Sequence[Any],
-    results: Sequence[Any],
-    places: npt.NDArray[np.intp],
-    notes: dict[int, str],
-) -> None:
-    known = dict(zip((a.name for a in row.args), values, strict=True))
-    known |= {r.name: x for r, x in zip(row.results, results, strict=True)}
-    with np.errstate(invalid="ignore"):
-        for caution in row.cautions:
-            applies = np.broadcast_to(np.asarray(caution.test(known), dtype=bool), places.shape)
-            for i in places[applies].tolist():
-                notes[i] = f"{notes[i]}; {caution.text}" if i in notes else caution.text
