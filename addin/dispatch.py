@@ -78,8 +78,11 @@ def why(name: str, args: Sequence[Cell]) -> str:
         return outcome.message or str(outcome)
     row = _row(name)
     if row.kind == "tool":
-        return "ok"
-    remarks = tabular.remarks(row, args) if row.kind == "table" else elements.remarks(row, args, outcome)
+        remarks = elements.failed_elements(outcome)
+    elif row.kind == "table":
+        remarks = tabular.remarks(row, args)
+    else:
+        remarks = elements.remarks(row, args, outcome)
     return "; ".join(remarks) or "ok"
 
 

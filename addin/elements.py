@@ -270,15 +270,23 @@ def _read_arrays(plan: _Plan, flat: Sequence[Any], size: int) -> tuple[list[Any]
     return values, errors
 
 
-def remarks(row: Row, args: Sequence[Cell], outcome: Cell | Grid) -> list[str]:
-    if isinstance(outcome, np.ndarray):
-        failed = [(i, c) for i, c in enumerate(outcome.reshape(-1)) if isinstance(c, CellError)]
-        if failed:
-            more = f"; {len(failed) - 5} more" if len(failed) > 5 else ""
-            return ["; ".join(f"element {i + 1}: {c.message or c}" for i, c in failed[:5]) + more]
-    if not row.cautions:
+def failed_elements(outcome: Cell | Grid) -> list[str]:
+    """Say of a grid which elements failed and why; the first few."""
+    if not isinstance(outcome, np.ndarray):
         return []
+    failed = [(i, c) for i, c in enumerate(outcome.reshape(-1), 1) if isinstance(c, CellError)]
+    more = [f"{len(failed) - 5} more"] if len(failed) > 5 else []
+    return [f"element {i}: {c.message or c}" for i, c in failed[:5]] + more
+
+
+def remarks(row: Row, args: Sequence[Cell], outcome: Cell | Grid) -> list[str]:
+    """List what TB_WHY tells of a call that was answered."""
+    failed = failed_elements(outcome)
+    if failed or not row.cautions:
+        return failed
     plan = _plan(row, args)
+    if plan.asked.form != "values":
+        return []
     cells = [_single(cell) for cell in args[row.leading :]]
     if any(type(cell) is list for cell in cells):
         shape, flat = _broadcast(plan, cells)

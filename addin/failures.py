@@ -33,6 +33,9 @@ def in_units(problem: Problem, role: str, units: UnitSet, bound: Bound | None = 
     shows the engine's own number then.
     """
     x = problem.value
+    own = bound is not None and problem.allowed == str(bound)
+    if own and isinstance(x, float) and x != x:
+        return f"{problem.argument} is not given (it is required)"
     if role not in ROLES or not isinstance(x, float) or x != x:
         return str(problem)
     given = units.unit(role)
@@ -40,7 +43,7 @@ def in_units(problem: Problem, role: str, units: UnitSet, bound: Bound | None = 
         given = unit(ROLES[role].si, role)
     symbol = "" if given.symbol == "-" else f" {given.symbol}"
     allowed = problem.allowed
-    if bound is not None and allowed == str(bound):
+    if bound is not None and own:
         allowed = str(bound._replace(low=bound.low / given.factor, high=bound.high / given.factor))
     return f"{problem.argument} = {x / given.factor:.6g}{symbol} (allowed: {allowed})"
 

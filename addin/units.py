@@ -2,8 +2,8 @@
 
 Every argument and result of a worksheet function has a *role* (diameter,
 pressure, flow, ...). A *unit set* gives each role a unit. A number crosses the
-boundary by one multiplication (and, for a temperature or an absolute pressure,
-one addition) whose factor pint worked out once; pint never runs for a cell.
+boundary by one multiplication (and, for an absolute pressure, one addition)
+whose factor pint worked out once; pint never runs for a cell.
 
 Units are accepted from an explicit list of spellings, as engineers write them.
 A spelling that means two things ("ton", "mb") is refused with what to write.

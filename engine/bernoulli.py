@@ -14,7 +14,7 @@ from __future__ import annotations
 from typing import NamedTuple
 
 from .constants import G
-from .guard import NON_NEGATIVE, POSITIVE, Bound, routine
+from .guard import AT_LEAST_ONE, NON_NEGATIVE, POSITIVE, Bound, routine
 from .numeric import NOT_GIVEN, Num, choose, default, is_given, maximum, refuse, sqrt
 from .sections import circle
 
@@ -62,8 +62,8 @@ def loss_of_head(V1: Num, V2: Num, K: Num, hL: Num) -> Num:
     D2=POSITIVE,
     K=NON_NEGATIVE,
     hL=NON_NEGATIVE,
-    alpha1=NON_NEGATIVE,
-    alpha2=NON_NEGATIVE,
+    alpha1=AT_LEAST_ONE,
+    alpha2=AT_LEAST_ONE,
 )
 def pressure(
     rho: Num,
@@ -144,8 +144,8 @@ def pressure(
     Q=NON_NEGATIVE,
     Cd=Bound(low=0.0, high=1.0, open_low=True),
     K=NON_NEGATIVE,
-    alpha1=NON_NEGATIVE,
-    alpha2=NON_NEGATIVE,
+    alpha1=AT_LEAST_ONE,
+    alpha2=AT_LEAST_ONE,
 )
 def discharge(
     rho: Num,
@@ -248,8 +248,8 @@ def discharge(
     D2=POSITIVE,
     K=NON_NEGATIVE,
     hL=NON_NEGATIVE,
-    alpha1=NON_NEGATIVE,
-    alpha2=NON_NEGATIVE,
+    alpha1=AT_LEAST_ONE,
+    alpha2=AT_LEAST_ONE,
 )
 def pumphead(
     rho: Num,

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import NamedTuple
 
 from .constants import P_ATM, G
-from .guard import NON_NEGATIVE, POSITIVE, Bound, routine
+from .guard import AT_LEAST_ONE, NON_NEGATIVE, POSITIVE, Bound, routine
 from .numeric import NOT_GIVEN, Num, choose
 
 
@@ -34,7 +34,7 @@ class Cavitation(NamedTuple):
     NPSH: Num
 
 
-@routine(rho=POSITIVE, alpha=NON_NEGATIVE)
+@routine(rho=POSITIVE, alpha=AT_LEAST_ONE)
 def head(rho: Num, p: Num, V: Num, z: Num = 0.0, alpha: Num = 1.0) -> Head:
     """Total head and hydraulic grade at a section.
 

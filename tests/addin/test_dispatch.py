@@ -227,4 +227,17 @@ def test_convert() -> None:
 def test_a_reason_speaks_in_the_units_and_symbols_of_the_call(
     name: str, args: list[Cell], words: str
 ) -> None:
-    assert dispatch.why(name, args) == words
+    assert why(name, args) == words
+
+
+@pytest.mark.parametrize(
+    ("name", "args", "words"),
+    [
+        ("TB_BEND", ["labels"], "ok"),
+        ("TB_BEND", ["units", "US"], "ok"),
+        ("TB_BEND", ["F", "metric", 998.0, 300.0, 4.0, 100.0], "theta is not given (it is required)"),
+        ("TB_CONVERT", [[[1.0, "x"]], "bar", "psi"], "element 2: value is 'x' (allowed: a number)"),
+    ],
+)
+def test_why_answers_for_headings_gaps_and_converted_ranges(name: str, args: list[Cell], words: str) -> None:
+    assert why(name, args) == words

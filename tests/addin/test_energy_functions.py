@@ -133,3 +133,17 @@ def test_negative_diameter_and_every_bad_argument_are_named() -> None:
     assert error.kind == "NUM"
     assert "rho = -998" in error.message
     assert "D = -300 mm (allowed: above 0)" in error.message
+
+
+@pytest.mark.parametrize(
+    ("name", "args"),
+    [
+        ("TB_HEAD", ["H", "SI", 998.0, 4e5, 1.5, 12.0, 0.9]),
+        ("TB_PRESSURE", ["p2", "SI", 998.0, 0.3, 0.2, 4e5, 0.1, None, None, None, None, 0.9]),
+        ("TB_DISCHARGE", ["Q", "SI", 998.0, 0.3, 0.2, 4e5, None, None, None, None, None, 0.9]),
+    ],
+)
+def test_a_kinetic_energy_correction_is_at_least_one(name: str, args: list[Cell]) -> None:
+    """The mean of the cube of a velocity is never below the cube of its mean."""
+    assert refused(name, *args).kind == "NUM"
+    assert "at least 1" in dispatch.why(name, args)

@@ -291,7 +291,7 @@ def test_contract_is_the_same_with_calc_and_with_the_embedded_engine(tmp_path: P
     assert not calc.ok
     reasons = {error.a1: error.reason for error in calc.errors}
     assert reasons["A4"] == "D = -300 mm (allowed: above 0)"
-    assert reasons["A3"] == "D = not given (allowed: above 0)"
+    assert reasons["A3"] == "D is not given (it is required)"
     assert {e.a1 for e in calc.errors} == {e.a1 for e in headless.errors}
 
 
