@@ -140,7 +140,7 @@ def _evaluated(
     model = Model(package, functions, progress)
     evaluation = Evaluation()
     for sheet in package.sheets:
-        for where, formula in elsewhere(package.part(sheet.part)):
+        for where, formula in elsewhere(package.part(sheet.part), model.names, sheet.name):
             evaluation.not_evaluated.append(Elsewhere(sheet.name, where, formula))
     calling = [node for node in model.nodes if node.calls]
     if not calling:

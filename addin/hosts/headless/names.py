@@ -67,6 +67,10 @@ class Names:
             self._calling[name] = found
         return found
 
+    def that_call(self) -> list[str]:
+        """The names in which a TB_ function is called."""
+        return [name.name for name in self._names.values() if self.calling(name)]
+
     def written_out(self, parts: list[Part], sheet: str, row: int, col: int, depth: int = 0) -> list[Part]:
         """The parts of a formula with every name that calls a TB_ function replaced by its text.
 

@@ -325,18 +325,24 @@ def test_conditional_formats_and_validations_are_reported(path: Path) -> None:
     from openpyxl.formatting.rule import FormulaRule
     from openpyxl.worksheet.datavalidation import DataValidation
 
-    make(path, {"S": {"A1": 3, "B1": "=TB_TWICE(A1)"}})
+    names = {"Twice": "TB_TWICE(S!$A$1)", "Plain": "S!$A$1"}
+    make(path, {"S": {"A1": 3, "B1": "=TB_TWICE(A1)"}}, names=names)
     book = load_workbook(path)
     book["S"].conditional_formatting.add("A1:A9", FormulaRule(formula=["TB_TWICE(A1)>5"], stopIfTrue=True))
     book["S"].conditional_formatting.add("C1:C9", FormulaRule(formula=["A1>5"], stopIfTrue=True))
     rule = DataValidation(type="custom", formula1="TB_TWICE(B1)<9")
     rule.add("B1:B3")
     book["S"].add_data_validation(rule)
+    for place, formula in (("D1:D3", "twice>5"), ("E1:E3", "Plain>5")):
+        through = DataValidation(type="custom", formula1=formula)
+        through.add(place)
+        book["S"].add_data_validation(through)
     book.save(path)
     evaluation = evaluate(path)
     assert [tuple(found) for found in evaluation.not_evaluated] == [
         ("S", "A1:A9", "TB_TWICE(A1)>5"),
         ("S", "B1:B3", "TB_TWICE(B1)<9"),
+        ("S", "D1:D3", "twice>5"),
     ]
     assert evaluation.ok
 
