@@ -16,6 +16,7 @@ import numpy.typing as npt
 
 from thrustbook.engine.guard import Routine
 
+from ..catalogue.glossary import GLOSSARY
 from ..catalogue.types import Column, Result, Row
 from ..cells import CellError
 from ..failures import cautions, failures
@@ -39,19 +40,27 @@ class Schedule:
         self.columns = self._columns()
 
     def _columns(self) -> tuple[Column, ...]:
-        found = {
-            "name": Column(name="name", role="text", text="name of the fitting", empty="no name"),
-            "fitting": Column(
-                name="fitting", role="text", text=f"kind: {', '.join(self.kinds)}", required=True
-            ),
-        }
-        for row in self.kinds.values():
+        """The columns of all kinds together; one that means something else by kind says so."""
+        roles: dict[str, str] = {}
+        meanings: dict[str, dict[str, list[str]]] = {}
+        needs: dict[str, dict[str, list[str]]] = {}
+        for kind, row in self.kinds.items():
             for arg in row.args:
                 name = COLUMN_OF.get(arg.name, arg.name)
-                known = found.setdefault(name, Column(name=name, role=arg.role, text=arg.text))
-                if known.role != arg.role:
-                    raise TypeError(f"{row.name}: {arg.name} is a {arg.role}, elsewhere a {known.role}")
-        return tuple(found.values())
+                if roles.setdefault(name, arg.role) != arg.role:
+                    raise TypeError(f"{row.name}: {arg.name} is a {arg.role}, elsewhere a {roles[name]}")
+                text = arg.text or GLOSSARY[arg.name]
+                meanings.setdefault(name, {}).setdefault(text, []).append(kind)
+                need = "needed" if row.required(arg) else arg.empty
+                needs.setdefault(name, {}).setdefault(need, []).append(kind)
+        return (
+            Column(name="name", role="text", text="name of the fitting", empty="no name"),
+            Column(name="fitting", role="text", text=f"kind: {', '.join(self.kinds)}", required=True),
+            *(
+                Column(name=name, role=role, text=_by_kind(meanings[name], True), empty=_by_kind(needs[name]))
+                for name, role in roles.items()
+            ),
+        )
 
     def __call__(self, call: TableCall) -> TableAnswer:
         """Read the table, evaluate every row, and give the results row by row."""
@@ -110,6 +119,13 @@ class Schedule:
         for text, applies in cautions(row, values, results):
             for i in places[np.broadcast_to(applies, places.shape)].tolist():
                 notes[i] = f"{notes[i]}; {text}" if i in notes else text
+
+
+def _by_kind(texts: Mapping[str, Sequence[str]], alone: bool = False) -> str:
+    """Say what holds for which kinds; ``alone``: without the kinds where it is the same for all."""
+    if alone and len(texts) == 1:
+        return next(iter(texts))
+    return "; ".join(f"{', '.join(kinds)}: {text}" for text, kinds in texts.items())
 
 
 def _groups(table: Table, errors: Mapping[int, CellError]) -> dict[str, npt.NDArray[np.intp]]:

@@ -111,3 +111,11 @@ def test_the_reference_page_is_current() -> None:
     assert reference.PAGE.read_text(encoding="utf-8") == reference.page(), (
         "run python -m thrustbook.addin.reference and commit the page"
     )
+
+
+def test_a_column_of_the_schedule_says_what_it_means_for_each_kind() -> None:
+    columns = {c.name: c for c in CATALOGUE["TB_SCHEDULE"].args[1].columns}
+    assert all(c.text for c in columns.values())
+    assert "bend: loss coefficient on the velocity V1 of section 1" in columns["K"].text
+    assert "reducer: loss coefficient on the velocity of the smaller pipe" in columns["K"].text
+    assert columns["theta"].empty == "bend: needed; tee: 90 degrees"

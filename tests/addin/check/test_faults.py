@@ -102,7 +102,7 @@ FAULTS = {
         _nothing, "V01", ("Bends!I11",), "1.5", after={"Bends": {(11, 9): 1.5}}
     ),
     "missing value": Fault(_nothing, "V02", ("Bends!G7",), "no value", W, after={"Bends": {(7, 7): None}}),
-    "error": Fault(_put("Bends", E7=400.0), "V03", ("Bends!G7",), "theta = 6.98"),
+    "error": Fault(_put("Bends", E7=400.0), "V03", ("Bends!G7",), "theta = 400 deg"),
     "error in a row of a table": Fault(
         _put("Run", D10="x", B18=None), "V03", ("Run!J10",), '"x" is not a number'
     ),
