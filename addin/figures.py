@@ -49,7 +49,7 @@ def _column(cells: Sequence[object], headings: int, digits: int) -> list[str]:
         largest = max(map(abs, values))
         decimals = min(6, max(0, digits - 1 - int(np.floor(np.log10(largest)))) if largest else 0)
         texts = [
-            f"{float(c):.{decimals}f}" if isinstance(c, int | float | np.floating) else figure(c)
+            f"{float(c):z.{decimals}f}" if isinstance(c, int | float | np.floating) else figure(c)
             for c in body
         ]
     else:

@@ -58,17 +58,22 @@ def run(options: argparse.Namespace) -> int:
         if wrote:
             package.save(target, changed)
     except Refusal as refusal:
-        print(f"{options.book}: {refusal}", file=sys.stderr)
-        return 2
+        return _refuse(options, f"{options.book}: {refusal}")
     except OSError as error:
-        print(f"{target}: {error.strerror or error}; the workbook was not changed", file=sys.stderr)
-        return 2
+        return _refuse(options, f"{target}: {error.strerror or error}; the workbook was not changed")
     seconds = time.perf_counter() - started
     if options.json:
         print(json.dumps(as_data(evaluation, options.book, target), indent=1, ensure_ascii=False))
     else:
         print("\n".join(report(evaluation, options.book, target, seconds, options.rows, wrote)))
     return 0 if evaluation.ok else 1
+
+
+def _refuse(options: argparse.Namespace, reason: str) -> int:
+    print(reason, file=sys.stderr)
+    if options.json:
+        print(json.dumps({"workbook": str(options.book), "ok": False, "refused": reason}, indent=1))
+    return 2
 
 
 def _evaluator(host: str) -> Callable[..., Evaluation]:
@@ -90,7 +95,7 @@ def report(
     if evaluation.counts:
         out += ["", "Calls"]
         out += figures.table(
-            [("function", "cells"), *((name, n) for name, n in sorted(evaluation.counts.items()))]
+            [("function", "calls"), *((name, n) for name, n in sorted(evaluation.counts.items()))]
         )
     for table in evaluation.tables:
         out += ["", *table_text(table, rows)]

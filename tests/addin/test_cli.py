@@ -12,7 +12,7 @@ from pathlib import Path
 import openpyxl
 import pytest
 
-from thrustbook.addin import cli
+from thrustbook.addin import cli, figures
 from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.workbooks.templates import shipped
 
@@ -196,3 +196,18 @@ def test_a_failed_row_of_a_block_is_one_line(tmp_path: Path, capsys: pytest.Capt
     assert cli.main(["evaluate", str(path)]) == 1
     lines = [line.split()[:2] for line in capsys.readouterr().out.splitlines() if "S!" in line]
     assert lines[-2:] == [["S!C2:E2", "#NUM!"], ["S!C3:E3", "#VALUE!"]]
+
+
+def test_a_refusal_is_json_too(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = tmp_path / "a.xlsx"
+    path.write_bytes(b"no zip")
+    assert cli.main(["evaluate", str(path), "--json"]) == 2
+    seen = capsys.readouterr()
+    data = json.loads(seen.out)
+    assert data["ok"] is False
+    assert "not a workbook" in data["refused"]
+    assert data["refused"] in seen.err
+
+
+def test_a_rounded_number_is_never_minus_zero() -> None:
+    assert figures.table([("a",), (-0.0004,), (123.4,)])[2:] == ["    0.00", "  123.40"]
