@@ -69,7 +69,8 @@ def fast(*velocities: str) -> Caution:
         return (k["rho"] > 500.0) & (sum((abs(k[v]) > 6.0) * 1 for v in velocities) > 0)
 
     return Caution(
-        text=f"{' or '.join(velocities)} is above 6 m/s: beyond usual practice for liquids in pipes",
+        text=f"{' or '.join(velocities)} is above 6 m/s: beyond usual practice for liquids in pipes "
+        "(common practice)",
         test=test,
     )
 

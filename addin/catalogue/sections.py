@@ -144,7 +144,7 @@ ROWS = (
         example='TB_PROFILE("alpha", "SI", "turbulent", 7)',
         cautions=(
             Caution(
-                text="exponent n outside 5 to 12, the range usual in turbulent pipe flow",
+                text="exponent n outside 5 to 12, the range usual in turbulent pipe flow (common practice)",
                 test=lambda k: (k["n"] > 0.0) & ((k["n"] < 5.0) | (k["n"] > 12.0)),
             ),
         ),
