@@ -164,8 +164,7 @@ def read_table(
 
     ``headings`` is one row of names (with a unit in brackets, "D1 [mm]", where it
     differs from the unit set), or two rows of which the second holds units. A
-    column whose heading is empty is ignored. With no headings the columns are
-    taken in their own order.
+    column whose heading is empty is ignored.
 
     Raises
     ------
@@ -173,13 +172,7 @@ def read_table(
         Unknown, doubled or missing headings, unit of the wrong dimension, empty table.
     """
     rows = as_range(table, what)
-    if is_blank(headings):
-        if len(rows[0]) > len(columns):
-            raise Refused("VALUE", f"{what} has {len(rows[0])} columns (allowed: at most {len(columns)})")
-        plan = [(column, None) for column in columns[: len(rows[0])]]
-        found: list[tuple[Column, str | None] | None] = list(plan)
-    else:
-        found = match_headings(columns, as_range(headings, "headings"), len(rows[0]), what)
+    found = match_headings(columns, as_range(headings, "headings"), len(rows[0]), what)
     present = {entry[0].name for entry in found if entry}
     missing = [c.name for c in columns if c.required and c.name not in present]
     if missing:
