@@ -355,10 +355,6 @@ class UnitSet:
         """Give the unit of a role as it is written in a heading."""
         return self._symbols[role]
 
-    def describe(self) -> dict[str, str]:
-        """List role -> unit."""
-        return dict(self._symbols)
-
 
 @functools.cache
 def named_set(name: str) -> UnitSet:

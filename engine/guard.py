@@ -74,9 +74,7 @@ ANY = Bound()
 POSITIVE = Bound(low=0.0, open_low=True)
 NON_NEGATIVE = Bound(low=0.0)
 AT_LEAST_ONE = Bound(low=1.0)
-FRACTION = Bound(low=0.0, high=1.0)
 HALF_TURN = Bound(low=0.0, high=math.pi)
-FULL_TURN = Bound(low=-2 * math.pi, high=2 * math.pi)
 
 
 class Parameter(NamedTuple):

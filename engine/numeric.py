@@ -64,12 +64,6 @@ def cos(x: Num) -> Num:
     return math.cos(x) if isinstance(x, float) else np.cos(x)
 
 
-def hypot(x: Num, y: Num) -> Num:
-    if isinstance(x, float) and isinstance(y, float):
-        return math.hypot(x, y)
-    return np.hypot(x, y)
-
-
 def atan2(y: Num, x: Num) -> Num:
     if isinstance(x, float) and isinstance(y, float):
         return math.atan2(y, x)
@@ -87,15 +81,6 @@ def log10(x: Num) -> Num:
     if isinstance(x, float):
         return math.log10(x) if x > 0 else math.nan
     return np.log10(x)
-
-
-def exp(x: Num) -> Num:
-    if isinstance(x, float):
-        try:
-            return math.exp(x)
-        except OverflowError:
-            return math.inf
-    return np.exp(x)
 
 
 def maximum(x: Num, y: Num) -> Num:
