@@ -13,7 +13,6 @@ from thrustbook.engine.errors import NoSolution, OutOfRange, Status
 from thrustbook.engine.guard import (
     ANY,
     CHUNK,
-    FRACTION,
     NON_NEGATIVE,
     POSITIVE,
     Bound,
@@ -29,7 +28,7 @@ class Pair(NamedTuple):
     extra: Num
 
 
-@routine("extra", a=POSITIVE, b=FRACTION, c=NON_NEGATIVE)
+@routine("extra", a=POSITIVE, b=Bound(low=0.0, high=1.0), c=NON_NEGATIVE)
 def tried(a: Num, b: Num, x: Num, c: Num = NOT_GIVEN, k: Num = 2.0, word: str = "plain") -> Pair:
     """Divide; ``extra`` needs c, a negative x has no solution."""
     x = refuse(x < 0, x, "x is negative")
