@@ -91,15 +91,15 @@ def _below(sheet: Sheet, dxfs: Mapping[str, int]) -> Iterator[str]:
         for row, first, last in sheet.merges:
             yield f'<mergeCell ref="{local(row, first)}:{local(row, last)}"/>'
         yield "</mergeCells>"
-    priority = 1
-    for area in sheet.verdicts:
-        yield f'<conditionalFormatting sqref="{area}">'
-        for word, name in (("agrees", "good"), ("differs", "bad"), ("error", "bad")):
+    if sheet.verdicts:
+        yield f'<conditionalFormatting sqref="{" ".join(sheet.verdicts)}">'
+        for priority, (word, name) in enumerate(
+            (("agrees", "good"), ("differs", "bad"), ("error", "bad")), 1
+        ):
             yield (
                 f'<cfRule type="cellIs" dxfId="{dxfs[name]}" priority="{priority}" operator="equal">'
                 f'<formula>"{word}"</formula></cfRule>'
             )
-            priority += 1
         yield "</conditionalFormatting>"
     if sheet.links:
         yield "<hyperlinks>"

@@ -21,6 +21,9 @@ from .tableread import OfRole, ReadTable
 _STACKED = ("TB_BALANCE", "TB_BRANCHFLOW")
 """Functions whose tables are short: all on one sheet."""
 
+MOST_SHEETS = 16
+"""Tables that get sheets of their own, with headings on every page; beyond, they are stacked."""
+
 
 @dataclass(slots=True, eq=False)
 class _Plan:
@@ -95,22 +98,36 @@ class TableCalls:
 
     def place(self) -> list[Sheet]:
         """Give every section its sheet and its place there."""
+        many = sum(1 + len(p.cases) for p in self._plans.values() if p.name not in _STACKED) > MOST_SHEETS
+        stacks: dict[str, tuple[Sheet, int]] = {}
         sheets: list[Sheet] = []
-        stacked: dict[str, tuple[Sheet, int]] = {}
         counts: dict[str, int] = {}
         for plan in self._plans.values():
-            if plan.name in _STACKED:
-                sheet, at = stacked.get(plan.name, (None, 3))
-                if sheet is None:
-                    sheet = self._new(f"LH {plan.name}", plan.section, sheets)
-                stacked[plan.name] = sheet, plan.section.place(sheet, at)
-                continue
             number = counts[plan.name] = counts.get(plan.name, 0) + 1
-            name = f"LH {plan.name}" + (f" {number}" if number > 1 else "")
+            name = f"LH {plan.name}"
+            if many or plan.name in _STACKED:
+                self._stack(name, [plan.section], stacks, sheets)
+                self._stack(f"{name} cases", [section for _, section in plan.cases], stacks, sheets)
+                continue
+            name += f" {number}" if number > 1 else ""
             self._alone(plan.section, self._new(name, plan.section, sheets))
             for i, (_, section) in enumerate(plan.cases, 1):
                 self._alone(section, self._new(f"{name} case {i}", section, sheets))
         return sheets
+
+    def _stack(
+        self,
+        name: str,
+        sections: list[Section],
+        stacks: dict[str, tuple[Sheet, int]],
+        sheets: list[Sheet],
+    ) -> None:
+        """Put sections one below the other on a sheet of their own."""
+        for section in sections:
+            if name not in stacks:
+                stacks[name] = self._new(name, section, sheets), 3
+            sheet, at = stacks[name]
+            stacks[name] = sheet, section.place(sheet, at)
 
     def _new(self, name: str, section: Section, sheets: list[Sheet]) -> Sheet:
         sheet = Sheet(name, fit_width=False)

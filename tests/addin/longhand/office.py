@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import signal
 import subprocess
 from pathlib import Path
 
@@ -24,21 +26,25 @@ def recalculated(book: Path, folder: Path, to: str = "xlsx") -> Path:
     (profile / "user" / "registrymodifications.xcu").write_text(_SETTINGS)
     out = folder / "out"
     out.mkdir(exist_ok=True)
-    subprocess.run(
-        [
-            str(libreoffice.program()),
-            "--headless",
-            "--norestore",
-            f"-env:UserInstallation={profile.as_uri()}",
-            "--convert-to",
-            to,
-            "--outdir",
-            str(out),
-            str(book),
-        ],
-        check=True,
+    command = [
+        str(libreoffice.program()),
+        "--headless",
+        "--norestore",
+        f"-env:UserInstallation={profile.as_uri()}",
+    ]
+    command += ["--convert-to", to, "--outdir", str(out), str(book)]
+    # A session of its own: the program starts another one, which must not outlive a failed test.
+    with subprocess.Popen(
+        command,
         stdin=subprocess.DEVNULL,
-        capture_output=True,
-        timeout=300,
-    )
+        stdout=subprocess.PIPE,
+        stderr=subprocess.STDOUT,
+        start_new_session=True,
+    ) as process:
+        try:
+            said, _ = process.communicate(timeout=900)
+        except BaseException:
+            os.killpg(process.pid, signal.SIGKILL)
+            raise
+    assert process.returncode == 0, said
     return out / f"{book.stem}.{to}"

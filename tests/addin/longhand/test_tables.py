@@ -1,0 +1,56 @@
+"""Long-hand workings of tables against the engine, in the embedded evaluator and in LibreOffice."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import openpyxl
+import pytest
+
+from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
+from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.longhand.detach import Detached
+
+from .office import recalculated
+from .tablebook import make
+from .test_detach import same
+
+COUNTS = {"runs": 200, "cases": 30, "schedules": 6, "balances": 200, "junctions": 200}
+
+
+@pytest.fixture(scope="module")
+def book(tmp_path_factory: pytest.TempPathFactory) -> tuple[Path, list[tuple[str, str]]]:
+    """A workbook of random table calls with the engine's values."""
+    path = tmp_path_factory.mktemp("tables") / "tables.xlsx"
+    areas = make(path, COUNTS)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package).replaced)
+    return path, areas
+
+
+@pytest.fixture(scope="module")
+def made(book: tuple[Path, list[tuple[str, str]]]) -> Detached:
+    return Detached(Package.read(book[0]))
+
+
+def test_embedded_evaluator_agrees_with_the_engine(made: Detached) -> None:
+    found = {word: [e.cell.where for e in entries] for word, entries in made.made.verdicts().items()}
+    assert {word: places for word, places in found.items() if places and word != "agrees"} == {}
+    assert len(found["agrees"]) >= sum(COUNTS.values())
+
+
+def test_libreoffice_agrees_with_the_engine(
+    book: tuple[Path, list[tuple[str, str]]], made: Detached, tmp_path: Path
+) -> None:
+    path, areas = book
+    copy = tmp_path / "copy.xlsx"
+    made.save(copy)
+    engine = openpyxl.load_workbook(path, data_only=True)
+    office = openpyxl.load_workbook(recalculated(copy, tmp_path), data_only=True)
+    for sheet, area in areas:
+        tables = []
+        for workbook in (engine, office):
+            cells = workbook[sheet][area]
+            cells = cells if isinstance(cells, tuple) else ((cells,),)
+            tables.append([[cell.value for cell in line] for line in cells])
+        assert same(*tables) > 0, (sheet, area)
