@@ -15,12 +15,15 @@ fluid between the flanges. Common to all:
 from __future__ import annotations
 
 import math
-from typing import NamedTuple
+from typing import Final, NamedTuple
 
 from .guard import AT_LEAST_ONE, HALF_TURN, NON_NEGATIVE, POSITIVE, routine
 from .momentum import magnitude, next_pressure, section_force
 from .numeric import NOT_GIVEN, Num, atan2, cos, default, is_given, minimum, refuse, sin
 from .sections import circle
+
+ROUNDING: Final = 1e-12
+"""A flow that is this small against the flow at section 1 is the rounding of a difference."""
 
 
 class BendForces(NamedTuple):
@@ -370,7 +373,7 @@ def tee(
     V1 = Q1 / A1
     V2 = Q2 / A2
     V3 = Q3 / A3
-    crossed = Q2 * Q3 < 0
+    crossed = Q2 * Q3 < -ROUNDING * (Q1 * Q1)
     # Products of conditions, not "and", so that one line serves floats and arrays.
     needs_K = (K12 * (1 - is_given(p2) * 1) > 0) | (K13 * (1 - is_given(p3) * 1) > 0)
     V1V1 = refuse(

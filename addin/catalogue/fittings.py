@@ -292,7 +292,7 @@ ROWS: Final = (
             fast("V1", "V2", "V3"),
             Caution(
                 text="section 1 does not carry the whole flow: pressures not given are those without loss",
-                test=lambda k: k["Q2"] * k["Q3"] < 0,
+                test=lambda k: k["Q2"] * k["Q3"] < -fittings.ROUNDING * k["Q1"] ** 2,
             ),
         ),
     ),

@@ -325,3 +325,16 @@ def test_every_bad_argument_is_named(call: Any, named: set[str]) -> None:
     with pytest.raises(OutOfRange) as caught:
         call()
     assert {problem.argument for problem in caught.value.problems} == named
+
+
+def test_a_run_closed_but_for_rounding_still_takes_its_loss_coefficients() -> None:
+    """0.1 + 0.2 is not quite 0.3: what is left of the run's flow is no reverse flow."""
+    exact = tee(1000.0, 0.4, 5e5, 0.3, 0.2, 0.3, K13=1.0)
+    rounded = tee(1000.0, 0.4, 5e5, 0.3, 0.2, 0.1 + 0.2, K13=1.0)
+    assert rounded.Q2 < 0
+    assert rounded.F == pytest.approx(exact.F, rel=1e-12)
+    assert tee(1000.0, 0.4, 5e5, 0.3, 0.2, 0.3 - 0.1 - 0.2, K12=1.0).p2 == pytest.approx(
+        tee(1000.0, 0.4, 5e5, 0.3, 0.2, 0.0, K12=1.0).p2
+    )
+    with pytest.raises(NoSolution):
+        tee(1000.0, 0.4, 5e5, 0.3, 0.2, 0.3001, K13=1.0)

@@ -141,7 +141,7 @@ TB_TEE = Longhand(
             "dpV",
             "rho V1²/2 along the flow, for the losses; only where section 1 carries the whole flow",
             "loss",
-            "IF({Q2}*{Q3}<0,#NUM!,{rho}*{V1}^2/2*SIGN({Q1}))",
+            "IF({Q2}*{Q3}<-1E-12*{Q1}^2,#NUM!,{rho}*{V1}^2/2*SIGN({Q1}))",
         ),
         _tee_pressure("2"),
         _tee_pressure("3"),
