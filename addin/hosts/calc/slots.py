@@ -28,6 +28,8 @@ def _slot(row: Row, arg: Arg) -> Slot:
         return Slot.ZERO_IS_EMPTY
     if row.required(arg):
         return Slot.NUMBER
+    if arg.name == "pamb":  # nobody converts to gauge pressure in a vacuum
+        return Slot.ZERO_IS_EMPTY
     bound = row.bound(arg)
     return Slot.ZERO_IS_EMPTY if bound is not None and not bound.allows(0.0) else Slot.NUMBER
 

@@ -22,7 +22,7 @@ from ...catalogue.registry import CATALOGUE
 from ...catalogue.types import Row
 from ...cells import Cell, CellError, ErrorKind, Grid, Range
 from .office import wire
-from .slots import Slot, slots
+from .slots import Slot, slots, zero_for_empty
 
 _KINDS: dict[int, ErrorKind] = {code: kind for kind, code in wire.ERROR_CODES.items()}  # type: ignore[misc]
 _ERROR = {kind: wire.error_number(code) for kind, code in wire.ERROR_CODES.items()}
@@ -49,9 +49,9 @@ def arguments(name: str, cells: Sequence[Any]) -> list[Cell]:
     out of the range allowed for an argument that may be empty, it counts as empty.
     """
     out = list(cells)
-    row = CATALOGUE.get(name)
-    first = 0
-    if name == "TB_WHY" and out and isinstance(out[0], str):
+    row, first = CATALOGUE.get(name), 0
+    if row is not None and row.max_args is None and out and isinstance(out[0], str):
+        # TB_WHY and TB_WORKING: the name of a function and that function's own arguments.
         row, first = CATALOGUE.get(out[0].strip().upper()), 1
     for i, cell in enumerate(out):
         if type(cell) is float and cell != cell:
@@ -79,7 +79,27 @@ def answer(request: bytes) -> bytes:
 
         return write_plain_names(Path(request[1:].decode("utf-8", "surrogatepass"))).encode()
     name, cells = wire.unpack_call(request, _read_range)
-    return pack(dispatch.call(name, arguments(name, cells)))
+    value = dispatch.call(name, arguments(name, cells))
+    if name == "TB_WHY" and isinstance(value, str):
+        value = _with_doubt(value, cells)
+    return pack(value)
+
+
+def _with_doubt(reason: str, cells: Sequence[Any]) -> str:
+    """Add to the reason what only this host has to say: which 0 may be an empty cell."""
+    row = CATALOGUE.get(cells[0].strip().upper()) if cells and isinstance(cells[0], str) else None
+    if row is None:
+        return reason
+    doubtful = zero_for_empty(row)
+    zeros = [
+        arg.name
+        for arg, cell in zip(row.args, cells[1 + row.leading :], strict=False)
+        if arg.name in doubtful and type(cell) is float and cell == 0.0
+    ]
+    if not zeros:
+        return reason
+    doubt = f"{', '.join(zeros)} = 0: if that is an empty cell, leave the argument out (Calc passes 0)"
+    return doubt if reason == "ok" else f"{reason}; {doubt}"
 
 
 def pack(value: Cell | Grid) -> bytes:

@@ -142,6 +142,15 @@ def test_empty_cells(office: Office, book: int) -> None:
     assert same(values[6], area)
 
 
+def test_an_empty_cell_that_counts_as_0_is_told_by_why(office: Office, book: int) -> None:
+    call = '"TB_BEND";"F";"SI";1000;0.3;200000;0.1;90;0.3;;;'
+    office.put(book, 0, "A1", f"=TB_WHY({call}Z1)")
+    office.put(book, 0, "A2", f"=TB_WHY({call})")
+    (told,), (clear,) = office.values(book, 0, "A1:A2")
+    assert "p2 = 0: if that is an empty cell, leave the argument out" in told
+    assert "p2" not in clear
+
+
 def test_units_come_from_a_range(office: Office, book: int) -> None:
     office.fill(book, 0, "A1:B2", [["diameter", "in"], ["area", "ft2"]])
     office.put(book, 0, "D1", "=TB_AREA(A1:B2;12)")

@@ -93,6 +93,7 @@ def test_zeros_that_stand_for_empty_cells() -> None:
     assert worker.arguments("TB_AREA", [0.0, 0.3]) == [None, 0.3]
     assert worker.arguments("TB_AREA", [0.0, 0.0]) == [None, 0.0]
     assert worker.arguments("TB_WHY", ["tb_area", 0.0, 0.0]) == ["tb_area", None, 0.0]
+    assert worker.arguments("TB_WORKING", ["TB_AREA", 0.0, 300.0]) == ["TB_AREA", None, 300.0]
     units = [["diameter", "mm"]]
     assert worker.arguments("TB_AREA", [units, 300.0]) == [units, 300.0]
     (error,) = worker.arguments("TB_VERSION", [wire.error_number(wire.ERROR_CODES["DIV0"])])
