@@ -70,6 +70,10 @@ def atan2(y: Num, x: Num) -> Num:
     return np.arctan2(y, x)
 
 
+def exp(x: Num) -> Num:
+    return math.exp(x) if isinstance(x, float) else np.exp(x)
+
+
 def log(x: Num) -> Num:
     """Natural logarithm; NaN where it is not defined, never an exception."""
     if isinstance(x, float):
