@@ -44,6 +44,7 @@ class _Plan:
     ambient: int
     """Position of the ambient pressure among the arguments, -1 where there is none."""
     shifted: bool
+    """Whether a number of some argument takes more than a multiplication."""
     columns: list[int]
     """Positions of the wanted results among the routine's."""
     first: int
@@ -86,8 +87,9 @@ def _make_plan(row: Row, result: Cell, units: UnitSet) -> _Plan:
     names = [i.name for i in inputs]
     columns = [row.results.index(r) for r in asked.results]
     divisor = 0.0
-    if asked.single and not units.unit(asked.results[0].role).shift:
-        divisor = units.unit(asked.results[0].role).factor
+    if asked.single:
+        answer = units.unit(asked.results[0].role)
+        divisor = 0.0 if answer.shift or answer.offset else answer.factor
     return _Plan(
         row=row,
         routine=routine,
@@ -97,7 +99,7 @@ def _make_plan(row: Row, result: Cell, units: UnitSet) -> _Plan:
         factors=factors,
         defaults=[i.default for i in inputs],
         ambient=names.index("pamb") if "pamb" in names else -1,
-        shifted=any(i.unit.shift for i in inputs),
+        shifted=any(i.unit.shift or i.unit.offset for i in inputs),
         columns=columns,
         first=columns[0],
         divisor=divisor,

@@ -41,11 +41,15 @@ def in_units(problem: Problem, role: str, units: UnitSet, bound: Bound | None = 
     given = units.unit(role)
     if given.shift:
         given = unit(ROLES[role].si, role)
+
+    def own_number(si: float) -> float:
+        return (si - given.offset) / given.factor
+
     symbol = "" if given.symbol == "-" else f" {given.symbol}"
     allowed = problem.allowed
     if bound is not None and own:
-        allowed = str(bound._replace(low=bound.low / given.factor, high=bound.high / given.factor))
-    return f"{problem.argument} = {x / given.factor:.6g}{symbol} (allowed: {allowed})"
+        allowed = str(bound._replace(low=own_number(bound.low), high=own_number(bound.high)))
+    return f"{problem.argument} = {own_number(x):.6g}{symbol} (allowed: {allowed})"
 
 
 def refused(row: Row, units: UnitSet, error: EngineError, names: Mapping[str, str] = {}) -> CellError:

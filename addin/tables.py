@@ -41,7 +41,8 @@ def number(cell: Scalar, name: str, role: str, given: Unit, ambient: float = P_A
     if type(cell) is float or type(cell) is int:
         if cell != cell:
             raise Refused("NUM", f"{name} is not a number")
-        return cell * given.factor + given.shift * ambient if given.shift else cell * given.factor
+        si = cell * given.factor + given.offset
+        return si + given.shift * ambient if given.shift else si
     if is_blank(cell):
         return np.nan
     if isinstance(cell, CellError):
@@ -54,7 +55,7 @@ def number(cell: Scalar, name: str, role: str, given: Unit, ambient: float = P_A
         except UnitError as error:
             raise Refused("VALUE", f"{name}: {error}") from None
         return value + shift * ambient
-    return float(cell or 0.0) * given.factor + given.shift * ambient  # numpy scalars
+    return float(cell or 0.0) * given.factor + given.offset + given.shift * ambient  # numpy scalars
 
 
 def numbers(
@@ -65,8 +66,8 @@ def numbers(
     if set(map(type, cells)) <= _PLAIN:
         values = np.array(cells, dtype=float)
         values *= given.factor
-        if given.shift:
-            values += given.shift * ambient
+        if given.shift or given.offset:
+            values += given.shift * ambient + given.offset
         return values, errors
     values = np.empty(len(cells))
     for i, cell in enumerate(cells):
@@ -294,5 +295,7 @@ def read_pairs(
 def column_from_si(values: Any, role: str, units: UnitSet, ambient: Any = P_ATM) -> Any:
     """Turn SI results, a float or an array, into the unit set's unit."""
     given = units.unit(role)
-    out = (values - given.shift * ambient) / given.factor if given.shift else values / given.factor
+    if given.shift or given.offset:
+        values = values - (given.shift * ambient + given.offset)
+    out = values / given.factor
     return out + 0.0  # no negative zero reaches a cell

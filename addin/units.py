@@ -15,6 +15,7 @@ import difflib
 import functools
 import re
 from collections.abc import Mapping
+from fractions import Fraction
 from typing import Any, Final, Literal, NamedTuple
 
 from thrustbook.engine.constants import P_ATM
@@ -52,6 +53,8 @@ ROLES: Final[Mapping[str, Role]] = {
     "massflow": Role("mass flow", "kg/s", "kg/s", "lb/s"),
     "density": Role("density", "kg/m3", "kg/m3", "lb/ft3"),
     "viscosity": Role("dynamic viscosity", "Pa s", "mPa s", "cP"),
+    "kinematic": Role("kinematic viscosity", "m2/s", "mm2/s", "ft2/s"),
+    "temperature": Role("temperature", "K", "degC", "degF"),
     "pressure": Role("gauge pressure", "Pa", "kPa", "psi", "gauge"),
     "loss": Role("pressure difference", "Pa", "kPa", "psi"),
     "absolute": Role("absolute pressure", "Pa", "kPa", "psi", "absolute"),
@@ -132,6 +135,12 @@ _spell("pascal*second", "Pa s", "Pas", "kg/(m s)")
 _spell("millipascal*second", "mPa s", "mPas")
 _spell("centipoise", "cP")
 _spell("pound_force*second/foot**2", "lbf s/ft2")
+_spell("meter**2/second", "m2/s")
+_spell("millimeter**2/second", "mm2/s", "cSt")
+_spell("foot**2/second", "ft2/s")
+_spell("kelvin", "K")
+_spell("delta_degree_Celsius", "degC", "°C", "C", "deg C")
+_spell("delta_degree_Fahrenheit", "degF", "°F", "F", "deg F")
 for _unit, _names in (
     ("pascal", ("Pa",)),
     ("hectopascal", ("hPa",)),
@@ -201,13 +210,22 @@ _spell("tonne", "t")
 _spell("slug", "slug")
 
 
+_ZERO: Final[Mapping[str, Fraction]] = {
+    # NIST SP 811 appendix B.8: the zero of each scale in kelvin. Exact, so that 20 degC is 68 degF.
+    "delta_degree_Celsius": Fraction("273.15"),
+    "delta_degree_Fahrenheit": Fraction("459.67") * 5 / 9,
+}
+
+
 class Unit(NamedTuple):
-    """How a number in a unit becomes the engine's SI number: ``x * factor`` (+ datum shift)."""
+    """How a number in a unit becomes the engine's SI number: ``x * factor + offset`` (+ datum shift)."""
 
     symbol: str
     factor: float
     shift: int
     """-1: ambient pressure is taken off on the way in; +1: put on."""
+    offset: float = 0.0
+    """Of a temperature: the zero of its scale in kelvin."""
 
 
 @functools.cache
@@ -263,7 +281,7 @@ def unit(text: str, role: str) -> Unit:
     if datum and not wanted.datum:
         raise UnitError(f'unit "{text}" is for a pressure against a datum; {wanted.text} takes {wanted.si}')
     shift = 0 if not datum or datum == wanted.datum else (-1 if datum == "absolute" else 1)
-    return Unit(text.strip() or "-", _si_factor(expression), shift)
+    return Unit(text.strip() or "-", _si_factor(expression), shift, float(_ZERO.get(expression, 0)))
 
 
 @functools.cache
@@ -296,6 +314,7 @@ def convert(value: float, source: str, target: str, ambient: float = P_ATM) -> f
     shift = 0.0
     if datum_a and datum_b and datum_a != datum_b:
         shift = ambient if datum_b == "absolute" else -ambient
+    shift += float(_ZERO.get(a, 0) - _ZERO.get(b, 0))
     return (value * factor_a + shift) / factor_b
 
 
@@ -336,7 +355,7 @@ def quantity(text: str, role: str) -> tuple[float, int]:
             f'"{text}" is not a number with its unit, such as "1.5 {examples(role).split(", ")[-1]}"'
         )
     found = unit(match[2], role)
-    return float(match[1]) * found.factor, found.shift
+    return float(match[1]) * found.factor + found.offset, found.shift
 
 
 class UnitSet:

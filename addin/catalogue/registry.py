@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Final
 
-from . import bernoulli, ends, energy, fittings, runs, schedule, sections, tools
+from . import bernoulli, ends, energy, fittings, properties, runs, schedule, sections, tools
 from .glossary import GLOSSARY
 from .types import Arg, Row
 
@@ -18,6 +18,7 @@ FAMILIES: Final[tuple[tuple[Row, ...], ...]] = (
     ends.ROWS,
     schedule.ROWS,
     runs.ROWS,
+    properties.ROWS,
     tools.ROWS,
 )
 

@@ -163,14 +163,14 @@ def _remarks(book: Book, sheets: dict[str, _Sheet], uses: Sequence[_Use]) -> Ite
                 if key in seen or not isinstance(value, float):
                     continue
                 ambient = sheet.ambient(use.line) if given_in.shift else 0.0
-                si = value * given_in.factor + given_in.shift * ambient
+                si = value * given_in.factor + given_in.offset + given_in.shift * ambient
                 worked = sheet.step(use.line, result.name)
                 if _agree(si, worked, sheet.largest(use.line, result.role)):
                     continue
                 seen.add(key)
                 shown = worked
                 if isinstance(worked, float):
-                    shown = (worked - given_in.shift * ambient) / given_in.factor
+                    shown = (worked - given_in.offset - given_in.shift * ambient) / given_in.factor
                 yield _remark(book, use, result.name, value, shown)
 
 

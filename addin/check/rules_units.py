@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections import Counter
 from collections.abc import Iterator
+from typing import TypeAlias
 
 from ..catalogue.types import Column
 from ..cells import Cell, Refused, Scalar
@@ -17,6 +18,8 @@ from .gather import Remark, joined
 from .types import Finding, Rule, Severity
 
 _PLAIN = ("ratio", "text", "choice", "table", "headings", "any")
+_Key: TypeAlias = tuple[str, float, int, float]
+"""A unit: its symbol, and what makes it that unit."""
 
 
 def _roles(call: Call) -> set[str]:
@@ -31,8 +34,8 @@ def _roles(call: Call) -> set[str]:
 
 def mixed(book: Book) -> Iterator[Finding]:
     """U01: calls on one sheet count the same kind of quantity in different units."""
-    used: dict[tuple[int, str], Counter[tuple[str, float, int]]] = {}
-    sets: list[tuple[Call, dict[str, tuple[str, float, int]]]] = []
+    used: dict[tuple[int, str], Counter[_Key]] = {}
+    sets: list[tuple[Call, dict[str, _Key]]] = []
     for call in book.calls:
         units = call.units
         if units is None:
@@ -65,8 +68,8 @@ def mixed(book: Book) -> Iterator[Finding]:
     yield from joined("U01", Severity.WARNING, remarks)
 
 
-def _key(given: Unit) -> tuple[str, float, int]:
-    return given.symbol, given.factor, given.shift
+def _key(given: Unit) -> _Key:
+    return given.symbol, given.factor, given.shift, given.offset
 
 
 def headings(book: Book) -> Iterator[Finding]:
@@ -96,7 +99,8 @@ def headings(book: Book) -> Iterator[Finding]:
 
 
 def _equal(one: Unit, other: Unit) -> bool:
-    return math.isclose(one.factor, other.factor, rel_tol=1e-9) and one.shift == other.shift
+    same_zero = one.shift == other.shift and one.offset == other.offset
+    return same_zero and math.isclose(one.factor, other.factor, rel_tol=1e-9)
 
 
 def _is_result(call: Call, place: Place) -> bool:

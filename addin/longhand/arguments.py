@@ -243,7 +243,7 @@ def own_unit(text: str, role: str) -> Conversion | None:
         found = unit(match[1], role)
     except UnitError:
         return None
-    return Conversion(match[1], found.factor, shift)
+    return Conversion(match[1], found.factor, shift, found.offset)
 
 
 def in_group(content: Content | None, own: Conversion | None, group: Conversion) -> Content | None:
@@ -252,7 +252,10 @@ def in_group(content: Content | None, own: Conversion | None, group: Conversion)
         return content
     inside = content.text if isinstance(content, Formula) else number(float(content))
     factor = group.factor.text if isinstance(group.factor, Formula) else number(float(group.factor))
-    return Formula(f"({inside})*{number(float(own.factor))}/{factor}")  # type: ignore[arg-type]
+    si = f"({inside})*{number(float(own.factor))}"  # type: ignore[arg-type]
+    if own.offset or group.offset:  # scales of temperature with different zeros
+        si = f"({si}+{number(own.offset)}-{number(group.offset)})"
+    return Formula(f"{si}/{factor}")
 
 
 def same_datum(argument: Argument, arg: Arg | Column, group: Conversion) -> None:

@@ -18,33 +18,40 @@ ANGLE_SCALE = "1000"
 
 
 class Conversion(NamedTuple):
-    """The unit of a column: its name, its factor to SI, and the shift of its datum."""
+    """The unit of a column: its name, its factor to SI, and where its zero stands."""
 
     unit: Content
     factor: Content
     shift: int = 0
     """-1: ambient pressure is taken off on the way to SI; +1: put on."""
+    offset: float = 0.0
+    """Of a temperature: the zero of its scale in kelvin."""
 
     @classmethod
     def of(cls, unit: Unit) -> Conversion:
-        return cls(unit.symbol, unit.factor, unit.shift)
+        return cls(unit.symbol, unit.factor, unit.shift, unit.offset)
+
+    def datum(self, ambient: str, sign: int = 1) -> str:
+        """What is added on the way to SI (``sign`` -1: on the way back), "" for nothing."""
+        text = ambient if self.shift else number(self.offset) if self.offset else ""
+        return f"{'+' if (self.shift or 1) * sign > 0 else '-'}{text}" if text else ""
 
 
-def to_si(raw: str, factor: str, shift: int, ambient: str) -> str:
+PLAIN = Conversion("", 1.0)
+"""No unit: what is no quantity."""
+
+
+def to_si(raw: str, factor: str, unit: Conversion, ambient: str) -> str:
     """A number in its unit as a number in SI."""
     plain = raw if factor == "1" else f"{raw}*{factor}"
-    return plain + _shift(shift, ambient)
+    return plain + unit.datum(ambient)
 
 
-def from_si(value: str, factor: str, shift: int, ambient: str) -> str:
+def from_si(value: str, factor: str, unit: Conversion, ambient: str) -> str:
     """A number in SI as a number in a unit."""
-    back = _shift(-shift, ambient)
+    back = unit.datum(ambient, -1)
     plain = f"({value}{back})" if back else value
     return plain if factor == "1" else f"{plain}/{factor}"
-
-
-def _shift(shift: int, ambient: str) -> str:
-    return "" if not shift else f"{'+' if shift > 0 else '-'}{ambient}"
 
 
 def in_use(row: Row, arg: Arg, raw: str, si: str) -> str:

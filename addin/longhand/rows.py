@@ -9,7 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
 from ..hosts.headless.a1 import column_letters
-from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, to_si
+from .convert import ANGLE_SCALE, P_ATM, PLAIN, Conversion, agreement, from_si, in_use, to_si
 from .grid import Content, Formula, Link, Sheet, fixed, local
 from .sheetpart import SCALE
 from .symbols import fill, shown, si_unit
@@ -157,17 +157,17 @@ class RowSheet:
         for at, text in ((top + 1, "unit"), (top + 2, "factor to SI")):
             sheet.put(at, 1, text, "note")
         units, factors = top + 1, top + 2
-        shifts: dict[str, int] = {}
+        units_of: dict[str, Conversion] = {}
         for arg, conversion in zip(self.row.args, group.arguments, strict=True):
             if conversion is not None and arg.role != "choice":
                 sheet.put(units, self._raw[arg.name], conversion.unit, "note")
                 sheet.put(factors, self._raw[arg.name], conversion.factor, "factor")
-                shifts[arg.name] = conversion.shift
+                units_of[arg.name] = conversion
         for name, conversion in group.results.items():
             sheet.put(units, self._result[name], conversion.unit, "note")
             sheet.put(factors, self._result[name], conversion.factor, "factor")
         for i, line in enumerate(group.lines):
-            self._line(top + 3 + i, factors, group, line, shifts)
+            self._line(top + 3 + i, factors, group, line, units_of)
         first, last = top + 3, top + 2 + len(group.lines)
         mark = column_letters(self._verdict)
         sheet.verdicts.append(f"{mark}{first}:{mark}{last}")
@@ -175,7 +175,7 @@ class RowSheet:
             mark = column_letters(self._result[name] + 3)
             sheet.verdicts.append(f"{mark}{first}:{mark}{last}")
 
-    def _line(self, at: int, factors: int, group: Group, line: Line, shifts: dict[str, int]) -> None:
+    def _line(self, at: int, factors: int, group: Group, line: Line, units_of: dict[str, Conversion]) -> None:
         sheet, row = self.sheet, self.row
         sheet.put(at, 1, line.label, "text")
         if line.target:
@@ -189,7 +189,7 @@ class RowSheet:
                 sheet.put(at, raw, given, "linked")
             factor = fixed(factors, raw)
             own_ambient = P_ATM if arg.name == "pamb" else ambient
-            si = to_si(local(at, raw), factor, shifts.get(arg.name, 0), own_ambient)
+            si = to_si(local(at, raw), factor, units_of.get(arg.name, PLAIN), own_ambient)
             sheet.put(at, col, Formula(in_use(row, arg, local(at, raw), si)), "number")
             cells[arg.name] = local(at, col)
         for step in self._steps:
@@ -199,7 +199,7 @@ class RowSheet:
         verdicts = []
         for name, conversion in group.results.items():
             col = self._result[name]
-            value = from_si(cells[self._step_of[name]], fixed(factors, col), conversion.shift, ambient)
+            value = from_si(cells[self._step_of[name]], fixed(factors, col), conversion, ambient)
             sheet.put(at, col, Formula(value), "result")
             own = line.own.get(name)
             if own is not None:

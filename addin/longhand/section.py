@@ -202,17 +202,17 @@ class Section:
             sheet.put(at, 7, entry.text, "note")
             ambient = P_ATM if entry.name == "pamb" else self._ambient
             formula = self._in_use(
-                entry.name, entry.role, local(at, 3), local(at, 5), entry.conversion.shift, ambient
+                entry.name, entry.role, local(at, 3), local(at, 5), entry.conversion, ambient
             )
             sheet.put(at, 2, Formula(formula), "number")
 
-    def _in_use(self, name: str, role: str, raw: str, factor: str, shift: int, ambient: str) -> str:
+    def _in_use(self, name: str, role: str, raw: str, factor: str, unit: Conversion, ambient: str) -> str:
         """The value of an entry or a cell in the working: SI, its default put in, its range kept."""
         empty = self.working.defaults.get(name, '""')
         if role == "text":
             value = f"LOWER(TRIM({raw}))" if name in _LOWER else f'TRIM({raw}&"")'
         else:
-            si = to_si(raw, factor, shift, ambient)
+            si = to_si(raw, factor, unit, ambient)
             test = inside(self.working.bounds.get(name), f"({si})")
             value = f"IF({test},{si},#NUM!)" if test else si
         return f'IF({raw}="",{empty},{value})'
@@ -241,7 +241,7 @@ class Section:
         sheet.put(at, 1, name, "resulttext")
         sheet.put(at, 4, unit.unit, "resulttext")
         sheet.put(at, 5, unit.factor, "result")
-        sheet.put(at, 2, Formula(from_si(value, fixed(at, 5), unit.shift, self._ambient)), "result")
+        sheet.put(at, 2, Formula(from_si(value, fixed(at, 5), unit, self._ambient)), "result")
         own = self.own.get(name)
         if own is not None:
             sheet.put(at, 3, Formula(own), "linked")
@@ -323,7 +323,7 @@ class Section:
                 column.role,
                 local(at, raw),
                 fixed(self._head + 5, raw),
-                conversion.shift,
+                conversion,
                 self._ambient,
             )
             sheet.put(at, self._column[column.name], Formula(formula), "number")
@@ -355,7 +355,7 @@ class Section:
             sheet.put(at, col + 2, Formula(same), "verdict")
             return local(at, col + 2)
         unit = fixed(self._head + 5, col)
-        converted = from_si(value, unit, conversion.shift, self._ambient)
+        converted = from_si(value, unit, conversion, self._ambient)
         sheet.put(at, col, Formula(f'IF({value}="","",{converted})'), "result")
         if own is None:
             return ""

@@ -142,7 +142,7 @@ def _own_conversion(heads: Argument, rows: list[list[Any]], j: int, own: str, co
 def guarded(given: Unit, ref: str, text: str) -> Conversion:
     """A unit that a cell names: its factor holds while the cell says the same."""
     factor = f"IF(EXACT({ref},{quoted(text)}),{number(given.factor)},NA())"
-    return Conversion(given.symbol, Formula(factor), given.shift)
+    return Conversion(given.symbol, Formula(factor), given.shift, given.offset)
 
 
 def read_block(columns: Sequence[Column], pairs: Argument, of_role: OfRole, what: str) -> list[Entry]:

@@ -23,13 +23,14 @@ class UnitSheet:
         self._at = _FIRST
         self._known: dict[tuple[str, str], Conversion] = {}
         self._sets: dict[str, UnitSet] = {}
-        self._lists: dict[tuple[str, int], tuple[int, int]] = {}
+        self._lists: dict[tuple[str, int, float], tuple[int, int]] = {}
         self._list_at = _FIRST
         sheet.put(1, 1, "Units and factors of the long-hand working", "title")
         sheet.put(
             2,
             1,
-            "SI value = value x factor. A unit taken from a cell is looked up in the list on the right, "
+            "SI value = value x factor (+ the zero of a scale of temperature). "
+            "A unit taken from a cell is looked up in the list on the right, "
             "so that the working follows when the cell names another unit.",
             "note",
         )
@@ -112,7 +113,7 @@ class UnitSheet:
             formula = f"IF(EXACT(INDEX({names},{found}),{here}),INDEX({factors},{found}),NA())"
             sheet.put(at, 4, Formula(formula), "number")
         sheet.put(at, 5, si_unit(role))
-        return Conversion(Formula(sheet.ref(at, 3)), Formula(sheet.ref(at, 4)), given.shift)
+        return Conversion(Formula(sheet.ref(at, 3)), Formula(sheet.ref(at, 4)), given.shift, given.offset)
 
     def _name(self, argument: Argument, role: str, given: Unit) -> tuple[Formula | str, str | None]:
         """The content of the unit cell; with it the unit's name where a cell holds it."""
@@ -128,10 +129,10 @@ class UnitSheet:
 
     def _list(self, role: str, given: Unit) -> tuple[int, int]:
         """The spellings of units of a role, with the datum of the unit given."""
-        key = (ROLES[role].si, given.shift)
+        key = (ROLES[role].si, given.shift, given.offset)
         if key not in self._lists:
             first = self._list_at
-            names = [n for n in known_units(role) if unit(n, role).shift == given.shift]
+            names = [n for n in known_units(role) if unit(n, role)[2:] == given[2:]]
             for name in dict.fromkeys((given.symbol, *names)):
                 self.sheet.put(self._list_at, _LIST_COLUMN, name)
                 self.sheet.put(self._list_at, _LIST_COLUMN + 1, unit(name, role).factor, "number")

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 
+from thrustbook.addin.cells import CellError
+from thrustbook.addin.dispatch import call
+from thrustbook.addin.tables import column_from_si, number, numbers
 from thrustbook.addin.units import ROLES, UnitError, convert, named_set, quantity, unit, unit_set
 from thrustbook.engine.constants import P_ATM
 
@@ -42,6 +46,15 @@ def test_published_factors(check: dict) -> None:
         ("2 kip", "force", 8896.443230521),
         ("50 %", "ratio", 0.5),
         ("1 cP", "viscosity", 1e-3),
+        ("1 cSt", "kinematic", 1e-6),
+        ("1 mm2/s", "kinematic", 1e-6),
+        ("20 °C", "temperature", 293.15),
+        ("20 degC", "temperature", 293.15),
+        ("20C", "temperature", 293.15),
+        ("-40 F", "temperature", 233.15),
+        ("212 °F", "temperature", 373.15),
+        ("212 degF", "temperature", 373.15),
+        ("4.5 K", "temperature", 4.5),
     ],
 )
 def test_spellings_of_engineers(text: str, role: str, value: float) -> None:
@@ -57,6 +70,62 @@ def test_absolute_pressures_shift_by_the_ambient_pressure() -> None:
     assert quantity("14.7 psia", "absolute")[1] == 0
     assert convert(0.0, "psig", "psia") == pytest.approx(P_ATM / 6894.757293168361)
     assert convert(1.0, "bara", "barg", 90_000.0) == pytest.approx(0.1)
+
+
+@pytest.mark.parametrize(
+    ("value", "source", "target", "expected"),
+    [
+        # NIST SP 811, appendix B.9: the fixed points of the scales.
+        (0.0, "degC", "K", 273.15),
+        (20.0, "C", "degF", 68.0),
+        (-40.0, "°F", "°C", -40.0),
+        (32.0, "F", "degC", 0.0),
+        (0.0, "K", "°F", -459.67),
+        (98.6, "degF", "C", 37.0),
+        (5.0, "degC", "C", 5.0),
+    ],
+)
+def test_temperatures_have_a_zero_of_their_own(
+    value: float, source: str, target: str, expected: float
+) -> None:
+    assert convert(value, source, target) == pytest.approx(expected, rel=1e-14, abs=1e-13)
+    assert convert(expected, target, source) == pytest.approx(value, rel=1e-14, abs=1e-13)
+
+
+def test_a_temperature_keeps_its_zero_in_every_way_through_a_cell() -> None:
+    for name, given, back in (("SI", 288.15, "K"), ("metric", 15.0, "degC"), ("US", 59.0, "degF")):
+        units = named_set(name)
+        assert units.symbol("temperature") == back
+        own = units.unit("temperature")
+        assert number(given, "T", "temperature", own) == pytest.approx(288.15, rel=1e-15)
+        many, errors = numbers([given, f"{given} {back}", None], "T", "temperature", own)
+        assert not errors
+        assert many[:2].tolist() == pytest.approx([288.15, 288.15], rel=1e-15)
+        plain, _ = numbers([given, given], "T", "temperature", own)
+        assert plain.tolist() == pytest.approx([288.15, 288.15], rel=1e-15)
+        assert column_from_si(288.15, "temperature", units) == pytest.approx(given, rel=1e-14)
+        one = call("TB_WATER", ["rho", name, given])
+        grid = call("TB_WATER", ["rho", name, [[given], ["15 °C"], ["15 kg"]]])
+        assert isinstance(grid, np.ndarray)
+        assert grid[0, 0] == pytest.approx(one, rel=1e-14)
+        assert grid[1, 0] == pytest.approx(one, rel=1e-14)
+        assert isinstance(grid[2, 0], CellError)
+
+
+@pytest.mark.parametrize(
+    ("units", "T", "allowed"),
+    [
+        ("SI", 15.0, "273.15 and at most 373.12"),
+        ("metric", -1.0, "0 and at most 99.97"),
+        ("US", 31.0, "32 and at"),
+    ],
+)
+def test_a_temperature_out_of_range_is_told_on_its_own_scale(units: str, T: float, allowed: str) -> None:
+    outcome = call("TB_WATER", ["rho", units, T])
+    assert isinstance(outcome, CellError)
+    assert outcome.kind == "NUM"
+    assert f"T = {T:g}" in outcome.message
+    assert f"at least {allowed}" in outcome.message
 
 
 @pytest.mark.parametrize(
@@ -96,7 +165,7 @@ def test_a_range_of_role_and_unit() -> None:
         [["Quantity", "Unit"], ["set", "US"], ["pressure", "kPa(a)"], [None, None], ["angle", "rad"]]
     )
     assert units.symbol("diameter") == "in"
-    assert units.unit("pressure") == ("kPa(a)", 1000.0, -1)
+    assert units.unit("pressure") == ("kPa(a)", 1000.0, -1, 0.0)
     assert units.unit("angle").factor == 1.0
     assert unit_set(None).symbol("pressure") == "Pa"
     assert unit_set([["metric"]]).symbol("pressure") == "kPa"

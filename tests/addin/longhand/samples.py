@@ -27,6 +27,7 @@ _USUAL: dict[str, tuple[float, float, bool]] = {
     "pressure": (-5e4, 2e6, False),
     "loss": (0.0, 2e5, False),
     "absolute": (6e4, 1.1e5, False),
+    "temperature": (273.2, 373.1, False),
     "force": (0.0, 1e5, False),
     "angle": (0.0, 3.14159, False),
     "ratio": (0.0, 5.0, False),
@@ -80,7 +81,8 @@ def in_units(row: Row, cells: list[Cell], name: str) -> list[Cell]:
     out = []
     for arg, cell in zip(row.args, cells, strict=True):
         if isinstance(cell, float):
-            cell = cell * si.unit(arg.role).factor / units.unit(arg.role).factor
+            given, own = si.unit(arg.role), units.unit(arg.role)
+            cell = (cell * given.factor + given.offset - own.offset) / own.factor
         out.append(cell)
     return out
 
