@@ -9,7 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Longhand, Row
 from .arguments import Argument, Written, taken
-from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, to_si
+from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, not_given, to_si
 from .grid import Formula, Link, Sheet, local
 from .source import TbCell
 from .symbols import fill, shown, si_unit
@@ -135,7 +135,8 @@ class Block:
         places = ", ".join(dict.fromkeys(check.place for check in self.checks[:4]))
         more = f" and {len(self.checks) - 4} more" if len(self.checks) > 4 else ""
         caption = [row.name, row.summary.rstrip("."), places + more]
-        sheet.line(self.top, [*caption, *[""] * 7], "block")
+        sheet.fill(self.top, 1, 10, "block")
+        sheet.line(self.top, list(caption), "block")
         cells: dict[str, str] = {}
         ambient = P_ATM
         names = [arg.name for arg in row.args]
@@ -179,9 +180,14 @@ class Block:
         sheet.line(at, [arg.name, wording(arg)], "wrapped")
         if content is None:
             sheet.put(at, 3, f"not given: {arg.empty}" if arg.empty else "not given", "note")
-        else:
-            sheet.put(at, 3, argument.shown() if argument.form != "literal" else "constant", "mono")
-            sheet.put(at, 4, content, "linked" if isinstance(content, Formula) else "number")
+            missing = not_given(row, arg)
+            if missing is not None:
+                sheet.put(at, 8, missing, "number")
+                sheet.put(at, 9, si_unit(arg.role), "text")
+            sheet.fit_height(at)
+            return
+        sheet.put(at, 3, argument.shown() if argument.form != "literal" else "constant", "mono")
+        sheet.put(at, 4, content, "linked" if isinstance(content, Formula) else "number")
         raw = local(at, 4)
         if arg.role == "choice":
             si = raw

@@ -38,7 +38,7 @@ from .unitsheet import UnitSheet
 SUMMARY, UNITS, CELLS = "Long-hand", "LH units", "LH cells"
 MOST_LINES: Final = 20_000
 """Rows of one call that get a working."""
-_ROWS_A_SHEET: Final = 400_000
+_ROWS_A_SHEET: Final = 60_000
 
 
 @dataclass

@@ -6,7 +6,7 @@ from typing import NamedTuple
 
 from ..catalogue.types import Arg, Row
 from ..units import Unit
-from .grid import Content
+from .grid import Content, Formula
 from .symbols import default_of, number, quoted, within
 
 P_ATM = "101325"
@@ -74,6 +74,13 @@ def in_use(row: Row, arg: Arg, raw: str, si: str) -> str:
     else:
         empty = quoted(default) if isinstance(default, str) else number(default)
     return f'IF({raw}="",{empty},{chosen})'
+
+
+def not_given(row: Row, arg: Arg) -> Content | None:
+    """What stands in the working for an argument that a call leaves out."""
+    if row.required(arg):
+        return Formula("#VALUE!")
+    return default_of(row, arg)
 
 
 def agreement(value: str, own: str, tolerance: str, scale: str) -> str:

@@ -42,6 +42,8 @@ class Sheet:
     column_breaks: list[int] = field(default_factory=list)
     title_rows: tuple[int, int] | None = None
     title_columns: tuple[int, int] | None = None
+    print_areas: list[tuple[int, int, int, int]] = field(default_factory=list)
+    """Parts printed on pages of their own: first row and column, last row and column; none: all."""
     fit_width: bool = True
     merges: list[tuple[int, int, int]] = field(default_factory=list)
     """Cells of a row that are one: row, first and last column."""
@@ -59,6 +61,13 @@ class Sheet:
         cells = self.cells.setdefault(row, {})
         for i, content in enumerate(contents):
             cells[col + i] = (content, style)
+
+    def fill(self, row: int, first: int, last: int, style: str) -> None:
+        """Give empty cells a style."""
+        cells = self.cells.setdefault(row, {})
+        empty: tuple[Content, str] = ("", style)
+        for col in range(first, last + 1):
+            cells[col] = empty
 
     def spread(self, row: int, first: int, last: int, content: str, style: str) -> None:
         """Put a text over several columns."""

@@ -10,7 +10,7 @@ from lxml import etree
 
 from ..hosts.headless.opc import MAIN, RELATION_ID, parse
 from ..hosts.headless.package import Package
-from .grid import Sheet, quoted_sheet
+from .grid import Sheet, fixed, quoted_sheet
 from .sheetpart import Values, sheet_xml
 from .styles import Formats, with_formats
 
@@ -128,12 +128,12 @@ class Addition:
         return Parts(replaced, added)
 
     def _name_titles(self, workbook: etree._Element, count: int) -> None:
-        """Rows and columns repeated on every page are a defined name of the sheet."""
+        """What is printed, and what is repeated on every page, are defined names of the sheet."""
         wanted = []
         for i, sheet in enumerate(self.sheets):
-            text = print_titles(sheet)
-            if text:
-                wanted.append((count + i, text))
+            for name, text in (("Print_Area", print_areas(sheet)), ("Print_Titles", print_titles(sheet))):
+                if text:
+                    wanted.append((count + i, f"_xlnm.{name}", text))
         if not wanted:
             return
         names = workbook.find(f"{{{MAIN}}}definedNames")
@@ -142,9 +142,9 @@ class Addition:
             before = {f"{{{MAIN}}}{n}" for n in ("sheets", "functionGroups", "externalReferences")}
             at = max(i for i, child in enumerate(workbook) if child.tag in before)
             workbook.insert(at + 1, names)
-        for index, text in wanted:
+        for index, name, text in wanted:
             node = etree.SubElement(names, f"{{{MAIN}}}definedName")
-            node.set("name", "_xlnm.Print_Titles")
+            node.set("name", name)
             node.set("localSheetId", str(index))
             node.text = text
 
@@ -165,6 +165,12 @@ class Addition:
             titles.insert(known + i, node)
         titles.set("size", str(len(titles)))
         return _bytes(root)
+
+
+def print_areas(sheet: Sheet) -> str:
+    """The parts of a sheet that are printed, as a defined name holds them."""
+    name = quoted_sheet(sheet.name)
+    return ",".join(f"{name}!{fixed(r1, c1)}:{fixed(r2, c2)}" for r1, c1, r2, c2 in sheet.print_areas)
 
 
 def print_titles(sheet: Sheet) -> str:

@@ -9,7 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
 from ..hosts.headless.a1 import column_letters
-from .convert import ANGLE_SCALE, P_ATM, PLAIN, Conversion, agreement, from_si, in_use, to_si
+from .convert import ANGLE_SCALE, P_ATM, PLAIN, Conversion, agreement, from_si, in_use, not_given, to_si
 from .grid import Content, Formula, Link, Sheet, fixed, local
 from .sheetpart import SCALE
 from .symbols import fill, shown, si_unit
@@ -185,13 +185,17 @@ class RowSheet:
         cells: dict[str, str] = {}
         for arg, given in zip(row.args, line.given(), strict=True):
             raw, col = self._raw[arg.name], self._column[arg.name]
-            if given is not None:
-                sheet.put(at, raw, given, "linked")
+            cells[arg.name] = local(at, col)
+            if given is None:
+                missing = not_given(row, arg)
+                if missing is not None:
+                    sheet.put(at, col, missing, "number")
+                continue
+            sheet.put(at, raw, given, "linked")
             factor = fixed(factors, raw)
             own_ambient = P_ATM if arg.name == "pamb" else ambient
             si = to_si(local(at, raw), factor, units_of.get(arg.name, PLAIN), own_ambient)
             sheet.put(at, col, Formula(in_use(row, arg, local(at, raw), si)), "number")
-            cells[arg.name] = local(at, col)
         for step in self._steps:
             col = self._column[step.symbol]
             sheet.put(at, col, Formula(fill(step.formula, cells.__getitem__)), "number")

@@ -15,7 +15,7 @@ from .rows import LABELS, NARROW, column_breaks, worst
 from .symbols import fill, inside, names_in, shown, si_unit
 
 _SUFFIX: Final = re.compile(r"(.+)\.(prev|next|first|last|column)")
-_LOWER: Final = ("at", "flow_at", "start", "end", "method", "kind", "cat", "ckind")
+_LOWER: Final = ("fluid", "at", "flow_at", "start", "end", "method", "kind", "cat", "ckind")
 _TEXT_FROM, _TEXT_TO, _FORMULA_TO = 4, 8, 14
 """Columns over which meanings and formulas of the upper part run."""
 _MARGIN: Final = 1.0
@@ -110,6 +110,11 @@ class Section:
                 col += 3 if result.role == "text" else 4
         self._verdict = col
         return self._first + len(self.lines) + 2
+
+    @property
+    def print_areas(self) -> list[tuple[int, int, int, int]]:
+        """The upper part, and the table: each on pages of its own."""
+        return [(1, 1, self._head - 1, _FORMULA_TO), (self._head, 1, self._last, self._verdict)]
 
     @property
     def heading_rows(self) -> tuple[int, int]:
@@ -296,7 +301,7 @@ class Section:
             sheet.widths[last] = 9.0
         self._head_column(self._verdict, "", "the whole row", "", "")
         sheet.widths[self._verdict] = 9.0
-        sheet.heights |= {at + 1: 66.0, at + 3: 104.0}
+        sheet.heights |= {at + 1: 80.0, at + 3: 104.0}
         sheet.column_breaks = column_breaks(sheet.widths, self._verdict)
 
     def _head_column(self, col: int, symbol: str, meaning: str, unit: str, formula: str) -> None:

@@ -138,6 +138,7 @@ class TableCalls:
     def _alone(self, section: Section, sheet: Sheet) -> None:
         section.place(sheet, 3)
         sheet.title_rows = section.heading_rows
+        sheet.print_areas = section.print_areas
         sheet.title_columns = (1, 2)
 
     def write(self, tolerance: str) -> None:
