@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any, Final
 
@@ -12,6 +12,8 @@ import numpy.typing as npt
 
 from thrustbook.engine.constants import P_ATM
 from thrustbook.engine.errors import EngineError, Problem
+from thrustbook.engine.guard import Routine
+from thrustbook.engine.properties import Water, water
 from thrustbook.engine.runcases import LoadCase
 from thrustbook.engine.runflow import RunStart
 from thrustbook.engine.runnotes import FAULTS, note_text
@@ -57,8 +59,23 @@ NODE_COLUMNS: Final = (
 )
 
 START_COLUMNS: Final = (
-    Column(name="rho", role="density", text="density of the fluid", required=True),
-    Column(name="mu", role="viscosity", text="dynamic viscosity", empty="every leg needs f"),
+    Column(
+        name="fluid",
+        role="text",
+        text="fluid whose properties are known: water; needs T",
+        empty="rho must be given",
+    ),
+    Column(name="T", role="temperature", text="temperature of that fluid", empty="there is no fluid"),
+    Column(
+        name="rho", role="density", text="density; goes before that of the fluid", empty="that of the fluid"
+    ),
+    Column(
+        name="mu",
+        role="viscosity",
+        text="dynamic viscosity; goes before that of the fluid",
+        empty="from nu, or that of the fluid; without either every leg needs f",
+    ),
+    Column(name="nu", role="kinematic", text="kinematic viscosity, in place of mu", empty="mu is used"),
     Column(name="Q", role="flow", text="flow along the run", empty="from a closed end, or solved for a jet"),
     Column(name="p", role="pressure", text="gauge pressure at one end", empty="from H, or from the jet"),
     Column(name="H", role="level", text="total head above the datum of z at one end", empty="from p"),
@@ -67,7 +84,7 @@ START_COLUMNS: Final = (
     Column(name="start", role="text", text="first node: continues or closed", empty="continues"),
     Column(name="end", role="text", text="last node: continues, jet or closed", empty="continues"),
     Column(name="pamb", role="absolute", text="ambient pressure", empty="standard atmosphere"),
-    Column(name="pv", role="absolute", text="vapour pressure", empty="0"),
+    Column(name="pv", role="absolute", text="vapour pressure", empty="that of the fluid, or 0"),
     Column(name="Vmax", role="velocity", text="velocity above which a leg is remarked on", empty="3 m/s"),
     Column(name="method", role="text", text="friction: colebrook, swamee-jain, haaland", empty="colebrook"),
 )
@@ -93,7 +110,10 @@ CASE_COLUMNS: Final = (
     Column(name="H2", role="level", text="head beyond that valve", empty="pipe beyond is drained"),
 )
 
-_WORDS: Final = ("at", "flow_at", "start", "end", "method", "kind")
+FLUIDS: Final[Mapping[str, Routine[Any, Water]]] = {"water": water}
+"""What the entry fluid may name: density, viscosity and vapour pressure from the temperature."""
+
+_WORDS: Final = ("fluid", "at", "flow_at", "start", "end", "method", "kind")
 _INDEX: Final = re.compile(r"(\w+)\[(\d+)\]")
 MOST_NAMED: Final = 3
 """Bad rows that a message names one by one."""
@@ -144,7 +164,32 @@ def read_start(cell: Cell, units: UnitSet) -> tuple[RunStart, float]:
     ambient = float(found.get("pamb", P_ATM))
     if ambient != P_ATM:  # pressures written as absolute take this ambient pressure off
         found = read_pairs(START_COLUMNS, cell, units, what="start", ambient=ambient)
-    return RunStart(**_lowered(found)), ambient
+    return RunStart(**_with_fluid(_lowered(found), units)), ambient
+
+
+def _with_fluid(found: dict[str, Any], units: UnitSet) -> dict[str, Any]:
+    """Fill in the properties of the fluid. One that has an entry of its own keeps it."""
+    fluid, T = found.pop("fluid", None), found.pop("T", None)
+    if fluid is None:
+        if T is not None:
+            raise Refused("VALUE", "start: T is given, but no fluid (allowed: T with fluid)")
+        if "rho" not in found:
+            raise Refused("VALUE", "start: rho is missing (allowed: rho, or fluid and T)")
+        return found
+    if fluid not in FLUIDS:
+        raise Refused("VALUE", f'start: fluid = "{fluid}" (allowed: {", ".join(FLUIDS)})')
+    if T is None:
+        raise Refused("VALUE", f"start: T is missing (the temperature of the {fluid})")
+    try:
+        known = FLUIDS[fluid](T)
+    except EngineError as error:
+        bound = FLUIDS[fluid].parameters[0].bound
+        texts = [in_units(problem, "temperature", units, bound) for problem in error.problems]
+        raise Refused(kind_of(error), f"start: {'; '.join(texts)}") from error
+    filled = {"rho": known.rho, "pv": known.pv}
+    if "nu" not in found:
+        filled["mu"] = known.mu
+    return filled | found
 
 
 def _lowered(found: dict[str, Any]) -> dict[str, Any]:

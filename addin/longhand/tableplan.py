@@ -147,14 +147,15 @@ def plan_run(
 
 
 def _run_working(entries: list[Entry], kind: str = "") -> TableLonghand:
-    """The working that the start block (and case) asks for: with or without seeking the flow of a jet."""
+    """The working that start block and case ask for: is a jet's flow sought, is there a fluid."""
     given = {entry.name for entry in entries}
     jet = any(e.name == "end" and e.stored.strip().lower() == "jet" for e in entries)
+    fluid = "fluid" in given
     if kind in ("shut", "test", "empty"):
-        return run_working(False)
+        return run_working(False, fluid)
     case_head = bool(given & {"cp", "cH"})
     sought = jet and ("Q" not in given or case_head) and "cQ" not in given
-    return run_working(sought)
+    return run_working(sought, fluid)
 
 
 def _lines(table: ReadTable) -> list[TableLine]:

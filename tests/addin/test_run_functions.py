@@ -12,11 +12,13 @@ import pytest
 from thrustbook.addin.cells import CellError
 from thrustbook.addin.dispatch import call, why
 from thrustbook.engine.constants import G
+from thrustbook.engine.properties import water
 from thrustbook.engine.run import run
 from thrustbook.engine.runflow import RunStart
 from thrustbook.engine.runshape import RunTable
 
 START: list[list[Any]] = [["rho", 1000.0], ["mu", 1.0], ["Q", 100.0], ["p", 500.0, "kPa"]]
+WATER: list[list[Any]] = [["fluid", "Water"], ["T", 15.0], *START[2:]]
 HEADINGS: list[list[Any]] = [["name", "x", "y", "z", "D [mm]", "e", "K"]]
 TABLE: list[list[Any]] = [
     ["A", 0.0, 0.0, 10.0, 300.0, 0.1, None],
@@ -175,7 +177,13 @@ def test_an_offtake_without_direction_spoils_its_own_row_only() -> None:
 @pytest.mark.parametrize(
     ("start", "message"),
     [
-        ([["mu", 1.0], ["Q", 100.0], ["p", 500.0]], "rho is missing"),
+        ([["mu", 1.0], ["Q", 100.0], ["p", 500.0]], "rho is missing (allowed: rho, or fluid and T)"),
+        ([["fluid", "oil"], *WATER[1:]], 'fluid = "oil" (allowed: water)'),
+        ([WATER[0], *START[2:]], "T is missing"),
+        ([["T", 15.0], *START], "T is given, but no fluid"),
+        ([WATER[0], ["T", 150.0], *START[2:]], "T = 150 degC (allowed: at least 0 and at most 99.97)"),
+        ([WATER[0], ["T", 15.0, "kPa"], *START[2:]], "kPa"),
+        ([*START, ["nu", 1.0]], "only one of mu and nu"),
         ([*START, ["colour", "blue"]], '"colour" is not known'),
         ([*START, ["H", 80.0]], "only one of p and H"),
         ([*START, ["end", "open"]], "continues, jet, closed"),
@@ -209,6 +217,52 @@ def test_a_bad_table_is_one_error(headings: Any, table: Any, message: str) -> No
     outcome = tb_run("F", table, headings=headings)
     assert isinstance(outcome, CellError)
     assert message in outcome.message
+
+
+def water_at(T: float) -> list[list[Any]]:
+    found = water(T + 273.15)
+    return [["rho", found.rho], ["mu", found.mu, "Pa s"], ["pv", found.pv, "Pa"], *START[2:]]
+
+
+def test_a_fluid_and_its_temperature_stand_for_its_properties() -> None:
+    low: list[list[Any]] = [["p", -98.0]]
+    for found, given in ((WATER, water_at(15.0)), ([*WATER[:3], *low], [*water_at(15.0)[:4], *low])):
+        np.testing.assert_array_equal(tb_run("all", start=found), tb_run("all", start=given))
+        np.testing.assert_array_equal(tb_runcases("all", start=found), tb_runcases("all", start=given))
+    for T in (["T", "59 °F"], ["T [degF]", 59.0], ["T", 288.15, "K"]):
+        forces = tb_run("F", start=[WATER[0], T, *START[2:]])[:, 0].astype(float)
+        np.testing.assert_allclose(forces, tb_run("F", start=WATER)[:, 0].astype(float), rtol=1e-12)
+
+
+def test_vapour_pressure_of_hot_water_is_that_of_its_temperature() -> None:
+    def remark(*more: list[Any]) -> str:
+        start = [["fluid", "water"], ["T", 95.0], ["Q", 1.0], ["p", -25.0], *more]
+        return str(tb_run("note", start=start)[0, 0])
+
+    assert "column separates" in remark()  # it boils at 84.6 kPa, and 76.3 kPa are left
+    assert "column separates" not in remark(["pv", 2.0])
+
+
+@pytest.mark.parametrize(
+    ("entry", "plain"),
+    [
+        (["rho", 1030.0], {0: ["rho", 1030.0]}),
+        (["mu", 5.0], {1: ["mu", 5.0]}),
+        (["pv", 90.0], {2: ["pv", 90.0]}),
+        (["nu", 4.0, "cSt"], {1: ["nu", 4.0, "mm2/s"]}),
+    ],
+)
+def test_an_entry_of_its_own_goes_before_the_fluid(entry: list[Any], plain: dict[int, list[Any]]) -> None:
+    given = [plain.get(i, row) for i, row in enumerate(water_at(15.0))]
+    np.testing.assert_array_equal(tb_run("all", start=[*WATER, entry]), tb_run("all", start=given))
+
+
+def test_kinematic_viscosity_in_place_of_the_dynamic_one() -> None:
+    start: list[list[Any]] = [["rho", 800.0], ["nu", 2.5], *START[2:]]
+    plain: list[list[Any]] = [["rho", 800.0], ["mu", 2.0], *START[2:]]
+    for name in ("Re", "fD"):
+        found = tb_run(name, start=start)[:3, 0].astype(float)
+        np.testing.assert_allclose(found, tb_run(name, start=plain)[:3, 0].astype(float), rtol=1e-12)
 
 
 def test_words_are_read_without_regard_to_case() -> None:

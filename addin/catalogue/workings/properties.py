@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import Final
 
 from ..types import Longhand, Step
@@ -86,3 +87,33 @@ def water_steps(T: str) -> tuple[Step, ...]:
 
 
 TB_WATER = Longhand(steps=water_steps("{T}"))
+
+
+def fluid_steps(water: bool) -> tuple[Step, ...]:
+    """Density, viscosity and vapour pressure in use in a run: rho0, mu' and pv'.
+
+    An entry of its own goes before what the temperature of the water gives; with
+    ``water`` False there is no fluid.
+    """
+    rho, mu, pv = ("{rho_w}", "{mu_w}", "{pv_w}") if water else ("#VALUE!", '""', "0")
+    steps = (
+        Step("rho0", "density of the start block", "density", f'IF({{rho}}="",{rho},{{rho}})'),
+        Step(
+            "mu'",
+            "dynamic viscosity in use, where there is one",
+            "viscosity",
+            f'IF({{mu}}<>"",{{mu}},IF({{nu}}<>"",{{nu}}*IF({{crho}}="",{{rho0}},{{crho}}),{mu}))',
+        ),
+        Step("pv'", "vapour pressure in use", "absolute", f'IF({{pv}}="",{pv},{{pv}})'),
+    )
+    if not water:
+        return steps
+    T = Step("T'", "temperature of the water", "temperature", 'IF({fluid}="water",{T},#VALUE!)')
+    return T, *(_marked(step, "_w") for step in water_steps("{T'}")), *steps
+
+
+def _marked(step: Step, mark: str) -> Step:
+    """A step of the water under a name that no step of a run has."""
+    own = {known.symbol for known in TB_WATER.steps}
+    formula = re.sub(r"\{(\w+)\}", lambda m: f"{{{m[1]}{mark}}}" if m[1] in own else m[0], step.formula)
+    return Step(step.symbol + mark, step.text, step.role, formula)

@@ -8,17 +8,19 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from thrustbook.engine.properties import LIQUID
 from thrustbook.engine.runcases import CASE_BOUNDS
 from thrustbook.engine.runflow import START_BOUNDS
 from thrustbook.engine.runshape import COLUMN_BOUNDS
 
 from ..types import RowStep, Step, TableLonghand
 from .friction import friction_steps
+from .properties import fluid_steps
 
 _SINGLE = (
     Step("g", "standard acceleration of free fall", "m/s2", "9.80665"),
     Step("still", "1 where nothing flows", "ratio", 'IF(OR({kind}="shut",{kind}="test",{kind}="empty"),1,0)'),
-    Step("rho'", "density in use", "density", 'IF({kind}="empty",0,IF({crho}="",{rho},{crho}))'),
+    Step("rho'", "density in use", "density", 'IF({kind}="empty",0,IF({crho}="",{rho0},{crho}))'),
     Step(
         "end'",
         "last node in use: a jet is shut where nothing flows",
@@ -176,7 +178,7 @@ _FLOW = (
     RowStep("V1", "velocity before", "velocity", "IF({A1}=0,0,{Q1}/{A1})"),
     RowStep("V2", "velocity behind", "velocity", "IF({A2}=0,0,{Q2}/{A2})"),
     RowStep(
-        "Re", "Reynolds number of the leg", "ratio", 'IF({mu}="",0,{rho\'}*ABS({V2})*{D2}/{mu})', last='""'
+        "Re", "Reynolds number of the leg", "ratio", "IF({mu'}=\"\",0,{rho'}*ABS({V2})*{D2}/{mu'})", last='""'
     ),
     RowStep("eD", "relative roughness", "ratio", 'IF({e}="",0,IF({e}/{D2}>0.1,#NUM!,{e}/{D2}))', last='""'),
     *(
@@ -364,13 +366,13 @@ _REMARKS = (
     (
         "n1",
         "pressure at or below vapour pressure: the column separates, results do not hold",
-        f"AND({{rho'}}>0,{_LOW}+{{pamb}}<={{pv}})",
+        f"AND({{rho'}}>0,{_LOW}+{{pamb}}<={{pv'}})",
         "",
     ),
     (
         "n2",
         "pressure below ambient",
-        f"{_LOW}<0-0.000000000001*(ABS({{p1}})+{{rho}}*{{g}}*(ABS({{H1}})+ABS({{z}})))",
+        f"{_LOW}<0-0.000000000001*(ABS({{p1}})+{{rho0}}*{{g}}*(ABS({{H1}})+ABS({{z}})))",
         "",
     ),
     (
@@ -446,7 +448,6 @@ _DEFAULTS = {
     "start": '"continues"',
     "end": '"continues"',
     "pamb": "101325",
-    "pv": "0",
     "Vmax": "3",
     "method": '"colebrook"',
     "kind": '"operating"',
@@ -466,7 +467,7 @@ def _trial(k: int) -> Iterator[RowStep]:
         f"Rt{k}",
         f"trial {k}: Reynolds number",
         "ratio",
-        f'IF({{mu}}="",0,{{rho\'}}*ABS({{Vt{k}}})*{{D2}}/{{mu}})',
+        f"IF({{mu'}}=\"\",0,{{rho'}}*ABS({{Vt{k}}})*{{D2}}/{{mu'}})",
         last='""',
     )
     yield RowStep(
@@ -526,8 +527,12 @@ def _trial_rest(k: int) -> Step:
     )
 
 
-def run_working(solve: bool) -> TableLonghand:
-    """The working of a run; with ``solve`` the flow of a jet is found from the head at the start."""
+def run_working(solve: bool, fluid: bool = False) -> TableLonghand:
+    """The working of a run.
+
+    With ``solve`` the flow of a jet is found from the head at the start; with ``fluid`` the
+    properties of water follow from its temperature.
+    """
     trials = range(TRIALS if solve else 0)
     trial_rows = tuple(step for k in trials for step in _trial(k))
     trial_single = tuple(step for k in trials for step in (_trial_flow(k), _trial_rest(k)))
@@ -550,10 +555,10 @@ def run_working(solve: bool) -> TableLonghand:
             _fitting(),
             *_remarks(),
         ),
-        single=(*_SINGLE[:split], *trial_single, found, *_SINGLE[split:], *_CLOSURE),
+        single=(*fluid_steps(fluid), *_SINGLE[:split], *trial_single, found, *_SINGLE[split:], *_CLOSURE),
         results={"po": "po'", "Vo": "Vo'", "Fv": "Fz"},
         defaults=_DEFAULTS,
-        bounds={**COLUMN_BOUNDS, **START_BOUNDS, **{f"c{n}": b for n, b in CASE_BOUNDS.items()}},
+        bounds={**COLUMN_BOUNDS, **START_BOUNDS, "T": LIQUID, **{f"c{n}": b for n, b in CASE_BOUNDS.items()}},
         method="unrolled",
     )
 
@@ -563,7 +568,7 @@ def _roughness() -> tuple[RowStep, ...]:
     return tuple(step for step in _FLOW if step.symbol in ("eD", "a"))
 
 
-TB_RUN = run_working(solve=True)
+TB_RUN = run_working(solve=True, fluid=True)
 
 # The envelope of the cases: each case has a working of its own, as a run.
 ENVELOPE = ("F", "Fh", "Fx", "Fy", "Fz", "p")

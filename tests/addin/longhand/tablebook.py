@@ -100,13 +100,21 @@ def nodes(random_: random.Random, end: str) -> Rows:
     return rows
 
 
+def _fluid(random_: random.Random) -> Rows:
+    """Entries of the fluid, in every way that the start block takes."""
+    rho: list[Any] = ["rho", random_.uniform(950, 1050)]
+    if random_.random() < 0.5:
+        thick = [["mu [mPa s]", random_.uniform(0.5, 200)], ["nu", random_.uniform(0.5, 200), "mm2/s"]]
+        return [rho, random_.choice(thick)]
+    T = [["T", random_.uniform(1, 95)], ["T [degF]", random_.uniform(40, 200)], ["T", "300.5 K"]]
+    rows: Rows = [["fluid", random_.choice(["water", "Water"])], random_.choice(T)]
+    extra = [[rho], [["mu", 1.3]], [["nu [cSt]", 2.5]], [["pv", 30.0]]]
+    return rows + random_.choice([[], [], *extra])
+
+
 def start(random_: random.Random, end: str) -> Rows:
     """A start block that suits the end."""
-    rows: Rows = [
-        ["rho", random_.uniform(950, 1050)],
-        ["mu [mPa s]", random_.uniform(0.5, 200)],
-        ["end", end],
-    ]
+    rows: Rows = [*_fluid(random_), ["end", end]]
     rows.append(["method", random_.choice(["colebrook", "swamee-jain", "haaland"])])
     head = random_.choice([["p", random_.uniform(100, 900), "kPa"], ["H", random_.uniform(80, 150)]])
     if end == "jet":
