@@ -91,6 +91,8 @@ class Link:
         self.started += 1
         process = self._process
         assert process is not None
+        _widen(process.stdin)
+        _widen(process.stdout)
         try:
             hello = wire.receive(process.stdout)  # type: ignore[arg-type]
         except wire.Closed:
@@ -144,6 +146,16 @@ class Link:
             since, process = self._busy_since, self._process
             if since is not None and process is not None and self._clock() - since > PATIENCE:
                 process.kill()
+
+
+def _widen(pipe: Any) -> None:
+    """Let a pipe hold a megabyte, where the system can: a table then needs few turns."""
+    try:
+        import fcntl
+
+        fcntl.fcntl(pipe.fileno(), getattr(fcntl, "F_SETPIPE_SZ", 1031), 1 << 20)
+    except (ImportError, OSError, ValueError):
+        pass
 
 
 class Caller:
