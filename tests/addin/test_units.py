@@ -171,6 +171,16 @@ def test_a_range_of_role_and_unit() -> None:
     assert unit_set([["metric"]]).symbol("pressure") == "kPa"
 
 
+def test_differences_and_absolute_pressures_follow_the_unit_of_pressure() -> None:
+    units = unit_set([["pressure", "psig"]])
+    assert units.symbol("loss") == units.symbol("absolute") == "psi"
+    units = unit_set([["pressure", "kPa(a)"], ["loss", "mbar"]])
+    assert units.symbol("loss") == "mbar"
+    assert units.symbol("absolute") == "kPa"
+    assert units.unit("absolute").shift == 0
+    assert unit_set([["set", "metric"], ["pressure", "bar"]]).symbol("loss") == "bar"
+
+
 @pytest.mark.parametrize(
     ("cell", "says"),
     [
