@@ -134,7 +134,7 @@ class Block:
         assert isinstance(working, Longhand)
         places = ", ".join(dict.fromkeys(check.place for check in self.checks[:4]))
         more = f" and {len(self.checks) - 4} more" if len(self.checks) > 4 else ""
-        caption = [row.name, row.summary.rstrip("."), places + more]
+        caption = [row.name, row.summary.rstrip(".").split(",")[0], places + more]
         sheet.fill(self.top, 1, 10, "block")
         sheet.line(self.top, list(caption), "block")
         cells: dict[str, str] = {}

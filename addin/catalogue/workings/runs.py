@@ -6,8 +6,6 @@ of the case begin with c.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-
 from thrustbook.engine.properties import LIQUID
 from thrustbook.engine.runcases import CASE_BOUNDS
 from thrustbook.engine.runflow import START_BOUNDS
@@ -16,6 +14,8 @@ from thrustbook.engine.runshape import COLUMN_BOUNDS
 from ..types import RowStep, Step, TableLonghand
 from .friction import friction_steps
 from .properties import fluid_steps
+from .runforces import CLOSURE, FORCE, PRESSURE, RESULTS, fitting, remarks
+from .runjet import TRIALS, trial, trial_flow, trial_rest
 
 _SINGLE = (
     Step("g", "standard acceleration of free fall", "m/s2", "9.80665"),
@@ -204,236 +204,6 @@ _FLOW = (
     RowStep("e2", "the same behind the node", "head", "{e1}-{hK}+{Hp}*{kp}"),
 )
 
-_PRESSURE = (
-    RowStep(
-        "far1",
-        "1 where section 1 lies beyond a shut valve",
-        "ratio",
-        'IF({v}=0,0,IF({at\'}="start",IF({i}>{v},1,0),IF({i}<={v},1,0)))',
-    ),
-    RowStep(
-        "far2",
-        "1 where section 2 lies beyond it",
-        "ratio",
-        'IF({v}=0,0,IF({at\'}="start",IF({i}>={v},1,0),IF({i}<{v},1,0)))',
-    ),
-    RowStep("zf", "head beyond it: as given, or drained", "head", 'IF({cH2}="",{z},{cH2})'),
-    RowStep(
-        "dp",
-        "surge pressure here",
-        "loss",
-        'IF({kind}="surge",{cdp}+(IF({cdp2}="",{cdp},{cdp2})-{cdp})*{s}/{s.last},0)',
-    ),
-    RowStep("dh", "the same as a head", "head", "IF({dp}=0,0,{dp}/({rho'}*{g}))"),
-    *(
-        RowStep(
-            f"H{i}",
-            f"total head at section {i}, before surge",
-            "head",
-            f'IF({{kind}}="empty",{{z}},IF({{far{i}}}=1,{{zf}},{{E0}}+{{e{i}}}))',
-        )
-        for i in "12"
-    ),
-    RowStep("EGL1", "energy grade line before", "head", "{H1}+{dh}"),
-    RowStep("EGL2", "energy grade line behind", "head", "{H2}+{dh}"),
-    RowStep("HGL1", "hydraulic grade line before", "head", "{EGL1}-{a1}*{V1}^2/(2*{g})"),
-    RowStep("HGL2", "hydraulic grade line behind", "head", "{EGL2}-{alpha}*{V2}^2/(2*{g})"),
-    RowStep("p1", "pressure before: rho g (HGL - z)", "pressure", "{rho'}*{g}*({HGL1}-{z})"),
-    RowStep(
-        "p2",
-        "pressure behind; a jet stands at ambient pressure",
-        "pressure",
-        "{rho'}*{g}*({HGL2}-{z})",
-        last="IF({end'}=\"jet\",0,{rho'}*{g}*({HGL2}-{z}))",
-    ),
-    RowStep("tee", "1 where there is an offtake", "ratio", 'IF(OR({Qo}<>0,{Do}<>""),1,0)'),
-    RowStep(
-        "lo",
-        "length of its direction",
-        "ratio",
-        "IF({tee}=0,1,IF(SUMSQ({ox},{oy},{oz})=0,#VALUE!,SQRT({ox}^2+{oy}^2+{oz}^2)))",
-    ),
-    RowStep("Ao", "area of the offtake", "area", 'IF({tee}=0,0,IF({Do}="",#VALUE!,PI()*{Do}^2/4))'),
-    RowStep("Vo", "velocity in the offtake", "velocity", "IF({tee}=0,0,{Qo'}/{Ao})"),
-    RowStep(
-        "Ho",
-        "total head at the offtake: of the side with the larger flow, less its loss",
-        "head",
-        'IF({kind}="empty",{z},{E0}+IF(ABS({Q2})>ABS({Q1}),{e2},{e1})-{Ko}*{Vo}*ABS({Vo})/(2*{g}))',
-    ),
-    RowStep(
-        "po",
-        "pressure in the offtake",
-        "pressure",
-        "IF({tee}=0,0,{rho'}*{g}*(IF({far1}*{far2}=1,{zf},{Ho})-{Vo}^2/(2*{g})-{z})+{dp})",
-    ),
-)
-
-_FORCE = (
-    RowStep("M1", "push at section 1: (p + beta rho V²) A", "force", "{p1}*{B1}+{b1}*{rho'}*{Q1}*{V1}"),
-    RowStep("M2", "push at section 2", "force", "{p2}*{B2}+{beta}*{rho'}*{Q2}*{V2}"),
-    RowStep("Mo", "push at the offtake", "force", "{po}*{Ao}+{rho'}*{Qo'}*{Vo}"),
-    *(
-        RowStep(
-            f"F{a}",
-            f"thrust on the node, {word}",
-            "force",
-            f"{{M1}}*{{w{a}}}-{{M2}}*{{u{a}}}-{{Mo}}*{{o{a}}}/{{lo}}",
-        )
-        for a, word in (("x", "east"), ("y", "north"), ("z", "up"))
-    ),
-    RowStep("F", "thrust, magnitude", "force", "SQRT({Fx}^2+{Fy}^2+{Fz}^2)"),
-    RowStep("Fh", "thrust, horizontal part", "force", "SQRT({Fx}^2+{Fy}^2)"),
-    RowStep(
-        "bearing",
-        "bearing of the horizontal part, clockwise from north; 0 where it is rounding",
-        "angle",
-        "IF({Fh}<=0.000000000001*(ABS({M1})+ABS({M2})+ABS({Mo})),0,MOD(ATAN2({Fy},{Fx}),2*PI()))",
-    ),
-    RowStep(
-        "drag",
-        "wall drag on the leg: its friction loss as a pressure on the bore",
-        "force",
-        "{rho'}*{g}*{hf}*PI()*{D2}^2/4",
-        last='""',
-    ),
-    RowStep(
-        "W",
-        "weight of the water in the leg; none where it is drained",
-        "force",
-        'IF(AND({far2}=1,{cH2}=""),0,{rho\'}*{g}*PI()*{D2}^2/4*{L})',
-        last='""',
-    ),
-    RowStep(
-        "ring",
-        "pressure difference on the rings of the joints, along the leg",
-        "force",
-        "({p2}-{p1.next})*({B2}-PI()*{D2}^2/4)",
-        last="0",
-    ),
-    RowStep("col", "surge that accelerates the column", "force", "({dp}-{dp.next})*PI()*{D2}^2/4", last="0"),
-    *(
-        RowStep(
-            f"l{a}",
-            f"force on the leg, {a}: drag, rings, and the water's weight across it",
-            "force",
-            f"({{drag}}+{{ring}}+{{W}}*{{uz}})*{{u{a}}}" + ("-{W}" if a == "z" else ""),
-            last="0",
-        )
-        for a in "xyz"
-    ),
-    *(
-        RowStep(
-            f"g{a}",
-            f"outside forces, {a}: offtake, {'weight, ' if a == 'z' else ''}column",
-            "force",
-            f"0-{{Mo}}*{{o{a}}}/{{lo}}-{{col}}*{{u{a}}}" + ("-{W}" if a == "z" else ""),
-            last=f"0-{{Mo}}*{{o{a}}}/{{lo}}",
-        )
-        for a in "xyz"
-    ),
-)
-
-_CLOSURE = (
-    *(
-        Step(
-            f"c{a}",
-            f"closure {a}: forces on nodes and legs, less the balance of the whole run",
-            "force",
-            f"SUM({{F{a}.column}})+SUM({{l{a}.column}})-({{M1.first}}*{{w{a}.first}}-{{M2.last}}*{{u{a}.last}}"
-            f"+SUM({{g{a}.column}}))",
-        )
-        for a in "xyz"
-    ),
-    Step(
-        "big",
-        "largest single force",
-        "force",
-        "MAX(MAX({Fx.column}),0-MIN({Fx.column}),MAX({Fy.column}),0-MIN({Fy.column}),MAX({Fz.column}),"
-        "0-MIN({Fz.column}),MAX({drag.column}),0-MIN({drag.column}),MAX({W.column}),MAX({Mo.column}),"
-        "0-MIN({Mo.column}),ABS({M1.first}),ABS({M2.last}))",
-    ),
-    Step(
-        "closure",
-        "what is left over, against the largest force",
-        "ratio",
-        "SQRT({cx}^2+{cy}^2+{cz}^2)/IF({big}=0,1,{big})",
-    ),
-)
-
-_LOW = "MIN({p1},{p2},IF({tee}=1,{po},{p1}))"
-_REMARKS = (
-    (
-        "n1",
-        "pressure at or below vapour pressure: the column separates, results do not hold",
-        f"AND({{rho'}}>0,{_LOW}+{{pamb}}<={{pv'}})",
-        "",
-    ),
-    (
-        "n2",
-        "pressure below ambient",
-        f"{_LOW}<0-0.000000000001*(ABS({{p1}})+{{rho0}}*{{g}}*(ABS({{H1}})+ABS({{z}})))",
-        "",
-    ),
-    (
-        "n3",
-        "velocity above usual practice",
-        "OR(ABS({V1})>{Vmax},ABS({V2})>{Vmax})",
-        'OR(ABS({V1})>{Vmax},AND({end\'}<>"jet",ABS({V2})>{Vmax}))',
-    ),
-    (
-        "n4",
-        "flow between laminar and turbulent: friction uncertain",
-        'AND({Re}>2300,{Re}<4000,{f}="")',
-        "FALSE",
-    ),
-    ("n5", "flow against the order of the nodes", "OR({Q1}<0,{Q2}<0)", ""),
-    ("n6", "deflection above 90 deg: check the coordinates", "{theta}>PI()/2+0.000000001", ""),
-)
-
-
-def _remarks() -> Iterator[RowStep]:
-    for symbol, text, test, last in _REMARKS:
-        yield RowStep(
-            symbol,
-            f"remark: {text}",
-            "text",
-            f'IF({test},"; {text}","")',
-            last=f'IF({last},"; {text}","")' if last else "",
-        )
-    joined = "&".join(f"{{{symbol}}}" for symbol, *_ in _REMARKS)
-    yield RowStep("note", "remarks", "text", f'IF({joined}="","ok",MID({joined},3,500))')
-
-
-_FITTING = (
-    ("bend", "{theta}>0.000000001", "", ""),
-    (
-        "reducer",
-        "{D1}<>{D2}",
-        'AND({D1}<>{D2},{start}<>"closed")',
-        'AND({D1}<>{D2},{end\'}<>"closed",{end\'}<>"jet")',
-    ),
-    ("tee", "{tee}=1", "", ""),
-    ("pump", "{Hp}<>0", "", ""),
-    ("loss", "AND({K}>0,{theta}<=0.000000001,{D1}={D2})", "", ""),
-    ("cap", "FALSE", '{start}="closed"', '{end\'}="closed"'),
-    ("jet", "FALSE", "FALSE", '{end\'}="jet"'),
-)
-
-
-def _fitting() -> RowStep:
-    def words(at: int) -> str:
-        parts = "&".join(f'IF({row[at] or row[1]},", {row[0]}","")' for row in _FITTING)
-        return f'MID({parts}&IF(({parts})="",", straight",""),3,99)'
-
-    return RowStep("fitting", "what the node is", "text", words(1), first=words(2), last=words(3))
-
-
-_RESULTS = (
-    RowStep("po'", "pressure in the offtake, where there is one", "pressure", 'IF({tee}=1,{po},"")'),
-    RowStep("Vo'", "velocity in the offtake, where there is one", "velocity", 'IF({tee}=1,{Vo},"")'),
-)
-
 _DEFAULTS = {
     "K": "0",
     "Hp": "0",
@@ -453,79 +223,6 @@ _DEFAULTS = {
     "kind": '"operating"',
 }
 
-# Without a flow given, that of a jet is found so that the head at the start is used up. The head left
-# over is nearly linear in Q², so the secant method on Q² has no error but rounding after a few trials.
-TRIALS = 9
-
-
-def _trial(k: int) -> Iterator[RowStep]:
-    re = f"MAX({{Rt{k}}},4000)"
-    yield RowStep(
-        f"Vt{k}", f"trial {k}: velocity", "velocity", f"IF({{A2}}=0,0,({{Qt{k}}}+({{QT}}-{{SQ}}))/{{A2}})"
-    )
-    yield RowStep(
-        f"Rt{k}",
-        f"trial {k}: Reynolds number",
-        "ratio",
-        f"IF({{mu'}}=\"\",0,{{rho'}}*ABS({{Vt{k}}})*{{D2}}/{{mu'}})",
-        last='""',
-    )
-    yield RowStep(
-        f"Xt{k}_0",
-        f"trial {k}: 1/sqrt(f) to start from",
-        "ratio",
-        f"-2*LOG10({{a}}+5.74/{re}^0.9)",
-        last='""',
-    )
-    for n in range(3):
-        old, b = f"{{Xt{k}_{n}}}", f"2.51/{re}"
-        yield RowStep(
-            f"Xt{k}_{n + 1}",
-            f"trial {k}: Newton step {n + 1}",
-            "ratio",
-            f"{old}-({old}+2*LOG10({{a}}+{b}*{old}))/(1+2*({b})/(LN(10)*({{a}}+{b}*{old})))",
-            last='""',
-        )
-    yield RowStep(
-        f"ft{k}",
-        f"trial {k}: friction factor in use",
-        "ratio",
-        f'IF({{f}}<>"",{{f}},IF({{Rt{k}}}=0,0,64/MIN({{Rt{k}}},2300)+MIN(1,MAX(0,({{Rt{k}}}-2300)/1700))'
-        f'*(IF({{method}}="haaland",1/(1.8*LOG10({{a}}^1.11+6.9/{re}))^2,'
-        f'IF({{method}}="swamee-jain",1/{{Xt{k}_0}}^2,1/{{Xt{k}_3}}^2))-64/MIN({{Rt{k}}},2300))))',
-        last='""',
-    )
-    yield RowStep(
-        f"ht{k}",
-        f"trial {k}: head lost at the node and along its leg",
-        "head",
-        f"({{K}}+{{ft{k}}}*{{L}}/{{D2}})*{{Vt{k}}}*ABS({{Vt{k}}})/(2*{{g}})-{{Hp}}*{{kp}}",
-        last=f"{{K}}*{{Vt{k}}}*ABS({{Vt{k}}})/(2*{{g}})-{{Hp}}*{{kp}}",
-    )
-
-
-def _trial_flow(k: int) -> Step:
-    if k == 0:
-        formula = "0"
-    elif k == 1:
-        formula = "IF({Rest0}<0,#NUM!,{A2.last}*SQRT(2*{g}*{Rest0}))"
-    else:
-        a, b = f"{{Qt{k - 1}}}", f"{{Qt{k - 2}}}"
-        ra, rb = f"{{Rest{k - 1}}}", f"{{Rest{k - 2}}}"
-        formula = f"IF({ra}={rb},{a},SQRT({a}^2-{ra}*({a}^2-{b}^2)/({ra}-{rb})))"
-    return Step(f"Qt{k}", f"trial {k}: flow out of the jet", "flow", formula)
-
-
-def _trial_rest(k: int) -> Step:
-    return Step(
-        f"Rest{k}",
-        f"trial {k}: head left over",
-        "head",
-        f"IF({{H'}}<>\"\",{{H'}},IF({{p'}}=\"\",#NUM!,{{z.first}}+{{p'}}/({{rho'}}*{{g}})"
-        f"+{{a1.first}}*(({{Qt{k}}}+{{QT}})/{{A1.first}})^2/(2*{{g}})))-SUM({{ht{k}.column}})"
-        f"-{{z.last}}-{{alpha.last}}*{{Vt{k}.last}}^2/(2*{{g}})",
-    )
-
 
 def run_working(solve: bool, fluid: bool = False) -> TableLonghand:
     """The working of a run.
@@ -534,8 +231,8 @@ def run_working(solve: bool, fluid: bool = False) -> TableLonghand:
     properties of water follow from its temperature.
     """
     trials = range(TRIALS if solve else 0)
-    trial_rows = tuple(step for k in trials for step in _trial(k))
-    trial_single = tuple(step for k in trials for step in (_trial_flow(k), _trial_rest(k)))
+    trial_rows = tuple(step for k in trials for step in trial(k))
+    trial_single = tuple(step for k in trials for step in (trial_flow(k), trial_rest(k)))
     found = Step(
         "Qj",
         "flow of the jet by the last trial" if solve else "flow of a jet: not sought, as the flow was known",
@@ -549,13 +246,13 @@ def run_working(solve: bool, fluid: bool = False) -> TableLonghand:
             *_FLOW[:3],
             *((*_roughness(), *trial_rows) if solve else ()),
             *(s for s in _FLOW[3:] if not (solve and s.symbol in ("eD", "a"))),
-            *_PRESSURE,
-            *_FORCE,
-            *_RESULTS,
-            _fitting(),
-            *_remarks(),
+            *PRESSURE,
+            *FORCE,
+            *RESULTS,
+            fitting(),
+            *remarks(),
         ),
-        single=(*fluid_steps(fluid), *_SINGLE[:split], *trial_single, found, *_SINGLE[split:], *_CLOSURE),
+        single=(*fluid_steps(fluid), *_SINGLE[:split], *trial_single, found, *_SINGLE[split:], *CLOSURE),
         results={"po": "po'", "Vo": "Vo'", "Fv": "Fz"},
         defaults=_DEFAULTS,
         bounds={**COLUMN_BOUNDS, **START_BOUNDS, "T": LIQUID, **{f"c{n}": b for n, b in CASE_BOUNDS.items()}},

@@ -7,14 +7,22 @@ from pathlib import Path
 import openpyxl
 import pytest
 
+from thrustbook.addin.blocks.balance import PORT_COLUMNS
+from thrustbook.addin.blocks.runread import CASE_COLUMNS, NODE_COLUMNS, START_COLUMNS
+from thrustbook.addin.catalogue.types import Column, TableLonghand
+from thrustbook.addin.catalogue.workings.balance import TB_BALANCE
+from thrustbook.addin.catalogue.workings.runs import run_working
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.longhand.detach import Detached
+from thrustbook.addin.longhand.section import unknown_names
 
 from .office import recalculated
 from .tablebook import make
 from .test_detach import same
 
+# The entries of a load case begin with c in the working.
+CASES = tuple(Column(name=f"c{column.name}", role=column.role) for column in CASE_COLUMNS)
 COUNTS = {"runs": 200, "cases": 30, "schedules": 6, "balances": 200, "junctions": 200}
 
 
@@ -54,3 +62,16 @@ def test_libreoffice_agrees_with_the_engine(
             cells = cells if isinstance(cells, tuple) else ((cells,),)
             tables.append([[cell.value for cell in line] for line in cells])
         assert same(*tables) > 0, (sheet, area)
+
+
+@pytest.mark.parametrize(
+    ("working", "columns"),
+    [
+        (run_working(solve, fluid), (*NODE_COLUMNS, *START_COLUMNS, *CASES))
+        for solve in (True, False)
+        for fluid in (True, False)
+    ]
+    + [(TB_BALANCE, (*PORT_COLUMNS, Column(name="rho", role="density")))],
+)
+def test_every_name_in_a_working_is_given(working: TableLonghand, columns: tuple[Column, ...]) -> None:
+    assert unknown_names(working, {column.name for column in columns}) == set()
