@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ast
+import tomllib
 from pathlib import Path
 
 import pytest
@@ -56,3 +57,20 @@ def test_host_libraries_stay_in_their_host_folder(path: Path) -> None:
 def test_no_sham_vectorisation() -> None:
     for path in [*(ROOT / "engine").rglob("*.py"), *(ROOT / "addin").rglob("*.py")]:
         assert "np.vectorize" not in path.read_text(encoding="utf-8"), path
+
+
+def test_every_package_is_listed_for_the_wheel() -> None:
+    settings = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["tool"]["setuptools"]
+    found = {
+        ".".join(["thrustbook", *path.parent.relative_to(ROOT).parts])
+        for top in ("engine", "addin", "workbooks")
+        for path in (ROOT / top).rglob("__init__.py")
+    }
+    assert found == set(settings["packages"])
+
+
+def test_files_stay_short() -> None:
+    for top in ("engine", "addin", "workbooks"):
+        for path in (ROOT / top).rglob("*.py"):
+            lines = len(path.read_text(encoding="utf-8").splitlines())
+            assert lines <= 430, f"{path.relative_to(ROOT)} has {lines} lines"
