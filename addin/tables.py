@@ -58,12 +58,25 @@ def number(cell: Scalar, name: str, role: str, given: Unit, ambient: float = P_A
     return float(cell or 0.0) * given.factor + given.offset + given.shift * ambient  # numpy scalars
 
 
+class LongTable(list[list[Scalar]]):
+    """The rows of a long range whose host had its columns, so that they need not be made again.
+
+    A column is a float array where all its cells are numbers.
+    """
+
+    columns: Sequence[Any]
+
+
 def numbers(
-    cells: Sequence[Scalar], name: str, role: str, given: Unit, ambient: float = P_ATM
+    cells: Sequence[Scalar] | npt.NDArray[np.float64],
+    name: str,
+    role: str,
+    given: Unit,
+    ambient: float = P_ATM,
 ) -> tuple[npt.NDArray[np.float64], dict[int, CellError]]:
     """Read many cells as SI numbers; NaN where empty or unreadable, with the errors by position."""
     errors: dict[int, CellError] = {}
-    if set(map(type, cells)) <= _PLAIN:
+    if isinstance(cells, np.ndarray) or set(map(type, cells)) <= _PLAIN:
         values = np.array(cells, dtype=float)
         values *= given.factor
         if given.shift or given.offset:
@@ -183,7 +196,7 @@ def read_table(
         if entry is None:
             continue
         column, own = entry
-        values = list(map(itemgetter(j), rows))
+        values = rows.columns[j] if isinstance(rows, LongTable) else list(map(itemgetter(j), rows))
         if column.role == "text":
             out.texts[column.name] = _texts(values, out.errors)
             continue
@@ -208,6 +221,8 @@ def _blank_rows(table: Table) -> npt.NDArray[np.bool_]:
 
 
 def _texts(values: Sequence[Scalar], errors: dict[int, CellError]) -> list[str]:
+    if isinstance(values, np.ndarray):
+        values = values.tolist()
     kinds = set(map(type, values))
     if kinds == {str}:
         return list(values)  # type: ignore[arg-type]

@@ -16,7 +16,7 @@ from pathlib import Path
 from typing import Final
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 
 from . import pipe_run
 from .templates import TEMPLATES, shipped

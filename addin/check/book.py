@@ -7,15 +7,15 @@ from collections.abc import Callable, Iterator
 from functools import cached_property
 
 from ..cells import Scalar
-from ..hosts.headless.a1 import to_a1
 from ..hosts.headless.dependency import Reference
 from ..hosts.headless.formulas import Kind, Unreadable, take_apart
 from ..hosts.headless.host import Functions, Host
 from ..hosts.headless.model import Model, Node
-from ..hosts.headless.package import Package
 from ..hosts.headless.results import Results
 from ..hosts.headless.settle import Settlement
-from ..hosts.headless.sheetxml import stored_values
+from ..xlsx.a1 import to_a1
+from ..xlsx.package import Package
+from ..xlsx.sheetxml import stored_values
 from .calls import Call, Recorder, read_calls
 from .labels import Surroundings
 from .relative import moving, relative_form
@@ -28,7 +28,7 @@ Place = tuple[int, int, int]
 class Book:
     """One evaluated workbook. Nothing in it is ever written.
 
-    Raises :class:`~thrustbook.addin.hosts.headless.refusals.Refusal` when the embedded
+    Raises :class:`~thrustbook.addin.xlsx.refusals.Refusal` when the embedded
     evaluator gives up on the workbook.
     """
 

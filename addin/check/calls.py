@@ -10,7 +10,6 @@ from typing import TYPE_CHECKING, Any
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Arg, Row
 from ..cells import Cell, Refused
-from ..hosts.headless.a1 import MAX_COLUMN, MAX_ROW
 from ..hosts.headless.dependency import Reference
 from ..hosts.headless.formulas import Kind, Part, Unreadable, take_apart
 from ..hosts.headless.host import Functions
@@ -19,6 +18,7 @@ from ..leading import Wanted, read_units, wanted
 from ..longhand.calls import Call as Written
 from ..longhand.calls import Items, NotWorked, all_calls, stripped, tree
 from ..units import UnitError, UnitSet
+from ..xlsx.a1 import MAX_COLUMN, MAX_ROW
 
 if TYPE_CHECKING:
     from .book import Book

@@ -6,7 +6,7 @@ import hashlib
 from collections.abc import Iterable, Iterator
 from typing import NamedTuple
 
-from ..hosts.headless.a1 import to_a1
+from ..xlsx.a1 import to_a1
 from .types import Finding, Severity
 
 

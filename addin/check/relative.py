@@ -5,8 +5,8 @@ from __future__ import annotations
 import re
 
 from ..hosts.headless.formulas import Kind, Unreadable, call_name, take_apart
-from ..hosts.headless.formulashift import MovableFormula
 from ..hosts.headless.model import Node
+from ..xlsx.formulashift import MovableFormula
 
 # Any one cell far from every edge serves: formulas are compared after they are moved there.
 _ROW, _COL = 524_288, 8_192

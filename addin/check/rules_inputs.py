@@ -8,9 +8,9 @@ from dataclasses import dataclass
 
 from ..cells import Cell, Refused, Scalar
 from ..figures import figure
-from ..hosts.headless.a1 import to_a1
 from ..tables import find_column, heading, number
 from ..units import UnitError, UnitSet, unit
+from ..xlsx.a1 import to_a1
 from .book import Book, Place
 from .calls import Call, Given
 from .gather import figures

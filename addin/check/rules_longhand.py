@@ -13,11 +13,11 @@ from .. import dispatch
 from ..catalogue.types import Longhand, Row
 from ..cells import Cell, CellError, Grid, Refused, Scalar
 from ..figures import figure
-from ..hosts.headless.a1 import column_letters
 from ..hosts.headless.plainvalues import ROW, evaluate_rows
 from ..longhand.symbols import default_of, fill
 from ..tables import is_blank, number
 from ..units import UnitError, UnitSet
+from ..xlsx.a1 import column_letters
 from .book import Book
 from .calls import Call
 from .gather import Remark, figures, joined

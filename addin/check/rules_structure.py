@@ -6,9 +6,9 @@ import re
 from collections.abc import Iterator, Sequence
 from typing import NamedTuple
 
-from ..hosts.headless.a1 import MAX_COLUMN, column_letters
 from ..hosts.headless.dependency import Reference
-from ..hosts.headless.sheetscan import attributes
+from ..xlsx.a1 import MAX_COLUMN, column_letters
+from ..xlsx.sheetscan import attributes
 from .book import Book
 from .gather import figures
 from .types import Finding, Rule, Severity

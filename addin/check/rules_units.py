@@ -9,9 +9,9 @@ from typing import TypeAlias
 
 from ..catalogue.types import Column
 from ..cells import Cell, Refused, Scalar
-from ..hosts.headless.a1 import to_a1
 from ..tables import find_column, heading, is_blank
 from ..units import ROLES, Unit, UnitError, unit
+from ..xlsx.a1 import to_a1
 from .book import Book, Place
 from .calls import Call, Given
 from .gather import Remark, joined

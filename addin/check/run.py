@@ -7,8 +7,8 @@ from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
-from ..hosts.headless.package import Package
 from ..tools import catalogue_version, engine_version, product_version
+from ..xlsx.package import Package
 from .accept import Accepted, Entry, match
 from .book import Book, Progress
 from .rules import RULES
@@ -71,7 +71,7 @@ def find(
 ) -> tuple[Book, list[Finding]]:
     """Let every rule look; findings worst first, then in the order of the workbook.
 
-    Raises :class:`~thrustbook.addin.hosts.headless.refusals.Refusal` when the workbook
+    Raises :class:`~thrustbook.addin.xlsx.refusals.Refusal` when the workbook
     cannot be evaluated.
     """
     book = Book(package, progress)

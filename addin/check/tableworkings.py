@@ -8,12 +8,12 @@ from typing import TYPE_CHECKING
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Row, TableLonghand
 from ..cells import CellError
-from ..hosts.headless.package import Package
 from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
-from ..hosts.headless.refusals import Refusal
 from ..longhand.book import Book as Workings
 from ..longhand.parts import Addition
 from ..longhand.source import Source, TbCell
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .gather import Remark
 
 if TYPE_CHECKING:

@@ -10,8 +10,8 @@ from pathlib import Path
 from ..check import report as reports
 from ..check.accept import Accepted, BadList, written
 from ..check.run import Report, check
-from ..hosts.headless.package import Package
-from ..hosts.headless.refusals import Refusal
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .progress import Progress
 
 _EXIT = "exit status: 0 no finding, or notes alone; 1 warnings; 2 refused, nothing was checked; 3 errors"

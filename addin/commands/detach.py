@@ -7,9 +7,9 @@ import sys
 import time
 from pathlib import Path
 
-from ..hosts.headless.package import Package
-from ..hosts.headless.refusals import Refusal
 from ..longhand.detach import Detached
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .progress import Progress
 
 LIST = 20

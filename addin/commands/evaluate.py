@@ -15,8 +15,8 @@ from typing import Any
 from .. import figures
 from ..cells import CellError
 from ..hosts.headless.evaluate import Evaluation, Failed, Kept, Table, evaluate_workbook
-from ..hosts.headless.package import Package
-from ..hosts.headless.refusals import Refusal
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .progress import Progress
 
 LIST = 20

@@ -7,10 +7,10 @@ import sys
 import time
 from pathlib import Path
 
-from ..hosts.headless.package import Package
-from ..hosts.headless.refusals import Refusal
 from ..longhand.make import Made
 from ..longhand.summary import Entry
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .progress import Progress
 
 LIST = 20

@@ -13,10 +13,10 @@ from ..blocks.schedule import Schedule
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Longhand, NoLonghand, Row
 from ..cells import Refused
-from ..hosts.headless.a1 import to_a1
-from ..hosts.headless.refusals import Refusal
 from ..leading import heading_row, wanted
 from ..units import UnitError
+from ..xlsx.a1 import to_a1
+from ..xlsx.refusals import Refusal
 from .arguments import Argument, Shape, in_group, resolve, same_datum, taken
 from .block import FIRST as FIRST_BLOCK
 from .block import Block, Check, new_block_sheet

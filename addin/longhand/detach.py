@@ -9,10 +9,10 @@ from typing import NamedTuple
 from lxml import etree
 
 from ..cells import CellError, Scalar
-from ..hosts.headless.opc import MAIN, parse
-from ..hosts.headless.package import Package
 from ..hosts.headless.plainvalues import evaluate_sheets
-from ..hosts.headless.sheetxml import set_formulas, store
+from ..xlsx.opc import MAIN, parse
+from ..xlsx.package import Package
+from ..xlsx.sheetxml import set_formulas, store
 from .calls import NotWorked
 from .detachtext import constant
 from .make import Made, Progress

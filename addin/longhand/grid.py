@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import NamedTuple, TypeAlias
 
-from ..hosts.headless.a1 import column_letters
+from ..xlsx.a1 import column_letters
 
 
 class Formula(NamedTuple):

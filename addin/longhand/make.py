@@ -7,8 +7,8 @@ import gc
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
-from ..hosts.headless.package import Package
-from ..hosts.headless.refusals import Refusal
+from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from .book import Book
 from .parts import Addition, Parts
 from .source import Source

@@ -8,8 +8,8 @@ from typing import Final, NamedTuple
 
 from lxml import etree
 
-from ..hosts.headless.opc import MAIN, RELATION_ID, parse
-from ..hosts.headless.package import Package
+from ..xlsx.opc import MAIN, RELATION_ID, parse
+from ..xlsx.package import Package
 from .grid import Sheet, fixed, quoted_sheet
 from .sheetpart import Values, sheet_xml
 from .styles import Formats, with_formats
@@ -175,7 +175,7 @@ def print_areas(sheet: Sheet) -> str:
 
 def print_titles(sheet: Sheet) -> str:
     """The rows and columns of a sheet that are repeated on every page, as a defined name holds them."""
-    from ..hosts.headless.a1 import column_letters
+    from ..xlsx.a1 import column_letters
 
     name = quoted_sheet(sheet.name)
     found = []

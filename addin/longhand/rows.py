@@ -8,7 +8,7 @@ from typing import Final
 
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
-from ..hosts.headless.a1 import column_letters
+from ..xlsx.a1 import column_letters
 from .convert import ANGLE_SCALE, P_ATM, PLAIN, Conversion, agreement, from_si, in_use, not_given, to_si
 from .grid import Content, Formula, Link, Sheet, fixed, local
 from .sheetpart import SCALE

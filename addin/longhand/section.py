@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import Final
 
 from ..catalogue.types import Result, RowStep, TableLonghand
-from ..hosts.headless.a1 import column_letters
+from ..xlsx.a1 import column_letters
 from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, to_si
 from .grid import Formula, Link, fixed, local
 from .placed import FORMULA_TO, SUFFIX, TEXT_FROM, TEXT_TO, Entry, Placed, TableLine

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from typing import Any
 
-from ..hosts.headless.a1 import column_letters
-from ..hosts.headless.cellvalues import encode
-from ..hosts.headless.xmltext import escape
+from ..xlsx.a1 import column_letters
+from ..xlsx.cellvalues import encode
+from ..xlsx.xmltext import escape
 from .grid import Formula, Sheet, local
 
 _MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"

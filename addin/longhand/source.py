@@ -9,12 +9,12 @@ from functools import cached_property
 from typing import Any, NamedTuple
 
 from ..cells import CellError, Scalar
-from ..hosts.headless.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
 from ..hosts.headless.formulas import Kind, Part, Unreadable, call_name, functions, take_apart
 from ..hosts.headless.names import Names, split_sheet
-from ..hosts.headless.package import Package
-from ..hosts.headless.sheetxml import FormulaCell, formula_cells, stored_values
 from ..hosts.headless.tablerefs import Tables
+from ..xlsx.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
+from ..xlsx.package import Package
+from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
 from .calls import Call, Items, NotWorked, all_calls, render, tree
 from .grid import quoted_sheet
 

@@ -7,7 +7,7 @@ from typing import Final, NamedTuple
 
 from lxml import etree
 
-from ..hosts.headless.opc import MAIN, parse
+from ..xlsx.opc import MAIN, parse
 
 
 class Style(NamedTuple):

@@ -21,7 +21,7 @@ from typing import Final
 import openpyxl
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 
 MOST_SECONDS: Final = 60.0
 MOST_MEMORY: Final = 2e9

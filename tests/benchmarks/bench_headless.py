@@ -28,7 +28,7 @@ import openpyxl
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.hosts.headless.host import Functions, Host
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 
 HEADINGS: Final = ("name", "fitting", "rho", "D1", "p1", "Q", "theta", "K")
 NATIVE: Final = (  # the bend of TB_BEND in metric units, long-hand, a cell each

@@ -15,9 +15,9 @@ import openpyxl
 from openpyxl.workbook.defined_name import DefinedName
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.longhand.make import Made
+from thrustbook.addin.xlsx.package import Package
 
 
 def make(path: Path, cells: int) -> None:

@@ -11,7 +11,7 @@ from typing import Final
 
 from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.addin.catalogue.types import Longhand
-from thrustbook.addin.hosts.headless.a1 import to_a1
+from thrustbook.addin.xlsx.a1 import to_a1
 
 _MAIN: Final = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 _REL: Final = "http://schemas.openxmlformats.org/officeDocument/2006/relationships"

@@ -8,7 +8,7 @@ import openpyxl
 import pytest
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 from thrustbook.workbooks import build
 from thrustbook.workbooks.templates import TEMPLATES as NAMES
 from thrustbook.workbooks.templates import shipped

@@ -14,15 +14,15 @@ from typing import Any
 import numpy as np
 
 from ...cells import CellError, ErrorKind, Grid, Scalar
-from ..headless.a1 import to_a1
+from ...xlsx.a1 import to_a1
+from ...xlsx.package import Package
+from ...xlsx.sheetxml import set_formulas, store, stored_values
 from ..headless.dependency import Reference
 from ..headless.elsewhere import elsewhere
 from ..headless.evaluate import Computed, Elsewhere, Evaluation, Failed, Kept, Progress, Table
 from ..headless.formulas import Kind, Part, call_name, join, take_apart
 from ..headless.host import Functions
 from ..headless.model import Model, Node
-from ..headless.package import Package
-from ..headless.sheetxml import set_formulas, store, stored_values
 from . import soffice
 from .office import wire
 

@@ -18,7 +18,7 @@ from typing import Final, NamedTuple
 import openpyxl
 
 from ...tools import product_version
-from ..headless.refusals import Refusal
+from ...xlsx.refusals import Refusal
 from . import soffice
 from .extension import IDENTIFIER, archive, parts
 

@@ -6,8 +6,8 @@ import os
 import re
 from pathlib import Path
 
-from ..headless.package import Package
-from ..headless.refusals import Refusal
+from ...xlsx.package import Package
+from ...xlsx.refusals import Refusal
 from .office.settings import FUNCTIONS
 
 _FULL = re.compile(

@@ -15,7 +15,7 @@ from pathlib import Path
 from typing import Any
 from urllib.parse import quote
 
-from ..headless.refusals import Refusal
+from ...xlsx.refusals import Refusal
 from .extension import parts, unpack_to
 from .office.settings import BATCH
 

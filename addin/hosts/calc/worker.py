@@ -10,6 +10,7 @@ import contextlib
 import gc
 import os
 import sys
+from array import array
 from collections.abc import Sequence
 from functools import cache, lru_cache
 from pathlib import Path
@@ -21,6 +22,7 @@ from ... import dispatch
 from ...catalogue.registry import CATALOGUE
 from ...catalogue.types import Row
 from ...cells import Cell, CellError, ErrorKind, Grid, Range
+from ...tables import LongTable
 from .office import wire
 from .slots import Slot, slots, zero_for_empty
 
@@ -28,19 +30,23 @@ _KINDS: dict[int, ErrorKind] = {code: kind for kind, code in wire.ERROR_CODES.it
 _ERROR = {kind: wire.error_number(code) for kind, code in wire.ERROR_CODES.items()}
 
 
+_LONG = 4000
+"""Bytes of a range from which on it is no unit table or the like, which comes with every call."""
+
+
 @lru_cache(maxsize=64)
-def _small_range(data: bytes) -> Range:
-    return _rows(data)
+def _short_range(data: bytes) -> Range:
+    return list(map(list, zip(*wire.read_columns(data, None), strict=True)))
 
 
 def _read_range(data: bytes) -> Range:
-    """Read a range; unit tables and the like, which come with every call, are read once."""
-    return _small_range(data) if len(data) < 4000 else _rows(data)
-
-
-def _rows(data: bytes) -> Range:
+    if len(data) < _LONG:
+        return _short_range(data)
+    columns = wire.read_columns(data, None)
     # Rows are tuples: nobody changes them, and a hundred thousand lists would cost more than the sums.
-    return list(zip(*wire.read_columns(data), strict=True))  # type: ignore[arg-type]
+    table = LongTable(zip(*columns, strict=True))  # type: ignore[arg-type]
+    table.columns = [np.frombuffer(c) if isinstance(c, array) else c for c in columns]
+    return table
 
 
 def arguments(name: str, cells: Sequence[Any]) -> list[Cell]:
@@ -57,6 +63,8 @@ def arguments(name: str, cells: Sequence[Any]) -> list[Cell]:
     for i, cell in enumerate(out):
         if type(cell) is float and cell != cell:
             out[i] = CellError(_KINDS.get(wire.error_code(cell), "VALUE"))
+    if row is None or row.kind != "table":
+        out = [list(cell) if type(cell) is LongTable else cell for cell in out]
     if row is not None:
         for i, slot in enumerate(_slots(row)[: len(out) - first], first):
             if out[i] == 0.0 and type(out[i]) is float and slot is Slot.ZERO_IS_EMPTY:

@@ -17,7 +17,7 @@ import numpy as np
 from formualizer import Workbook
 
 from ...cells import CellError, Grid
-from .a1 import to_a1
+from ...xlsx.a1 import to_a1
 from .host import Host, arguments, as_grid, engine_rows, engine_value, storable
 
 SPILL_LIMIT = 10_000  # cells that the evaluator is willing to spill

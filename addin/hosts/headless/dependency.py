@@ -13,7 +13,7 @@ from typing import NamedTuple
 import numpy as np
 import numpy.typing as npt
 
-from .a1 import MAX_ROW
+from ...xlsx.a1 import MAX_ROW
 
 _LEAVES = 1 << MAX_ROW.bit_length()  # leaves of the tree over rows; row r is leaf _LEAVES + r
 

@@ -11,12 +11,12 @@ from typing import NamedTuple
 
 from ...cells import CellError, Grid, Scalar
 from ...dispatch import headings
-from .a1 import to_a1
+from ...xlsx.a1 import to_a1
+from ...xlsx.package import Package
 from .areas import OUTSIDE, Area
 from .elsewhere import elsewhere
 from .host import Functions, Host
 from .model import Model, Node
-from .package import Package
 from .reasons import reason
 from .results import Results
 from .settle import Settlement

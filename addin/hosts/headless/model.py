@@ -8,7 +8,9 @@ from dataclasses import dataclass, field
 
 from formualizer import Workbook
 
-from .a1 import MAX_COLUMN, MAX_ROW, column_number, to_a1
+from ...xlsx.a1 import MAX_COLUMN, MAX_ROW, column_number, to_a1
+from ...xlsx.package import NameRef, Package
+from ...xlsx.sheetxml import FormulaCell, formula_cells
 from .areas import AREA, CALL, Area, Extent
 from .dependency import Graph, Reference
 from .formulas import (
@@ -25,8 +27,6 @@ from .formulas import (
 )
 from .host import Functions
 from .names import Names, split_sheet
-from .package import NameRef, Package
-from .sheetxml import FormulaCell, formula_cells
 from .tablerefs import Tables, sheet_range
 
 _A1 = re.compile(

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 
+from ...xlsx.formulashift import MovableFormula
+from ...xlsx.package import NameRef
 from .formulas import Kind, Part, Unreadable, calls, join, take_apart
-from .formulashift import MovableFormula
-from .package import NameRef
 
 _DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
 

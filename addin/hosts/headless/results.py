@@ -7,11 +7,11 @@ from collections.abc import Iterable
 import numpy as np
 
 from ...cells import Grid, Scalar
+from ...xlsx.sheetxml import store
 from .areas import Extent
 from .host import error_word
 from .model import Node
 from .settle import Settlement, value_of
-from .sheetxml import store
 
 
 class _Sheet:

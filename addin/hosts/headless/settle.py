@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 from ...cells import CellError, Scalar
-from .a1 import MAX_COLUMN, MAX_ROW, to_a1
+from ...xlsx.a1 import MAX_COLUMN, MAX_ROW, to_a1
+from ...xlsx.refusals import Refusal
+from ...xlsx.sheetxml import stored_values
 from .areas import Area
 from .dependency import Reference
 from .host import Host, error_word, scalar
 from .model import Model, Node
-from .refusals import Refusal
 from .run import Run, Stopped
 from .shadow import evaluation_copy
-from .sheetxml import stored_values
 from .tablerefs import sheet_range
 from .uncomputable import Judge
 

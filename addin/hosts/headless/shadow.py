@@ -10,8 +10,8 @@ from collections.abc import Mapping
 import numpy as np
 
 from ...cells import CellError, Grid, Scalar
+from ...xlsx.sheetxml import set_formulas, store
 from .model import Model, Node
-from .sheetxml import set_formulas, store
 
 
 def literal(value: Scalar) -> str:

@@ -9,8 +9,8 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable
 
-from .a1 import range_from_a1, to_a1
-from .package import TableRef
+from ...xlsx.a1 import range_from_a1, to_a1
+from ...xlsx.package import TableRef
 
 Rect = tuple[int, int, int, int]
 

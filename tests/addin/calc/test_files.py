@@ -20,10 +20,10 @@ from thrustbook.addin import cli
 from thrustbook.addin.cells import CellError, Scalar
 from thrustbook.addin.hosts.calc.evaluate import evaluate_workbook as evaluate_in_calc
 from thrustbook.addin.hosts.calc.office import wire
-from thrustbook.addin.hosts.headless.a1 import to_a1
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
-from thrustbook.addin.hosts.headless.sheetxml import stored_values
+from thrustbook.addin.xlsx.a1 import to_a1
+from thrustbook.addin.xlsx.package import Package
+from thrustbook.addin.xlsx.sheetxml import stored_values
 from thrustbook.workbooks.templates import shipped
 
 from .excelfile import as_saved_by_excel, as_spilling
@@ -335,7 +335,7 @@ def test_no_office_is_said_clearly(
 
 
 def test_office_that_does_not_answer_is_stopped(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    from thrustbook.addin.hosts.headless.refusals import Refusal
+    from thrustbook.addin.xlsx.refusals import Refusal
 
     program = tmp_path / "soffice"
     program.write_text("#!/bin/sh\nsleep 600\n")

@@ -20,7 +20,7 @@ from thrustbook.addin.cells import CellError
 from thrustbook.addin.formula_text import read_call
 from thrustbook.addin.hosts.calc.describe import described
 from thrustbook.addin.hosts.calc.office import wire
-from thrustbook.addin.hosts.headless.a1 import to_a1
+from thrustbook.addin.xlsx.a1 import to_a1
 
 from .office import Office
 

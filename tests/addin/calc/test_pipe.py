@@ -21,6 +21,7 @@ from thrustbook.addin import dispatch
 from thrustbook.addin.cells import ERROR_TEXT, CellError
 from thrustbook.addin.hosts.calc import worker
 from thrustbook.addin.hosts.calc.office import link, wire
+from thrustbook.addin.tables import LongTable
 
 TEXT = st.text(st.characters(exclude_characters="\0"), max_size=20)
 SCALAR = st.one_of(st.floats(allow_nan=False), TEXT, st.none())
@@ -87,6 +88,28 @@ def test_half_a_frame_is_the_end() -> None:
         wire.receive(io.BytesIO(b"\x05\x00\x00\x00abc"))
     with pytest.raises(wire.Closed):
         wire.receive(io.BytesIO(b"\xff\xff\xff\xff" + bytes(20)))
+
+
+def test_a_long_table_gives_what_a_short_one_gives() -> None:
+    """Empty cells of a range arrive as empty text, and a long range is read another way."""
+    kinds = (("bend", 300.0, 90.0), ("closed", 200.0, ""), ("", "", ""))
+    headings = (("fitting", "D1", "theta", "rho", "p1", "Q"),)
+    rows = tuple((*line, 1000.0, 400.0, 100.0 if line[0] == "bend" else "") for line in kinds)
+    rows = (*rows[:2], ("", "", "", "", "", ""))
+
+    def told(table: Any) -> list[Any]:
+        request = wire.pack_call("TB_SCHEDULE", ("Fx,Fy,F,note", "metric", headings, table))
+        found, _ = wire.unpack(worker.answer(request), 0, wire.read_rows)
+        return [tuple(found[i]) for i in range(len(table))]
+
+    short = told(rows)
+    assert short[0][2] > 0
+    assert short[2] == ("", "", "", "")
+    many = told(rows * 200)
+    assert many == short * 200
+    assert type(worker._read_range(wire.pack(rows * 200))) is LongTable
+    areas = worker.answer(wire.pack_call("TB_AREA", ("SI", tuple((1.0,) for _ in range(2000)))))
+    assert wire.unpack(areas, 0, wire.read_rows)[0] == ((math.pi / 4,),) * 2000
 
 
 def test_zeros_that_stand_for_empty_cells() -> None:

@@ -13,8 +13,8 @@ from openpyxl.worksheet.worksheet import Worksheet
 from thrustbook.addin.check.run import find
 from thrustbook.addin.check.types import Finding
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
-from thrustbook.addin.hosts.headless.sheetxml import Scalar, store
+from thrustbook.addin.xlsx.package import Package
+from thrustbook.addin.xlsx.sheetxml import Scalar, store
 
 FIRST, LAST = 5, 10
 """Rows of the table of bends."""

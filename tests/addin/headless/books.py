@@ -18,7 +18,7 @@ from openpyxl.worksheet.table import Table
 from thrustbook.addin.cells import CellError
 from thrustbook.addin.hosts.headless.evaluate import Evaluation, evaluate_workbook
 from thrustbook.addin.hosts.headless.host import Functions
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 
 
 def make(

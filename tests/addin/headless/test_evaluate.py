@@ -12,8 +12,8 @@ import pytest
 
 from thrustbook.addin.hosts.headless.host import Functions
 from thrustbook.addin.hosts.headless.model import Model
-from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.hosts.headless.run import reader
+from thrustbook.addin.xlsx.package import Package
 
 from .books import FUNCTIONS, evaluate, make, values, with_values
 

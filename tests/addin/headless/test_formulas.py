@@ -16,8 +16,8 @@ from thrustbook.addin.hosts.headless.formulas import (
     rewrite,
     take_apart,
 )
-from thrustbook.addin.hosts.headless.package import TableRef
 from thrustbook.addin.hosts.headless.tablerefs import Tables
+from thrustbook.addin.xlsx.package import TableRef
 
 GAP = f'"{OMITTED}"'
 

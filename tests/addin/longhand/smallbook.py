@@ -9,7 +9,7 @@ from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
+from thrustbook.addin.xlsx.package import Package
 
 SHEET = "Calc's sheet"
 UNITS = (("set", "metric"), ("pressure", "bar"), ("flow", "m³/h"), ("force", "kN"), ("diameter", "mm"))

@@ -14,7 +14,7 @@ from thrustbook.addin.blocks.schedule import COLUMN_OF
 from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.addin.cells import CellError
 from thrustbook.addin.dispatch import call
-from thrustbook.addin.hosts.headless.a1 import column_letters
+from thrustbook.addin.xlsx.a1 import column_letters
 
 from .samples import sample
 

@@ -10,11 +10,11 @@ import openpyxl
 import pytest
 
 from thrustbook.addin.cells import Scalar
-from thrustbook.addin.hosts.headless.a1 import from_a1
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
-from thrustbook.addin.hosts.headless.sheetxml import store
 from thrustbook.addin.longhand.detach import Detached
+from thrustbook.addin.xlsx.a1 import from_a1
+from thrustbook.addin.xlsx.package import Package
+from thrustbook.addin.xlsx.sheetxml import store
 
 from .office import recalculated
 

@@ -10,8 +10,8 @@ from pathlib import Path
 
 import pytest
 
-from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.longhand.make import Made
+from thrustbook.addin.xlsx.package import Package
 
 from .office import recalculated
 from .test_detach import TEMPLATES

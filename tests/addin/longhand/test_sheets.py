@@ -10,10 +10,10 @@ import openpyxl
 import pytest
 
 from thrustbook.addin.cli import main
-from thrustbook.addin.hosts.headless.package import Package
-from thrustbook.addin.hosts.headless.refusals import Refusal
 from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.longhand.make import Made
+from thrustbook.addin.xlsx.package import Package
+from thrustbook.addin.xlsx.refusals import Refusal
 
 from .office import recalculated
 from .smallbook import SHEET, UNITS, make

@@ -13,9 +13,9 @@ from thrustbook.addin.catalogue.types import Column, TableLonghand
 from thrustbook.addin.catalogue.workings.balance import TB_BALANCE
 from thrustbook.addin.catalogue.workings.runs import run_working
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
-from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.longhand.section import unknown_names
+from thrustbook.addin.xlsx.package import Package
 
 from .office import recalculated
 from .tablebook import make

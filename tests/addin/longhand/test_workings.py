@@ -13,13 +13,13 @@ from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.addin.catalogue.types import Longhand, Row
 from thrustbook.addin.cells import Cell, CellError
 from thrustbook.addin.dispatch import call
-from thrustbook.addin.hosts.headless.package import Package
 from thrustbook.addin.hosts.headless.plainvalues import evaluate_sheets
 from thrustbook.addin.longhand.convert import Conversion
 from thrustbook.addin.longhand.grid import Sheet
 from thrustbook.addin.longhand.parts import Addition
 from thrustbook.addin.longhand.rows import Group, Line, RowSheet
 from thrustbook.addin.units import named_set
+from thrustbook.addin.xlsx.package import Package
 
 from .office import recalculated
 from .samples import samples

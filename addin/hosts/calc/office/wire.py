@@ -178,8 +178,12 @@ def unpack(data: bytes, at: int, grid: Callable[[bytes], Any]) -> tuple[Any, int
     return grid(data[at:end]), end
 
 
-def read_columns(data: bytes) -> list[Sequence[Any]]:
-    """Read the columns of a range."""
+def read_columns(data: bytes, blank: Any = "") -> list[Sequence[Any]]:
+    """Read the columns of a range; numbers alone come as an array.
+
+    ``blank`` is what an empty text among numbers is read as: the office hands an empty
+    cell of a range over as one.
+    """
     _, _, height, width = _GRID.unpack_from(data)
     at = _GRID.size
     columns: list[Sequence[Any]] = []
@@ -203,7 +207,7 @@ def read_columns(data: bytes) -> list[Sequence[Any]]:
         follow = iter(texts)
         columns.append(
             [
-                n if m == 0 else next(follow) if m == 1 else None if m == 2 else bool(n)
+                n if m == 0 else (next(follow) or blank) if m == 1 else None if m == 2 else bool(n)
                 for n, m in zip(numbers, mask)
             ]
         )
@@ -215,12 +219,12 @@ def read_rows(data: bytes) -> tuple[tuple[Any, ...], ...]:
     return tuple(zip(*read_columns(data)))
 
 
-def _read_doubles(data: bytes, at: int, count: int) -> list[float]:
+def _read_doubles(data: bytes, at: int, count: int) -> array[float]:
     numbers = array("d")
     numbers.frombytes(data[at : at + 8 * count])
     if _SWAP:
         numbers.byteswap()
-    return numbers.tolist()
+    return numbers
 
 
 def _read_texts(data: bytes, at: int, count: int) -> tuple[list[str], int]:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Collection, Iterator, Mapping, Sequence
 from typing import NamedTuple
 
-from ...cells import Scalar
+from ..cells import Scalar
 from .a1 import range_from_a1
 from .cellvalues import decode
 from .formulashift import MovableFormula

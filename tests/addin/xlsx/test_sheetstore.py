@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from lxml import etree
 
 from thrustbook.addin.cells import ERROR_TEXT, CellError, ErrorKind, Scalar
-from thrustbook.addin.hosts.headless.sheetxml import (
+from thrustbook.addin.xlsx.sheetxml import (
     formula_cells,
     set_formulas,
     store,
@@ -243,7 +243,7 @@ def test_large_block_and_single_cells_together() -> None:
 BIG = """
 import resource, sys
 import numpy as np
-from thrustbook.addin.hosts.headless.sheetxml import formula_cells, store
+from thrustbook.addin.xlsx.sheetxml import formula_cells, store
 rows, cols = 100_000, 12
 head = '<worksheet xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main"><sheetData>'
 cell = '<row r="2"><c r="A2" cm="1"><f t="array" ref="A2">TB_X()</f></c></row>'

@@ -6,7 +6,7 @@ import math
 import re
 from collections.abc import Callable, Mapping, Sequence
 
-from ...cells import Grid, Scalar
+from ..cells import Grid, Scalar
 from .a1 import column_number
 from .cellvalues import encode, value_element
 from .sheetedit import Editor, Extent, Place, bounds, range_text, with_ref, with_type

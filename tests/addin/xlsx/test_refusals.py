@@ -8,8 +8,8 @@ from pathlib import Path
 
 import pytest
 
-from thrustbook.addin.hosts.headless import package as package_module
-from thrustbook.addin.hosts.headless.package import Package, Refusal
+from thrustbook.addin.xlsx import package as package_module
+from thrustbook.addin.xlsx.package import Package, Refusal
 
 from . import richbook
 

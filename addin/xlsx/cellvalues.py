@@ -8,7 +8,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from ...cells import ERROR_KIND, CellError, Scalar
+from ..cells import ERROR_KIND, CellError, Scalar
 from .sheetscan import CellMark, Frame, refused
 from .xmltext import escape, unescape
 

@@ -16,8 +16,8 @@ import pytest
 
 from tests import libreoffice
 from thrustbook.addin.cells import Scalar
-from thrustbook.addin.hosts.headless.package import NameRef, Package, Refusal, SheetRef, TableRef
-from thrustbook.addin.hosts.headless.sheetxml import store, stored_values
+from thrustbook.addin.xlsx.package import NameRef, Package, Refusal, SheetRef, TableRef
+from thrustbook.addin.xlsx.sheetxml import store, stored_values
 
 from . import richbook
 

@@ -6,14 +6,14 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from thrustbook.addin.hosts.headless.a1 import (
+from thrustbook.addin.xlsx.a1 import (
     column_letters,
     column_number,
     from_a1,
     range_from_a1,
     to_a1,
 )
-from thrustbook.addin.hosts.headless.formulashift import MovableFormula
+from thrustbook.addin.xlsx.formulashift import MovableFormula
 
 
 @given(st.integers(1, 1_048_576), st.integers(1, 16_384), st.booleans())

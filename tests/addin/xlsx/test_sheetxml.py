@@ -9,12 +9,12 @@ from hypothesis import strategies as st
 from lxml import etree
 
 from thrustbook.addin.cells import CellError, Scalar
-from thrustbook.addin.hosts.headless.a1 import (
+from thrustbook.addin.xlsx.a1 import (
     from_a1,
     to_a1,
 )
-from thrustbook.addin.hosts.headless.refusals import Refusal
-from thrustbook.addin.hosts.headless.sheetxml import (
+from thrustbook.addin.xlsx.refusals import Refusal
+from thrustbook.addin.xlsx.sheetxml import (
     FormulaCell,
     formula_cells,
     set_formulas,
