@@ -13,7 +13,8 @@ from typing import Any
 
 import numpy as np
 
-from ...cells import CellError, ErrorKind, Grid, Scalar
+from ...cells import Cell, CellError, ErrorKind, Grid, Scalar
+from ...dispatch import headings
 from ...xlsx.a1 import to_a1
 from ...xlsx.package import Package
 from ...xlsx.sheetxml import set_formulas, store, stored_values
@@ -30,6 +31,8 @@ TIMEOUT = 600.0
 _KINDS: dict[int, ErrorKind] = {code: kind for kind, code in wire.ERROR_CODES.items()}  # type: ignore[misc]
 _NATIVE = "a cell that it depends on is an error, or its own formula fails"
 _MOST_ERRORS = 1000
+_OPENS = (Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN)
+_CLOSES = (Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE)
 Batch = Callable[[Mapping[str, Any], float], dict[str, Any]]
 
 
@@ -109,6 +112,21 @@ def _whole_call(node: Node) -> str:
     return whole[0] if whole is not None else ""
 
 
+def _leading(node: Node) -> list[list[Part]]:
+    """The first two arguments of a formula that is one TB_ call, taken apart."""
+    whole = node.rewritten.whole if node.rewritten is not None else None
+    found: list[list[Part]] = [[]]
+    depth = 0
+    inside = take_apart(f"{whole[0]}({whole[1]})")[1:-1] if whole is not None else []
+    for part in inside:
+        depth += (part.kind in _OPENS) - (part.kind in _CLOSES)
+        if part.kind is Kind.COMMA and depth == 0:
+            found.append([])
+        elif part.kind is not Kind.SPACE:
+            found[-1].append(part)
+    return found[:2]
+
+
 def _without_empty_arguments(model: Model) -> dict[str, bytes]:
     """Sheets for the copy in which a TB_ argument that is one empty cell is left out.
 
@@ -145,10 +163,9 @@ def _left_out(model: Model, node: Node, empty: Callable[[Reference], bool]) -> s
     stack: list[bool] = []
     out: list[Part] = []
     for i, part in enumerate(parts):
-        opens = part.kind in (Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN)
-        if opens:
+        if part.kind in _OPENS:
             stack.append(part.kind is Kind.OPEN and call_name(part.text) is not None)
-        elif part.kind in (Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE) and stack:
+        elif part.kind in _CLOSES and stack:
             stack.pop()
         if part.kind is Kind.REFERENCE and stack and stack[-1] and _alone(parts, i):
             found = model.references([part], node)
@@ -208,9 +225,34 @@ class _Outcome:
             self._to.cells.append(Computed(sheet, cell.row, cell.col, names, value, cell.kind))
             name = _whole_call(node)
             if name and _fills_area(node) and self._model.functions.block.get(name):
-                self._to.tables.append(Table(sheet, node.a1, name, grid))
+                self._table(node, name, grid)
         if node.index in self._affected:
             self._errors(node, grid)
+
+    def _table(self, node: Node, name: str, grid: Grid) -> None:
+        """List the result of a block; headings and single values are no tables."""
+        leading = [self._constant(node, parts) for parts in _leading(node)]
+        result = leading[0] if leading and isinstance(leading[0], str) else ""
+        if result.strip().lower().startswith(("labels", "units")) or grid.size == 1:
+            return
+        labels, units = headings(name, leading, grid.shape[1])
+        sheet = self._model.sheet_names[node.sheet]
+        self._to.tables.append(Table(sheet, node.a1, name, grid, labels, units))
+
+    def _constant(self, node: Node, parts: list[Part]) -> Cell:
+        """What an argument is, if it is a text or a reference to cells without formulas."""
+        (part,) = parts if len(parts) == 1 else (Part("", Kind.SPACE),)
+        if part.kind is Kind.LITERAL and part.text.startswith('"'):
+            return part.text[1:-1].replace('""', '"')
+        if part.kind is not Kind.REFERENCE:
+            return None
+        found = self._model.references([part], node)
+        if len(found) != 1 or (found[0].r2 - found[0].r1) * (found[0].c2 - found[0].c1) > 1000:
+            return None
+        sheet, r1, c1, r2, c2 = found[0]
+        package = self._model.package
+        values = stored_values(package.part(package.sheets[sheet].part), package.shared_strings)
+        return [[values.get((r, c)) for c in range(c1, c2 + 1)] for r in range(r1, r2 + 1)]
 
     def _put_area(self, node: Node, grid: Grid) -> None:
         assert node.cell.ref is not None
