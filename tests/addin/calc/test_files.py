@@ -27,7 +27,7 @@ from thrustbook.addin.xlsx.sheetxml import stored_values
 from thrustbook.workbooks.templates import shipped
 
 from .excelfile import as_saved_by_excel, as_spilling
-from .office import Office
+from .office import Office, memory
 
 TOLERANCE = 1e-12
 AREA_300 = math.pi * 0.09 / 4
@@ -237,6 +237,27 @@ def test_pages_of_the_template(office: Office, pipe_run: Path, tmp_path: Path) -
     assert "invented" in text
     assert not re.search(r"#(NAME\?|VALUE!|NUM!|REF!|N/A|DIV/0!)|Err:\d", text)
     assert len(text.split("\f")) > 3
+
+
+def test_opening_and_closing_again_and_again_keeps_little(office: Office, pipe_run: Path) -> None:
+    """A short form of the soak in tests/benchmarks/bench_calc.py; a document kept would be megabytes."""
+
+    def once() -> None:
+        book = office.load(str(pipe_run))
+        office.recalculate(book)
+        office.close(book)
+
+    for _ in range(15):  # caches fill up first
+        once()
+    (office_pid,) = office.processes("soffice.bin")
+    (worker_pid,) = office.processes("hosts.calc.worker")
+    before = memory(office_pid), memory(worker_pid)
+    cycles = 20
+    for _ in range(cycles):
+        once()
+    assert memory(office_pid) - before[0] < cycles * 1_000_000
+    assert memory(worker_pid) - before[1] < cycles * 100_000
+    assert office.processes("hosts.calc.worker") == [worker_pid]
 
 
 def test_evaluated_with_calc_as_by_the_embedded_engine(
