@@ -9,6 +9,7 @@ from __future__ import annotations
 import base64
 import io
 import zipfile
+from pathlib import Path
 
 MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 OFFICE = "http://schemas.openxmlformats.org/officeDocument/2006/relationships"
@@ -191,3 +192,9 @@ def zipped(content: dict[str, bytes], streamed: bool = False) -> bytes:
             info.comment = b"note" if index % 4 == 0 else b""
             archive.writestr(info, data)
     return bytes(sink.data) if isinstance(sink, _Stream) else sink.getvalue()
+
+
+def write(path: Path, content: dict[str, bytes]) -> Path:
+    """Write the parts to a file, zipped."""
+    path.write_bytes(zipped(content))
+    return path

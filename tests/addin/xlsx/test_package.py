@@ -24,18 +24,6 @@ from . import richbook
 CHANGES: dict[tuple[int, int], Scalar] = {(2, 2): 4321.5, (3, 2): 3.0, (4, 2): 7.5, (6, 5): "put here"}
 
 
-@pytest.fixture
-def book(tmp_path: Path) -> Path:
-    path = tmp_path / "rich.xlsm"
-    path.write_bytes(richbook.zipped(richbook.parts()))
-    return path
-
-
-def write(path: Path, content: dict[str, bytes]) -> Path:
-    path.write_bytes(richbook.zipped(content))
-    return path
-
-
 def raw_members(raw: bytes) -> dict[str, tuple[object, ...]]:
     """Everything that the zip holds about each member, its packed bytes included."""
     found: dict[str, tuple[object, ...]] = {}
@@ -99,7 +87,7 @@ def test_tells_of_signature_links_and_date_system(tmp_path: Path) -> None:
         f'<Relationship Id="e" Type="{richbook.OFFICE}/externalLink" '
         'Target="externalLinks/externalLink1.xml"/></Relationships>'.encode(),
     )
-    package = Package.read(write(tmp_path / "signed.xlsx", parts))
+    package = Package.read(richbook.write(tmp_path / "signed.xlsx", parts))
     assert package.signed
     assert package.external_links
     assert package.date1904
@@ -260,7 +248,7 @@ def test_kill_in_the_middle_of_saving_leaves_a_whole_file(book: Path) -> None:
     noise = random.Random(5)
     # A second or so of saving in all, spread over many kills, needs a file of some size.
     parts["xl/media/image1.png"] += noise.randbytes(3_000_000)
-    write(book, parts)
+    richbook.write(book, parts)
     package = Package.read(book)
     states = []
     for value in (1.0, 2.0):

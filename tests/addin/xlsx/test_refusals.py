@@ -14,18 +14,6 @@ from thrustbook.addin.xlsx.package import Package, Refusal
 from . import richbook
 
 
-@pytest.fixture
-def book(tmp_path: Path) -> Path:
-    path = tmp_path / "rich.xlsm"
-    path.write_bytes(richbook.zipped(richbook.parts()))
-    return path
-
-
-def write(path: Path, content: dict[str, bytes]) -> Path:
-    path.write_bytes(richbook.zipped(content))
-    return path
-
-
 def refusal(path: Path) -> str:
     with pytest.raises(Refusal) as caught:
         Package.read(path)
@@ -168,7 +156,7 @@ STRICT = b"http://purl.oclc.org/ooxml/spreadsheetml/main"
     ],
 )
 def test_refuses_other_packages(tmp_path: Path, parts: dict[str, bytes], words: str) -> None:
-    assert words in refusal(write(tmp_path / "book.xlsx", parts))
+    assert words in refusal(richbook.write(tmp_path / "book.xlsx", parts))
 
 
 def test_entities_are_not_expanded(tmp_path: Path) -> None:
@@ -176,7 +164,7 @@ def test_entities_are_not_expanded(tmp_path: Path) -> None:
     parts = richbook.parts()
     head = richbook.HEAD.encode()
     parts["xl/strings.xml"] = parts["xl/strings.xml"].replace(head, head + bomb).replace(b"Flow", b"&c;")
-    strings = list(Package.read(write(tmp_path / "book.xlsx", parts)).shared_strings)
+    strings = list(Package.read(richbook.write(tmp_path / "book.xlsx", parts)).shared_strings)
     assert "aaaa" not in strings[0]
 
 
@@ -226,7 +214,7 @@ def test_refuses_file_beyond_the_limit(book: Path, monkeypatch: pytest.MonkeyPat
 
 def test_names_outside_the_folder_do_no_harm(tmp_path: Path) -> None:
     parts = {**richbook.parts(), "../../outside.txt": b"x", "/absolute.txt": b"y"}
-    path = write(tmp_path / "book.xlsx", parts)
+    path = richbook.write(tmp_path / "book.xlsx", parts)
     package = Package.read(path)
     package.save(tmp_path / "copy.xlsx", {})
     assert (tmp_path / "copy.xlsx").read_bytes() == path.read_bytes()
