@@ -201,7 +201,7 @@ def not_recomputed(book: Book) -> Iterator[Finding]:
 def not_checked(book: Book) -> Iterator[Finding]:
     """V05: a TB_ formula outside the cells, in a conditional format or a validation."""
     for sheet in book.package.sheets:
-        for where, formula in elsewhere(book.package.part(sheet.part)):
+        for where, formula in elsewhere(book.package.part(sheet.part), book.model.names, sheet.name):
             yield Finding(
                 "V05",
                 Severity.NOTE,

@@ -12,6 +12,8 @@ import openpyxl
 import pytest
 from openpyxl import Workbook
 from openpyxl.formatting.rule import FormulaRule
+from openpyxl.workbook.defined_name import DefinedName
+from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin.catalogue.registry import CATALOGUE
@@ -79,6 +81,13 @@ def _format_with_a_call(book: Workbook) -> None:
     book["Bends"].conditional_formatting.add("A5:A10", FormulaRule(formula=["TB_AREA(Units,$B5)>0.2"]))
 
 
+def _validation_through_a_name(book: Workbook) -> None:
+    book.defined_names["Enough"] = DefinedName("Enough", attr_text="TB_AREA(Units,Bends!$B$5)")
+    rule = DataValidation(type="custom", formula1="B5<Enough")
+    rule.add("B5:B10")
+    book["Bends"].add_data_validation(rule)
+
+
 def _no_surge(book: Workbook) -> None:
     book["Run"]["B16"] = "peak"
     book["Run"]["D16"] = None
@@ -115,6 +124,9 @@ FAULTS = {
         before={"Inputs": {(2, 2): 998.0}},
     ),
     "formula in a format": Fault(_format_with_a_call, "V05", ("Bends!A5:A10",), "TB_AREA", Severity.NOTE),
+    "formula in a validation, through a name": Fault(
+        _validation_through_a_name, "V05", ("Bends!B5:B10",), "B5<Enough", Severity.NOTE
+    ),
     "number over a formula": Fault(_put("Bends", G8=5.0), "P01", ("Bends!G8",), "5 stands"),
     "number over the last formula": Fault(
         _put("Bends", **{f"G{LAST}": 5.0}), "P01", (f"Bends!G{LAST}",), "5"
