@@ -21,7 +21,7 @@ COMMANDS = {
 }
 """Command -> what it does; the module of the same name in addin/commands runs it."""
 
-EXIT_OK, EXIT_FINDINGS, EXIT_REFUSED = 0, 1, 2
+EXIT_OK, EXIT_REFUSED = 0, 2
 
 
 def main(arguments: Sequence[str] | None = None) -> int:

@@ -194,12 +194,6 @@ class Row:
         return None
 
     @property
-    def min_args(self) -> int:
-        """Smallest number of worksheet arguments."""
-        needed = [i for i, a in enumerate(self.args, 1) if self.required(a)]
-        return self.leading + (needed[-1] if needed else 0)
-
-    @property
     def max_args(self) -> int | None:
         """Largest number of worksheet arguments; None where there is no limit."""
         if self.args and self.args[-1].repeats:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from functools import cached_property
 
 from ..cells import Scalar
@@ -13,6 +13,7 @@ from ..hosts.headless.host import Functions, Host
 from ..hosts.headless.model import Model, Node
 from ..hosts.headless.results import Results
 from ..hosts.headless.settle import Settlement
+from ..progress import Progress, ticker
 from ..xlsx.a1 import to_a1
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import stored_values
@@ -20,7 +21,6 @@ from .calls import Call, Recorder, read_calls
 from .labels import Surroundings
 from .relative import moving, relative_form
 
-Progress = Callable[[str, int, int], None]
 Place = tuple[int, int, int]
 """Sheet (from 0), row and column (from 1)."""
 
@@ -39,24 +39,12 @@ class Book:
         """What a reader of the report should know of the check itself."""
         self.recorder = Recorder(Functions.of_catalogue())
         self.model = Model(package, self.recorder.functions, progress)
-        self.settlement = Settlement(self.model, Host(self.recorder.functions, self._ticker()))
+        tick = ticker(progress, "evaluate", sum(len(node.calls) for node in self.model.nodes))
+        self.settlement = Settlement(self.model, Host(self.recorder.functions, tick))
         self.settlement.settle()
         self.affected = self.settlement.affected()
         computed = [n.index for n in self.model.nodes if n.index not in self.settlement.kept]
         self.results = Results(self.settlement, computed)
-
-    def _ticker(self) -> Callable[[], None] | None:
-        progress, total, done = self.progress, sum(len(n.calls) for n in self.model.nodes), 0
-        if progress is None:
-            return None
-
-        def tick() -> None:
-            nonlocal done
-            done += 1
-            if done & 255 == 0:
-                progress("evaluate", min(done, total), total)
-
-        return tick
 
     def tell(self, stage: str, done: int, total: int) -> None:
         """Show how far the work is."""
@@ -101,14 +89,6 @@ class Book:
     def calls(self) -> list[Call]:
         """Every TB_ call of every formula that can be computed, with its arguments."""
         return list(read_calls(self))
-
-    @cached_property
-    def calls_of(self) -> dict[int, list[Call]]:
-        """The calls by formula."""
-        out: dict[int, list[Call]] = {}
-        for call in self.calls:
-            out.setdefault(call.node.index, []).append(call)
-        return out
 
     @cached_property
     def signatures(self) -> dict[int, str]:

@@ -7,10 +7,11 @@ from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
+from ..progress import Progress
 from ..tools import catalogue_version, engine_version, product_version
 from ..xlsx.package import Package
 from .accept import Accepted, Entry, match
-from .book import Book, Progress
+from .book import Book
 from .rules import RULES
 from .types import ORDER, Finding, Rules, Severity
 

@@ -209,7 +209,7 @@ def taken(
         if is_blank(value):
             return None, None
         if isinstance(value, bool):
-            return Formula("TRUE" if value else "FALSE"), None
+            return Formula("#VALUE!"), None  # as in every host
         if isinstance(value, float):
             return value, None
         if not isinstance(value, str):
@@ -229,6 +229,8 @@ def taken(
                 digits = f"TRIM(LEFT({trimmed},LEN({trimmed})-{len(name)}))"
                 same = f"EXACT(RIGHT({trimmed},{len(name)}),{quoted(name)})"
                 return Formula(f"IF({same},VALUE({digits}),#VALUE!)"), own
+        if isinstance(value, bool):
+            return Formula(f"IF(ISLOGICAL({text}),#VALUE!,{linked(text).text})"), None
         return linked(text), None
     return Formula(text), None
 

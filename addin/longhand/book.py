@@ -14,6 +14,7 @@ from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Longhand, NoLonghand, Row
 from ..cells import Refused
 from ..leading import heading_row, wanted
+from ..progress import Progress
 from ..units import UnitError
 from ..xlsx.a1 import to_a1
 from ..xlsx.refusals import Refusal
@@ -46,7 +47,7 @@ class Book:
     """The plan of all checking sheets of a workbook."""
 
     source: Source
-    progress: Callable[[str, int, int], None] | None = None
+    progress: Progress | None = None
     entries: list[Entry] = field(default_factory=list)
     blocks: list[Block] = field(default_factory=list)
     sheets: list[Sheet] = field(default_factory=list)
@@ -235,7 +236,7 @@ class Book:
             return
         outcome = only.outcome
         assert outcome is not None
-        entry.formula_of = outcome.at
+        entry.formula_of = partial(_repeated, outcome)
         if isinstance(outcome, WordsOutcome):
             if outcome.formula is None:
                 entry.words = True
@@ -327,6 +328,14 @@ def _given(
 
 def _bound(at: Callable[[int, int], str], i: int, j: int) -> Callable[[], str]:
     return lambda: at(i, j)
+
+
+def _repeated(outcome: Outcome, i: int, j: int) -> str:
+    """A cell of an array formula: one row or column fills all; beyond the result there is nothing."""
+    rows, cols = outcome.shape
+    if (rows > 1 and i >= rows) or (cols > 1 and j >= cols):
+        raise NotWorked("the array formula covers more cells than its result has")
+    return outcome.at(i if rows > 1 else 0, j if cols > 1 else 0)
 
 
 def _broadcast(shapes: list[Shape]) -> Shape:

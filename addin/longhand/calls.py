@@ -120,11 +120,6 @@ def all_calls(items: Items) -> list[Call]:
     return found
 
 
-def outer_calls(items: Items) -> list[Call]:
-    """The calls in the items that stand in no other call."""
-    return [item for item in items if isinstance(item, Call)]
-
-
 def render(items: Items, operand: Callable[[str], str], call: Callable[[Call], str]) -> str:
     """The text of items, with operands and calls as the two functions write them.
 

@@ -10,12 +10,13 @@ from lxml import etree
 
 from ..cells import CellError, Scalar
 from ..hosts.headless.plainvalues import evaluate_sheets
+from ..progress import Progress
 from ..xlsx.opc import MAIN, parse
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import set_formulas, store
 from .calls import NotWorked
 from .detachtext import constant
-from .make import Made, Progress
+from .make import Made
 from .summary import Entry
 
 Place = tuple[int, int]

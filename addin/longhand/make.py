@@ -4,17 +4,16 @@ from __future__ import annotations
 
 import contextlib
 import gc
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from pathlib import Path
 
+from ..progress import Progress
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
 from .book import Book
 from .parts import Addition, Parts
 from .source import Source
 from .summary import Entry
-
-Progress = Callable[[str, int, int], None]
 
 
 @contextlib.contextmanager

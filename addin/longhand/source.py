@@ -9,10 +9,20 @@ from functools import cached_property
 from typing import Any, NamedTuple
 
 from ..cells import CellError, Scalar
-from ..hosts.headless.formulas import Kind, Part, Unreadable, call_name, functions, take_apart
+from ..hosts.headless.formulas import (
+    Kind,
+    Part,
+    Unreadable,
+    call_name,
+    function_name,
+    functions,
+    take_apart,
+)
 from ..hosts.headless.names import Names, split_sheet
 from ..hosts.headless.tablerefs import Tables
+from ..progress import Progress
 from ..xlsx.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
+from ..xlsx.formulashift import MovableFormula
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
 from .calls import Call, Items, NotWorked, all_calls, render, tree
@@ -22,6 +32,8 @@ _RANGE = re.compile(
     r"\$?[A-Za-z]{1,3}\$?[0-9]{1,7}(?::\$?[A-Za-z]{1,3}\$?[0-9]{1,7})?"
     r"|\$?[A-Za-z]{1,3}:\$?[A-Za-z]{1,3}|\$?[0-9]{1,7}:\$?[0-9]{1,7}"
 )
+_OF_THE_PLACE = frozenset(("ROW", "COLUMN", "CELL", "INDIRECT", "SHEET"))
+"""Functions whose result depends on where the formula stands."""
 
 
 class Area(NamedTuple):
@@ -79,7 +91,7 @@ class TbCell:
 class Source:
     """A workbook's formulas and stored values."""
 
-    def __init__(self, package: Package, progress: Callable[[str, int, int], None] | None = None) -> None:
+    def __init__(self, package: Package, progress: Progress | None = None) -> None:
         self.package = package
         self.names = Names(package.defined_names)
         self.tables = Tables(package.tables)
@@ -110,9 +122,37 @@ class Source:
                 return
             if functions(parts) & {"LET", "LAMBDA"}:
                 raise NotWorked("the formula declares variables of its own (LET or LAMBDA)")
-            self.cells.append(TbCell(sheet, cell, tree(parts)))
+            self.cells.append(TbCell(sheet, cell, tree(self._fixed(parts, sheet, cell))))
         except (Unreadable, NotWorked) as error:
             self.cells.append(TbCell(sheet, cell, [], str(error)))
+
+    def _fixed(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
+        """The parts of a formula such that the arguments of our calls mean the same on another sheet.
+
+        Raises :class:`NotWorked` where that cannot be had.
+        """
+        own = f"{quoted_sheet(sheet)}!{to_a1(cell.row, cell.col, absolute=True)}"
+        stack: list[bool] = []
+        out: list[Part] = []
+        for i, part in enumerate(parts):
+            out.append(part)
+            inside = bool(stack) and stack[-1]
+            if part.kind is Kind.OPEN:
+                name = "" if call_name(part.text) else function_name(part.text)
+                if inside and name in _OF_THE_PLACE:
+                    named = name == "INDIRECT" and '"' in parts[i + 1].text and "!" in parts[i + 1].text
+                    if name not in ("ROW", "COLUMN") and not named:
+                        raise NotWorked(f"an argument uses {name}, which depends on where the formula stands")
+                    if not named and _closes_at_once(parts, i):
+                        out.append(Part(own, Kind.REFERENCE))
+                stack.append(inside or not name)
+            elif part.kind is Kind.CLOSE:
+                stack.pop()
+            elif part.kind is Kind.REFERENCE and inside:
+                known = self.names.find(part.text, sheet)
+                if known is not None and _moves(known.text):
+                    raise NotWorked(f"the name {known.name} means another cell at each place")
+        return out
 
     def values(self, sheet: str) -> dict[tuple[int, int], Scalar]:
         """Stored values of a sheet by (row, column)."""
@@ -171,7 +211,7 @@ class Source:
         """An operand of a formula on a sheet, as a formula on any other sheet writes it."""
         if text.startswith("[") or "[" in text.partition("!")[0]:
             raise NotWorked("the formula refers to another workbook")
-        if "!" in text:
+        if "!" in text and _RANGE.fullmatch(split_sheet(text)[1]):
             return text
         if _RANGE.fullmatch(text):
             try:
@@ -180,7 +220,23 @@ class Source:
                 return text
             return f"{quoted_sheet(sheet)}!{text}"
         name = self.names.find(text, sheet)
-        return f"{quoted_sheet(sheet)}!{text}" if name is not None and name.sheet else text
+        if name is None or not (name.sheet or "!" in text):
+            return text
+        # A sheet's own name is written out: not every spreadsheet knows it on another sheet.
+        area = self.area(text, sheet)
+        if area is not None:
+            return area.text()
+        return text if "!" in text else f"{quoted_sheet(sheet)}!{text}"
+
+
+def _closes_at_once(parts: list[Part], i: int) -> bool:
+    after = next((p for p in parts[i + 1 :] if p.kind is not Kind.SPACE), None)
+    return after is not None and after.kind is Kind.CLOSE
+
+
+def _moves(text: str) -> bool:
+    """Whether the text of a name reads otherwise in another cell."""
+    return MovableFormula(text, 1, 1).at(2, 2) != text
 
 
 def literal(part: Part) -> Scalar:

@@ -15,12 +15,13 @@ import numpy as np
 
 from ...cells import Cell, CellError, ErrorKind, Grid, Scalar
 from ...dispatch import headings
+from ...progress import Progress
 from ...xlsx.a1 import to_a1
 from ...xlsx.package import Package
 from ...xlsx.sheetxml import set_formulas, store, stored_values
 from ..headless.dependency import Reference
 from ..headless.elsewhere import elsewhere
-from ..headless.evaluate import Computed, Elsewhere, Evaluation, Failed, Kept, Progress, Table
+from ..headless.evaluate import Computed, Elsewhere, Evaluation, Failed, Kept, Table
 from ..headless.formulas import Kind, Part, call_name, join, take_apart
 from ..headless.host import Functions
 from ..headless.model import Model, Node
@@ -58,7 +59,7 @@ def evaluate_workbook(
     model = Model(package, functions or Functions.of_catalogue(), progress)
     evaluation = Evaluation()
     for sheet in package.sheets:
-        for where, formula in elsewhere(package.part(sheet.part)):
+        for where, formula in elsewhere(package.part(sheet.part), model.names, sheet.name):
             evaluation.not_evaluated.append(Elsewhere(sheet.name, where, formula))
     seeds = [node.index for node in model.nodes if node.calls]
     affected = set()
@@ -207,7 +208,7 @@ class _Outcome:
     def _take(self, node: Node, answer: Any) -> None:
         cell = node.cell
         sheet = self._model.sheet_names[node.sheet]
-        grid = _grid(node, answer)
+        grid = _grid(answer)
         reason = _not_computed(node, grid)
         if reason:
             kept = Kept(sheet, node.a1, "=" + cell.text, reason, node.index in self._affected)
@@ -301,7 +302,7 @@ def _without_outside(grid: Grid) -> Grid:
     return grid[: rows[-1] + 1, : columns[-1] + 1]
 
 
-def _grid(node: Node, answer: Any) -> Grid:
+def _grid(answer: Any) -> Grid:
     if isinstance(answer, dict):
         message = f"#SPILL!: the result needs more cells, and {answer['blocked']} is not free"
         answer = [[CellError("VALUE", message)]]

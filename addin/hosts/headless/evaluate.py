@@ -4,13 +4,14 @@ from __future__ import annotations
 
 import gc
 from collections import Counter
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
 from ...cells import CellError, Grid, Scalar
 from ...dispatch import headings
+from ...progress import Progress, ticker
 from ...xlsx.a1 import to_a1
 from ...xlsx.package import Package
 from .areas import OUTSIDE, Area
@@ -21,7 +22,6 @@ from .reasons import reason
 from .results import Results
 from .settle import Settlement
 
-Progress = Callable[[str, int, int], None]
 _MOST_ERRORS = 1000  # listed of one area
 
 
@@ -147,7 +147,7 @@ def _evaluated(
         evaluation.warnings.append("no cell of this workbook holds a TB_ formula")
         if not fill_native:
             return evaluation
-    host = Host(functions, _ticker(progress, sum(len(node.calls) for node in calling)))
+    host = Host(functions, ticker(progress, "evaluate", sum(len(node.calls) for node in calling)))
     settlement = Settlement(model, host)
     settlement.settle()
     affected = settlement.affected()
@@ -184,20 +184,6 @@ def _built_on_stale(settlement: Settlement, affected: set[int]) -> list[str]:
         f"{len(below)} cells were computed from values that could not be renewed: {places}"
         + (", ..." if len(below) > 5 else "")
     ]
-
-
-def _ticker(progress: Progress | None, total: int) -> Callable[[], None] | None:
-    if progress is None:
-        return None
-    done = 0
-
-    def tick() -> None:
-        nonlocal done
-        done += 1
-        if done & 255 == 0:
-            progress("evaluate", min(done, total), total)
-
-    return tick
 
 
 class _Report:

@@ -206,12 +206,10 @@ def rewrite(parts: Sequence[Part]) -> Rewritten:
             if top:
                 top[2] = False
         pieces.append(text)
-    return Rewritten(pieces, spans, _whole(parts, pieces, spans), array_like)
+    return Rewritten(pieces, spans, _whole(pieces, spans), array_like)
 
 
-def _whole(
-    parts: Sequence[Part], pieces: Sequence[str], spans: Sequence[tuple[str, int, int]]
-) -> tuple[str, str] | None:
+def _whole(pieces: Sequence[str], spans: Sequence[tuple[str, int, int]]) -> tuple[str, str] | None:
     if not spans:
         return None
     name, first, last = spans[-1]

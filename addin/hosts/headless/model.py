@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable
+from collections.abc import Iterable
 from dataclasses import dataclass, field
 
 from formualizer import Workbook
 
+from ...progress import Progress
 from ...xlsx.a1 import MAX_COLUMN, MAX_ROW, column_number, to_a1
 from ...xlsx.package import NameRef, Package
 from ...xlsx.sheetxml import FormulaCell, formula_cells
@@ -112,9 +113,7 @@ class Known:
 class Model:
     """All formulas of a workbook with what they refer to."""
 
-    def __init__(
-        self, package: Package, functions: Functions, progress: Callable[[str, int, int], None] | None = None
-    ) -> None:
+    def __init__(self, package: Package, functions: Functions, progress: Progress | None = None) -> None:
         self.package = package
         self.functions = functions
         self.names = Names(package.defined_names)

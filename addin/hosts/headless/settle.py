@@ -152,7 +152,7 @@ class Settlement:
         _, _, r2, c2 = area.extent()
         if r2 > MAX_ROW or c2 > MAX_COLUMN:
             return True
-        under = self._under(area, node)
+        under = self._under(area)
         counts = [
             self.run.try_formula(node, f"COUNTA({sheet_range(self.model.sheet_names[node.sheet], part)})")[0]
             for part in under
@@ -160,7 +160,7 @@ class Settlement:
         return any(count != 0.0 for count in counts)
 
     @staticmethod
-    def _under(area: Area, node: Node) -> list[tuple[int, int, int, int]]:
+    def _under(area: Area) -> list[tuple[int, int, int, int]]:
         """The extent of a result without the cells that were its own in the evaluated copy."""
         r1, c1, r2, c2 = area.extent()
         rows, cols = area.tiled or (1, 1)

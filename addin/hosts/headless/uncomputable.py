@@ -30,7 +30,7 @@ class Judge:
     """
 
     def __init__(self, model: Model, run: Run, kept: Mapping[int, str], affected: Collection[int]) -> None:
-        self._model, self._run, self._kept, self._affected = model, run, kept, affected
+        self._model, self._run, self._affected = model, run, affected
         self._counted: dict[Reference, int] = {}
         self._valueless = [i for i in kept if model.nodes[i].cell.value is None]
 

@@ -165,7 +165,7 @@ def test_a_bad_list_is_refused(
     assert words in capsys.readouterr().err
 
 
-def test_sheet_of_findings(tmp_path: Path, fast: Path, capsys: pytest.CaptureFixture[str]) -> None:
+def test_sheet_of_findings(tmp_path: Path, fast: Path) -> None:
     out = tmp_path / "out.xlsx"
     assert main(["check", str(fast), "-o", str(out)]) == 1
     book = openpyxl.load_workbook(out)
