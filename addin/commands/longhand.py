@@ -3,18 +3,12 @@
 from __future__ import annotations
 
 import argparse
-import sys
 import time
 from pathlib import Path
 
 from ..longhand.make import Made
 from ..longhand.summary import Entry
-from ..xlsx.package import Package
-from ..xlsx.refusals import Refusal
-from .progress import Progress
-
-LIST = 20
-"""Cells of one kind that are listed before the rest is counted."""
+from .copying import first_lines, write_copy
 
 
 def configure(parser: argparse.ArgumentParser) -> None:
@@ -30,18 +24,8 @@ def run(options: argparse.Namespace) -> int:
     started = time.perf_counter()
     book: Path = options.book
     target: Path = options.output or book.with_name(f"{book.stem}-longhand{book.suffix}")
-    try:
-        if target.exists() and book.exists() and target.samefile(book):
-            raise Refusal("The copy must not replace the workbook. Give another name for it.")
-        package = Package.read(book)
-        with Progress() as progress:
-            made = Made(package, progress)
-            made.save(target)
-    except Refusal as refusal:
-        print(f"{book}: {refusal}", file=sys.stderr)
-        return 2
-    except OSError as error:
-        print(f"{target}: {error.strerror or error}; nothing was written", file=sys.stderr)
+    made = write_copy(book, target, Made)
+    if made is None:
         return 2
     found = made.verdicts()
     print("\n".join(report(found, target, time.perf_counter() - started)))
@@ -58,8 +42,5 @@ def report(found: dict[str, list[Entry]], target: Path, seconds: float) -> list[
         out.append(f"  {len(entries)} {word}")
         if word in ("agrees", "text"):
             continue
-        for entry in entries[:LIST]:
-            out.append(f"    {entry.cell.where}  {entry.trouble or '=' + entry.cell.cell.text}")
-        if len(entries) > LIST:
-            out.append(f"    and {len(entries) - LIST} more")
+        out += first_lines([f"{e.cell.where}  {e.trouble or '=' + e.cell.cell.text}" for e in entries])
     return out
