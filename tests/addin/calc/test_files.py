@@ -14,6 +14,7 @@ from typing import Any
 import openpyxl
 import pytest
 from openpyxl.workbook.defined_name import DefinedName
+from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin import cli
@@ -299,6 +300,10 @@ def contract_book(path: Path) -> Path:
         sheet[f"C{row}"] = row / 10 if row != 3 else -1
     sheet["D1"] = ArrayFormula("D1:D5", '=TB_AREA("SI",C1:C5)')
     sheet["F1"] = ArrayFormula("F1:G3", '=TB_AREA("SI",C1:C2)')
+    workbook.defined_names["Enough"] = DefinedName("Enough", attr_text='TB_AREA("SI",Data!$C$1)')
+    rule = DataValidation(type="custom", formula1="C1<Enough")
+    rule.add("C1:C5")
+    sheet.add_data_validation(rule)
     workbook.save(path)
     return path
 
@@ -316,6 +321,8 @@ def test_contract_is_the_same_with_calc_and_with_the_embedded_engine(tmp_path: P
     assert reasons["A4"] == "D = -300 mm (allowed: above 0)"
     assert reasons["A3"] == "D is not given (it is required)"
     assert {e.a1 for e in calc.errors} == {e.a1 for e in headless.errors}
+    assert [tuple(e) for e in calc.not_evaluated] == [("Data", "C1:C5", "C1<Enough")]
+    assert calc.not_evaluated == headless.not_evaluated
 
 
 @pytest.mark.parametrize(("held", "blocked"), [("D1:D2", ""), ("D1:D9", ""), ("D1", "D4")])
