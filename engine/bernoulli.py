@@ -162,8 +162,9 @@ def discharge(
 ) -> Discharge:
     """Flow through a contraction or nozzle from its pressure, or the pressure from the flow.
 
-    Continuity and Bernoulli's equation solved together. Assumes steady flow of
-    constant density that fills section 2. Exactly one of ``p1`` and ``Q`` is
+    Continuity and Bernoulli's equation solved together. Control volume: the fluid
+    from section 1 to section 2. Assumes steady flow of constant density that fills
+    section 2. Exactly one of ``p1`` and ``Q`` is
     given. Flow runs from 1 to 2; reverse flow is refused. Q = 0 gives the
     hydrostatic pressure.
 

@@ -38,8 +38,11 @@ class Cavitation(NamedTuple):
 def head(rho: Num, p: Num, V: Num, z: Num = 0.0, alpha: Num = 1.0) -> Head:
     """Total head and hydraulic grade at a section.
 
+    Assumes constant density, and pressure that is hydrostatic over the section.
+    All are heights above the datum of z, positive upwards.
+
     Formula: hp = p / (rho g), hV = alpha V^2 / (2 g), HGL = z + hp,
-    H = z + hp + hV. All are heights above the datum of z, positive upwards.
+    H = z + hp + hV.
 
     Parameters
     ----------
@@ -84,9 +87,10 @@ def head(rho: Num, p: Num, V: Num, z: Num = 0.0, alpha: Num = 1.0) -> Head:
 def power(rho: Num, Q: Num, H: Num, eta: Num = 1.0) -> Power:
     """Hydraulic power of a flow at a head, and the power at the shaft.
 
-    H is the head given to the fluid: positive for a pump, negative for a
-    turbine, whose powers are then negative (taken from the fluid, delivered by
-    the shaft).
+    Assumes steady flow of constant density. Control volume: the fluid between
+    the flanges of the machine. H is the head given to the fluid: positive for a
+    pump, negative for a turbine, whose powers are then negative (taken from the
+    fluid, delivered by the shaft).
 
     Formula: P = rho g Q H; pump Pshaft = P / eta, turbine Pshaft = P eta.
 
@@ -130,7 +134,8 @@ def cavitation(p: Num, pv: Num, rho: Num = NOT_GIVEN, V: Num = NOT_GIVEN, pamb: 
 
     A margin of 0 or less means that the liquid boils there: it is a result, not
     an error, and so is an absolute pressure below 0, which a liquid at rest
-    cannot have and which says that the assumed flow is impossible.
+    cannot have and which says that the assumed flow is impossible. Assumes that
+    p is the lowest pressure of the section.
 
     Formula: pabs = p + pamb, margin = pabs - pv,
     sigma = (pabs - pv) / (rho V^2 / 2), NPSH = (pabs - pv)/(rho g) + V^2/(2 g).

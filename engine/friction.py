@@ -58,13 +58,13 @@ def colebrook(Re: Num, eD: Num) -> Num:
 
 
 def swamee_jain(Re: Num, eD: Num) -> Num:
-    """Swamee and Jain's explicit factor, for turbulent ``Re``; no checks."""
+    """Swamee and Jain's explicit factor, see :func:`friction`, for turbulent ``Re``; no checks."""
     x = log10(eD / 3.7 + 5.74 / Re**0.9)
     return 0.25 / (x * x)
 
 
 def haaland(Re: Num, eD: Num) -> Num:
-    """Haaland's explicit factor, for turbulent ``Re``; no checks."""
+    """Haaland's explicit factor, see :func:`friction`, for turbulent ``Re``; no checks."""
     x = 1.8 * log10((eD / 3.7) ** 1.11 + 6.9 / Re)
     return 1.0 / (x * x)
 

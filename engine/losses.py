@@ -109,8 +109,12 @@ def pipeloss(rho: Num, mu: Num, D: Num, L: Num, e: Num, Q: Num, method: str = "c
 def fittingloss(rho: Num, D: Num, Q: Num, K: Num) -> FittingLoss:
     """Loss of a fitting with a known loss coefficient.
 
-    K applies to the velocity head in the pipe of diameter D. The loss has the
-    sign of the flow. Formula: hL = K V |V| / (2 g), dp = rho g hL.
+    Assumes steady flow of constant density and a fitting that stands far enough
+    from its neighbours for its own K to hold. Control volume: from the section
+    before the fitting to where its disturbance has died out. K applies to the
+    velocity head in the pipe of diameter D. The loss has the sign of the flow.
+
+    Formula: hL = K V |V| / (2 g), dp = rho g hL.
 
     Parameters
     ----------
@@ -201,8 +205,10 @@ def expansion(D1: Num, D2: Num, Q: Num = NOT_GIVEN, rho: Num = NOT_GIVEN) -> Ste
 def contraction(D1: Num, D2: Num, Q: Num = NOT_GIVEN, rho: Num = NOT_GIVEN) -> StepLoss:
     """Loss of a sudden contraction with a sharp edge.
 
-    Flow runs from D1 into the smaller D2; reverse flow is refused, it is an
-    expansion. The loss arises where the contracted jet widens again.
+    Assumes steady flow of constant density. Control volume: from the large pipe
+    to where the contracted jet, whose widening makes the loss, fills the small
+    one. Flow runs from D1 into the smaller D2; reverse flow is refused, it is an
+    expansion.
 
     Formula: K2 = (1 - (D2/D1)^2) / 2 on the small pipe's velocity head, which is
     0.5 from a large vessel; K1 = K2 (A1/A2)^2 on the large pipe's. It is an

@@ -57,20 +57,24 @@ def sqrt(x: Num) -> Num:
 
 
 def sin(x: Num) -> Num:
+    """Sine."""
     return math.sin(x) if isinstance(x, float) else np.sin(x)
 
 
 def cos(x: Num) -> Num:
+    """Cosine."""
     return math.cos(x) if isinstance(x, float) else np.cos(x)
 
 
 def atan2(y: Num, x: Num) -> Num:
+    """Angle of the point (x, y) [rad], -pi to pi."""
     if isinstance(x, float) and isinstance(y, float):
         return math.atan2(y, x)
     return np.arctan2(y, x)
 
 
 def exp(x: Num) -> Num:
+    """Exponential."""
     return math.exp(x) if isinstance(x, float) else np.exp(x)
 
 
@@ -82,18 +86,21 @@ def log(x: Num) -> Num:
 
 
 def log10(x: Num) -> Num:
+    """Common logarithm; NaN where it is not defined, never an exception."""
     if isinstance(x, float):
         return math.log10(x) if x > 0 else math.nan
     return np.log10(x)
 
 
 def maximum(x: Num, y: Num) -> Num:
+    """The larger of two, element by element."""
     if isinstance(x, float) and isinstance(y, float):
         return max(x, y)
     return np.maximum(x, y)
 
 
 def minimum(x: Num, y: Num) -> Num:
+    """The smaller of two, element by element."""
     if isinstance(x, float) and isinstance(y, float):
         return min(x, y)
     return np.minimum(x, y)

@@ -70,7 +70,7 @@ def circle(D: Num) -> Num:
 def area(D: Num) -> Area:
     """Area of a full circular section.
 
-    Formula: A = pi D^2 / 4.
+    Assumes a round bore that is full. Formula: A = pi D^2 / 4.
 
     Parameters
     ----------
@@ -175,7 +175,8 @@ def flow(V: Num, D: Num) -> Flow:
 def massflow(rho: Num, Q: Num) -> MassFlow:
     """Mass flow of a known volume flow.
 
-    The mass flow has the sign of the flow. Formula: mdot = rho Q.
+    Assumes one density over the section. The mass flow has the sign of the flow.
+    Formula: mdot = rho Q.
 
     Parameters
     ----------
@@ -210,8 +211,8 @@ def massflow(rho: Num, Q: Num) -> MassFlow:
 def reynolds(rho: Num, mu: Num, V: Num, D: Num) -> Reynolds:
     """Reynolds number of a full circular pipe.
 
-    Formula: Re = rho |V| D / mu. It has no sign: a reversed flow has the same
-    Reynolds number.
+    Assumes a Newtonian fluid in a full bore. Formula: Re = rho |V| D / mu. It has
+    no sign: a reversed flow has the same Reynolds number.
 
     Parameters
     ----------

@@ -1,14 +1,20 @@
-"""The examples in the engine's docstrings run and print what they say."""
+"""The engine's docstrings are complete, and their examples run and print what they say."""
 
 from __future__ import annotations
 
 import doctest
 import importlib
+import inspect
 import pkgutil
+import re
+from typing import Any
 
 import pytest
 
 import thrustbook.engine
+from thrustbook.addin.catalogue.registry import CATALOGUE
+
+ROUTINES = {row.routine.__name__: row.routine for row in CATALOGUE.values() if row.kind == "element"}
 
 
 def examples() -> list[doctest.DocTest]:
@@ -28,3 +34,15 @@ def test_example_prints_what_the_docstring_says(test: doctest.DocTest) -> None:
     results = doctest.DocTestRunner(verbose=False).run(test)
     assert results.attempted > 0
     assert results.failed == 0
+
+
+@pytest.mark.parametrize("name", ROUTINES)
+def test_a_routine_says_all_that_its_user_must_know(name: str) -> None:
+    routine: Any = ROUTINES[name]
+    text = inspect.getdoc(routine) or ""
+    for part in ("Parameters\n---", "Returns\n---", "Raises\n---", ">>> ", "Source"):
+        assert part in text, part
+    assert re.search("[Aa]ssum", text)
+    arguments = text.partition("Parameters\n---")[2].partition("Returns\n---")[0]
+    for parameter in inspect.signature(routine).parameters:
+        assert re.search(rf"\b{parameter}\b", arguments), parameter
