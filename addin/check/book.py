@@ -85,6 +85,18 @@ class Book:
         """The value of one cell, None where it is empty."""
         return self.values[place[0]].get(place[1:])
 
+    def source(self, place: Place) -> Place | None:
+        """The typed cell that a cell takes its value from by plain references; None where it is computed."""
+        for _ in range(8):
+            node = self.model.at.get(place)
+            if node is None:
+                return None if self.in_area(place) else place
+            refs = node.references
+            if len(refs) != 1 or moving(node.cell.text.strip()) is None:
+                return None
+            place = (refs[0].sheet, refs[0].r1, refs[0].c1)
+        return None
+
     @cached_property
     def calls(self) -> list[Call]:
         """Every TB_ call of every formula that can be computed, with its arguments."""

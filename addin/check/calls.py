@@ -5,23 +5,28 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
+from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Arg, Row
 from ..cells import Cell, Refused
 from ..hosts.headless.dependency import Reference
-from ..hosts.headless.formulas import Kind, Part, Unreadable, take_apart
+from ..hosts.headless.formulas import Kind, Part, Unreadable, function_name, take_apart
 from ..hosts.headless.host import Functions
 from ..hosts.headless.model import Node
 from ..leading import Wanted, read_units, wanted
 from ..longhand.calls import Call as Written
-from ..longhand.calls import Items, NotWorked, all_calls, stripped, tree
+from ..longhand.calls import Items, NotWorked, all_calls, tree
 from ..units import UnitError, UnitSet
 from ..xlsx.a1 import MAX_COLUMN, MAX_ROW
 
 if TYPE_CHECKING:
     from .book import Book
+
+
+_PASSING = frozenset(("ABS", "IFERROR", "IFNA", "ROUND", "ROUNDDOWN", "ROUNDUP"))
+_BEHIND = (Kind.COMMA, Kind.CLOSE, Kind.PAREN_CLOSE, Kind.LITERAL)
 
 
 class Recorder:
@@ -51,14 +56,15 @@ class Given:
 class Call:
     """One call. ``values`` are its arguments as the dispatcher gets them.
 
-    ``alone`` tells that the formula is this call and nothing else.
+    ``shown`` tells that the cell shows what the call gives: the formula is this call
+    and nothing else, but for rounding, a sign, or a guard against errors.
     """
 
     node: Node
     row: Row
     given: list[Given]
     values: Sequence[Cell]
-    alone: bool
+    shown: bool
 
     @property
     def arguments(self) -> Iterator[tuple[Arg, Given, Cell]]:
@@ -110,7 +116,6 @@ def _calls_of(book: Book, node: Node) -> Iterator[Call]:
         items = tree(model.names.written_out(parts, sheet, cell.row, cell.col))
     except (Unreadable, NotWorked):
         return
-    whole = [item for item in stripped(items) if isinstance(item, Written) or item.text != "@"]
     for n, written in enumerate(all_calls(items)):
         row = CATALOGUE.get(written.name)
         if row is None:
@@ -118,7 +123,33 @@ def _calls_of(book: Book, node: Node) -> Iterator[Call]:
         given = [_given(book, node, argument) for argument in written.args]
         values = _values(book, node, given, n)
         if values is not None:
-            yield Call(node, row, given, values, len(whole) == 1 and whole[0] is written)
+            yield Call(node, row, given, values, _shows(items, written))
+
+
+def _shows(items: Items, call: Written) -> bool:
+    """Whether a formula passes on what a call gives, in the same unit."""
+    at = 0
+    for item in items:
+        if isinstance(item, Written) or not _passes(item):
+            break
+        at += 1
+    if at == len(items) or items[at] is not call:
+        return False
+    rest = [item for item in items[at + 1 :] if isinstance(item, Written) or item.kind is not Kind.SPACE]
+    return all(_follows(item, last) for last, item in pairwise([call, *rest]))
+
+
+def _follows(item: Part | Written, last: Part | Written) -> bool:
+    if isinstance(item, Written):
+        return False
+    sign = item.text == "-" and not isinstance(last, Written) and last.kind is Kind.COMMA
+    return sign or item.kind in _BEHIND
+
+
+def _passes(part: Part) -> bool:
+    if part.kind is Kind.OPEN:
+        return function_name(part.text) in _PASSING
+    return part.kind in (Kind.PAREN_OPEN, Kind.SPACE) or part.text in ("@", "+", "-")
 
 
 def _given(book: Book, node: Node, items: Items) -> Given:

@@ -147,7 +147,7 @@ def _single(
     place, literal = (node.sheet, node.cell.row, node.cell.col), True
     label = ""
     if given.area is not None:
-        source = _source(book, (given.area.sheet, given.area.r1, given.area.c1))
+        source = book.source((given.area.sheet, given.area.r1, given.area.c1))
         if source is None or _of_a_table(book, call, given):
             return
         place, literal, label = source, False, book.around.label(source)
@@ -164,19 +164,6 @@ def _si(value: Scalar, name: str, role: str, units: UnitSet) -> float | None:
     except (Refused, UnitError):
         return None
     return si if si == si else None
-
-
-def _source(book: Book, place: Place) -> Place | None:
-    """The typed cell that a cell takes its value from; None where it is computed."""
-    for _ in range(8):
-        node = book.model.at.get(place)
-        if node is None:
-            return None if book.in_area(place) else place
-        refs = node.references
-        if len(refs) != 1 or moving(node.cell.text.strip()) is None:
-            return None
-        place = (refs[0].sheet, refs[0].r1, refs[0].c1)
-    return None
 
 
 def _of_a_table(book: Book, call: Call, given: Given) -> bool:

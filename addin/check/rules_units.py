@@ -15,6 +15,7 @@ from ..xlsx.a1 import to_a1
 from .book import Book, Place
 from .calls import Call, Given
 from .gather import Remark, joined
+from .labels import Written
 from .types import Finding, Rule, Severity
 
 _PLAIN = ("ratio", "text", "choice", "table", "headings", "any")
@@ -77,10 +78,11 @@ def headings(book: Book) -> Iterator[Finding]:
     seen: set[Place] = set()
     for call in book.calls:
         for place, role, own in _quantities(book, call):
-            written = book.around.written_unit(place, role)
+            written = _unlike(book, place, role, own)
+            if written is None:
+                place = book.source(place) or place
+                written = _unlike(book, place, role, own)
             if written is None or written.place in seen:
-                continue
-            if written.unit is not None and _equal(written.unit, own):
                 continue
             seen.add(written.place)
             reads = book.name((call.node.sheet, call.node.cell.row, call.node.cell.col))
@@ -96,6 +98,13 @@ def headings(book: Book) -> Iterator[Finding]:
                 + ("." if written.unit else f'; "{written.text}" is no unit of {ROLES[role].text} at all.'),
                 f"{written.text} {own.symbol}",
             )
+
+
+def _unlike(book: Book, place: Place, role: str, own: Unit) -> Written | None:
+    """The unit written at a cell, where it is another than its own."""
+    written = book.around.written_unit(place, role)
+    same = written is None or (written.unit is not None and _equal(written.unit, own))
+    return None if same else written
 
 
 def _equal(one: Unit, other: Unit) -> bool:
@@ -127,7 +136,7 @@ def _quantities(book: Book, call: Call) -> Iterator[tuple[Place, str, Unit]]:
             for place in _tops(given):
                 if isinstance(book.value(place), float):
                     yield place, arg.role, units.unit(arg.role)
-    if call.alone:
+    if call.shown:
         yield from _given_back(call)
 
 

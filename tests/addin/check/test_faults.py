@@ -23,7 +23,7 @@ from thrustbook.addin.check.rules import RULES
 from thrustbook.addin.check.types import Severity
 from thrustbook.addin.longhand import book as workings
 
-from .books import LAST, Values, clean_book, findings, stored
+from .books import FIRST, LAST, Values, clean_book, findings, stored
 
 
 def test_a_clean_workbook_gives_no_finding(tmp_path: Path) -> None:
@@ -150,6 +150,22 @@ FAULTS = {
     "unit above a result": Fault(_put("Bends", G4="Fx [N]"), "U02", ("Bends!G4",), '"N"'),
     "unit beside a result": Fault(_put("Bends", C14="N"), "U02", ("Bends!C14",), '"N"'),
     "unit beside an input": Fault(_put("Inputs", C3="bar"), "U02", ("Inputs!C3",), '"bar"'),
+    "unit beside the source of an input": Fault(
+        _put("Bends", C5="=F14", C14=None, B14=None, F14=400.0, G14="bar"), "U02", ("Bends!G14",), '"bar"'
+    ),
+    "unit above a rounded result": Fault(
+        _put(
+            "Bends",
+            G4="Fx [N]",
+            **{
+                f"G{row}": f'=IFERROR(ROUND(TB_BEND("Fx",Units,rho,B{row},C{row},D{row},E{row}),-1),0)'
+                for row in range(FIRST, LAST + 1)
+            },
+        ),
+        "U02",
+        ("Bends!G4",),
+        '"N"',
+    ),
     "unit of another quantity": Fault(_put("Bends", C4="p1 [mm]"), "U02", ("Bends!C4",), "no unit of"),
     "unit above a column of a block": Fault(
         lambda book: (

@@ -120,6 +120,16 @@ def test_several_fluids_with_their_own_labels_are_no_contradiction(tmp_path: Pat
     assert findings(stored(book, tmp_path / "book.xlsx")) == []
 
 
+def test_results_computed_further_have_units_of_their_own(tmp_path: Path) -> None:
+    book = clean_book()
+    ws = book["Bends"]
+    ws["A15"], ws["C15"] = "the same in newtons, rounded", "N"
+    ws["B15"] = '=ROUND(TB_CLOSED("F",Units,B5,Inputs!B3)*1000,0)'
+    ws["A16"], ws["C16"] = "and so", "N"
+    ws["B16"] = '=ROUND(TB_CLOSED("F",Units,B5,Inputs!B3),0)*1000'
+    assert findings(stored(book, tmp_path / "book.xlsx")) == []
+
+
 def test_changing_formulas_are_not_stale(tmp_path: Path) -> None:
     book = clean_book()
     book["Inputs"]["E1"] = "=NOW()"
