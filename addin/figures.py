@@ -9,6 +9,11 @@ import numpy as np
 from .cells import CellError
 
 
+def counted(number: int, noun: str) -> str:
+    """``1 cell``, ``2 cells``."""
+    return f"{number} {noun}{'s' * (number != 1)}"
+
+
 def figure(value: object, digits: int = 6) -> str:
     """Write a cell value with a sensible number of significant figures, plainly where that reads well."""
     if value is None:

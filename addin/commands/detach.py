@@ -6,6 +6,7 @@ import argparse
 import time
 from pathlib import Path
 
+from ..figures import counted
 from ..longhand.detach import Detached
 from .copying import first_lines, write_copy
 
@@ -23,12 +24,12 @@ def run(options: argparse.Namespace) -> int:
     if detached is None:
         return 2
     seconds = time.perf_counter() - started
-    print(f"{detached.cells} cells of ours detached in {seconds:.1f} s: {options.output}")
+    print(f"{counted(detached.cells, 'cell')} of ours detached in {seconds:.1f} s: {options.output}")
     texts = [cell for cell in detached.frozen if cell.reason == "it is a text"]
     lost = [cell for cell in detached.frozen if cell.reason != "it is a text"]
     if texts:
-        print(f"  {len(texts)} texts and headings stand as constants")
+        print(f"  texts and headings that stand as constants: {len(texts)}")
     if lost:
-        print(f"  {len(lost)} cells could not be worked and stand as constants:")
+        print(f"  cells that could not be worked and stand as constants: {len(lost)}")
         print("\n".join(first_lines([f"{cell.where}  {cell.reason}" for cell in lost])))
     return 1 if lost else 0

@@ -88,10 +88,10 @@ def report(
     evaluation: Evaluation, book: Path, target: Path, seconds: float, rows: int, changed: bool
 ) -> list[str]:
     """Lay the outcome out for reading."""
-    cells = len(evaluation.cells)
-    done = f"{cells} cell{'s' * (cells != 1)} with our functions, {evaluation.stored} values"
+    cells = figures.counted(len(evaluation.cells), "cell")
+    values = figures.counted(evaluation.stored, "value")
     where = f"stored in {target}" if changed else "all as they stand in the file"
-    out = [f"{book.name}: {done}, {where} ({seconds:.2f} s)"]
+    out = [f"{book.name}: {cells} with our functions, {values}, {where} ({seconds:.2f} s)"]
     if evaluation.counts:
         out += ["", "Calls"]
         out += figures.table(
@@ -123,7 +123,7 @@ def table_text(table: Table, rows: int) -> list[str]:
     grid = table.grid.tolist()
     shown = grid if len(grid) <= rows else grid[:rows]
     headings = [list(table.labels), list(table.units)]
-    out = [f"{table.sheet}!{table.a1}  {table.function}, {len(grid)} rows"]
+    out = [f"{table.sheet}!{table.a1}  {table.function}, {figures.counted(len(grid), 'row')}"]
     out += figures.table([*headings, *shown], headings=len(headings))
     if len(grid) > len(shown):
         out.append(f"  ... {len(grid) - len(shown)} more rows")

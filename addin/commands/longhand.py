@@ -6,6 +6,7 @@ import argparse
 import time
 from pathlib import Path
 
+from ..figures import counted
 from ..longhand.make import Made
 from ..longhand.summary import Entry
 from .copying import first_lines, write_copy
@@ -35,7 +36,7 @@ def run(options: argparse.Namespace) -> int:
 def report(found: dict[str, list[Entry]], target: Path, seconds: float) -> list[str]:
     """Lay the outcome out for reading."""
     total = sum(map(len, found.values()))
-    out = [f"{total} cells of ours worked long-hand in {seconds:.1f} s: {target}"]
+    out = [f"{counted(total, 'cell')} of ours worked long-hand in {seconds:.1f} s: {target}"]
     for word, entries in found.items():
         if not entries:
             continue
