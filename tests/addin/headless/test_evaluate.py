@@ -221,7 +221,7 @@ def test_kinds_of_values(path: Path) -> None:
     assert found["B2"] == "4"
     assert found["B3"] == "#DIV/0!"
     assert found["B4"] == 0
-    assert found["B5"] in (45295, 45295.0) or found["B5"].isoformat().startswith("2024-01-04")
+    assert found["B5"] == 45295
     assert found["B6"] == "#NUM!"
 
 
