@@ -1,4 +1,4 @@
-"""The one exception of this host that a user is meant to read."""
+"""The one exception over workbook files that a user is meant to read."""
 
 from __future__ import annotations
 
