@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from thrustbook.engine.balance import balance
@@ -16,18 +16,8 @@ from thrustbook.engine.ends import closed, nozzle
 from thrustbook.engine.errors import NoSolution, OutOfRange, Status
 from thrustbook.engine.straights import accel, inline, straight
 
+from .ranges import EAST, WEST, bounded, densities, diameters, flows, losses, powers, pressures
 from .surface import Disc, corrections, thrust
-
-bounded = settings(max_examples=60, deadline=None, derandomize=True)
-densities = st.floats(0.5, 2000.0)
-diameters = st.floats(0.02, 3.0)
-pressures = st.floats(-9e4, 5e6)
-flows = st.floats(-3.0, 3.0)
-losses = st.floats(0.0, 5.0)
-powers = st.sampled_from([math.inf, 7.0, 10.0])
-
-WEST = (-1.0, 0.0, 0.0)
-EAST = (1.0, 0.0, 0.0)
 
 
 def disc_area(D: float) -> float:

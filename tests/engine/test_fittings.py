@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import given
 from hypothesis import strategies as st
 
 from tests.published import load
@@ -16,20 +16,11 @@ from thrustbook.engine.constants import G
 from thrustbook.engine.errors import NoSolution, OutOfRange, Status
 from thrustbook.engine.fittings import bend, reducer, tee
 
+from .ranges import EAST, WEST, bounded, densities, diameters, flows, losses, powers, pressures
 from .surface import Disc, corrections, thrust
 
-bounded = settings(max_examples=60, deadline=None, derandomize=True)
-densities = st.floats(0.5, 2000.0)
-diameters = st.floats(0.02, 3.0)
-pressures = st.floats(-9e4, 5e6)
-flows = st.floats(-3.0, 3.0)
 angles = st.floats(0.0, math.pi)
-losses = st.floats(0.0, 5.0)
 rises = st.floats(-20.0, 20.0)
-powers = st.sampled_from([math.inf, 7.0, 10.0])
-
-WEST = (-1.0, 0.0, 0.0)
-EAST = (1.0, 0.0, 0.0)
 
 
 def turned(theta: float) -> tuple[float, float, float]:
