@@ -107,6 +107,7 @@ def _make_plan(row: Row, result: Cell, units: UnitSet) -> _Plan:
 
 
 def evaluate(row: Row, args: Sequence[Cell]) -> Cell | Grid:
+    """Answer one call of an element function: a cell, or a grid. Raises Refused."""
     plan = _plan(row, args)
     if plan.asked.form != "values":
         return heading_row(plan.asked, plan.units)

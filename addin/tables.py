@@ -242,6 +242,10 @@ def _plain_text(value: Scalar) -> str:
 def match_headings(
     columns: Sequence[Column], rows: list[list[Scalar]], width: int, what: str
 ) -> list[tuple[Column, str | None] | None]:
+    """Find the column, and its unit, that each heading of a range names; None for an empty heading.
+
+    ``rows`` are one row of names, or names and units. Raises Refused.
+    """
     if len(rows) > 2:
         if len(rows[0]) == 1 and len(rows) == width:  # headings written downwards
             rows = [[row[0] for row in rows]]

@@ -110,6 +110,7 @@ class Argument:
 
 
 def outcome_shape(item: Part | Call) -> Shape:
+    """Rows and columns of what an item gives."""
     outcome = item.outcome if isinstance(item, Call) else None
     return (1, 1) if outcome is None else outcome.shape
 

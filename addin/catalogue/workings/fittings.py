@@ -37,6 +37,12 @@ def _push(i: str, p: str, q: str) -> Step:
     )
 
 
+_PRESSURE_2 = Step(
+    "p2'",
+    "pressure at section 2: as given, or by Bernoulli's equation",
+    "pressure",
+    'IF({p2}="",{p1}+{q1}-{q2}-{dpK}-{rho}*{g}*{dz},{p2})',
+)
 _MAGNITUDE = Step("F", "magnitude of the thrust", "force", "SQRT({Fx}^2+{Fy}^2)")
 _DIRECTION = Step(
     "dir",
@@ -66,12 +72,7 @@ TB_BEND = Longhand(
         _dynamic("1"),
         _dynamic("2"),
         Step("dpK", "loss K rho V1²/2, along the flow", "loss", "{K}*{rho}*{V1}^2/2*SIGN({Q})"),
-        Step(
-            "p2'",
-            "pressure at section 2: as given, or by Bernoulli's equation",
-            "pressure",
-            'IF({p2}="",{p1}+{q1}-{q2}-{dpK}-{rho}*{g}*{dz},{p2})',
-        ),
+        _PRESSURE_2,
         _push("1", "p1", "Q"),
         _push("2", "p2'", "Q"),
         Step("Fx", "thrust along x: push at 1 less that at 2", "force", "{M1}-{M2}*COS({theta})"),
@@ -98,12 +99,7 @@ TB_REDUCER = Longhand(
             "loss",
             "{K}*{rho}*MAX({V1}^2,{V2}^2)/2*SIGN({Q})",
         ),
-        Step(
-            "p2'",
-            "pressure at section 2: as given, or by Bernoulli's equation",
-            "pressure",
-            'IF({p2}="",{p1}+{q1}-{q2}-{dpK}-{rho}*{g}*{dz},{p2})',
-        ),
+        _PRESSURE_2,
         _push("1", "p1", "Q"),
         _push("2", "p2'", "Q"),
         Step("Fx", "thrust along x: push at 1 less that at 2", "force", "{M1}-{M2}"),

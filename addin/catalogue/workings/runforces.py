@@ -195,6 +195,7 @@ _REMARKS = (
 
 
 def remarks() -> Iterator[RowStep]:
+    """A step for each remark that a node can have, and the note that joins them."""
     for symbol, text, test, last in _REMARKS:
         yield RowStep(
             symbol,
@@ -224,6 +225,8 @@ _FITTING = (
 
 
 def fitting() -> RowStep:
+    """What a node is, in words."""
+
     def words(at: int) -> str:
         parts = "&".join(f'IF({row[at] or row[1]},", {row[0]}","")' for row in _FITTING)
         return f'MID({parts}&IF(({parts})="",", straight",""),3,99)'

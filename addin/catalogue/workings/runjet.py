@@ -12,6 +12,7 @@ TRIALS = 9
 
 
 def trial(k: int) -> Iterator[RowStep]:
+    """What one trial of the flow loses at a node and along its leg."""
     re = f"MAX({{Rt{k}}},4000)"
     yield RowStep(
         f"Vt{k}", f"trial {k}: velocity", "velocity", f"IF({{A2}}=0,0,({{Qt{k}}}+({{QT}}-{{SQ}}))/{{A2}})"
@@ -58,6 +59,7 @@ def trial(k: int) -> Iterator[RowStep]:
 
 
 def trial_flow(k: int) -> Step:
+    """The flow that a trial starts from: none, then that without losses, then by the secant."""
     if k == 0:
         formula = "0"
     elif k == 1:
@@ -70,6 +72,7 @@ def trial_flow(k: int) -> Step:
 
 
 def trial_rest(k: int) -> Step:
+    """The head that the flow of a trial leaves over."""
     return Step(
         f"Rest{k}",
         f"trial {k}: head left over",
