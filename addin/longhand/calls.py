@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Protocol, TypeAlias
 
@@ -118,6 +118,16 @@ def all_calls(items: Items) -> list[Call]:
                 found += all_calls(arg)
             found.append(item)
     return found
+
+
+def everything(items: Items) -> Iterator[Part]:
+    """Every part in the items, and in the arguments of the calls among them."""
+    for item in items:
+        if isinstance(item, Call):
+            for arg in item.args:
+                yield from everything(arg)
+        else:
+            yield item
 
 
 def render(items: Items, operand: Callable[[str], str], call: Callable[[Call], str]) -> str:

@@ -36,12 +36,11 @@ class Made:
 
         self.package = package
         source = Source(package, progress)
-        if source.valueless:
-            count = len(source.valueless)
+        missing = source.without_value()
+        if missing is not None:
             raise Refusal(
-                f"{count} formula{'s' if count > 1 else ''} of this workbook hold no value, the first in "
-                f"{source.valueless[0]}. Run thrustbook evaluate --fill first, or save the workbook in the "
-                "spreadsheet program."
+                f"{missing} is a TB_ formula, or is read by one, and holds no value. Run thrustbook evaluate "
+                "--fill first, or save the workbook in the spreadsheet program."
             )
         with collection_paused():
             self.book = Book(source, progress)

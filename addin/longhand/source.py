@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any, NamedTuple
@@ -25,7 +25,7 @@ from ..xlsx.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
 from ..xlsx.formulashift import MovableFormula
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
-from .calls import Call, Items, NotWorked, all_calls, render, tree
+from .calls import Call, Items, NotWorked, all_calls, everything, render, tree
 from .grid import quoted_sheet
 
 _RANGE = re.compile(
@@ -98,15 +98,45 @@ class Source:
         self._parts = {sheet.name.casefold(): sheet for sheet in package.sheets}
         self._values: dict[str, dict[tuple[int, int], Scalar]] = {}
         self.cells: list[TbCell] = []
-        self.valueless: list[str] = []
-        """Formula cells that hold no stored value."""
+        self._valueless: dict[str, set[tuple[int, int]]] = {}
+        """By sheet the formula cells that hold no stored value."""
         for number, sheet in enumerate(package.sheets):
             if progress is not None:
                 progress("read", number, len(package.sheets))
             for cell in formula_cells(package.part(sheet.part), package.shared_strings):
                 if cell.value is None and cell.kind != "table":
-                    self.valueless.append(f"{sheet.name}!{to_a1(cell.row, cell.col)}")
+                    self._valueless.setdefault(sheet.name, set()).add((cell.row, cell.col))
                 self._take(sheet.name, cell)
+
+    def without_value(self) -> str | None:
+        """The first formula cell that holds no value although a TB_ call stands in it or reads it."""
+        if not self._valueless:
+            return None
+        for cell in self.cells:
+            own = Area(cell.sheet, cell.cell.row, cell.cell.col, cell.cell.row, cell.cell.col)
+            for area in (own, *self._read(cell)):
+                found = self._empty_in(area)
+                if found is not None:
+                    return f"{area.sheet}!{to_a1(*found)}"
+        return None
+
+    def _read(self, cell: TbCell) -> Iterator[Area]:
+        for item in everything(cell.items):
+            if item.kind is Kind.REFERENCE:
+                try:
+                    area = self.area(item.text, cell.sheet)
+                except NotWorked:
+                    continue
+                if area is not None:
+                    yield area
+
+    def _empty_in(self, area: Area) -> tuple[int, int] | None:
+        places = self._valueless.get(area.sheet, set())
+        if area.shape == (1, 1):
+            return (area.r1, area.c1) if (area.r1, area.c1) in places else None
+        return min(
+            (p for p in places if area.r1 <= p[0] <= area.r2 and area.c1 <= p[1] <= area.c2), default=None
+        )
 
     @cached_property
     def _calling_names(self) -> bool:

@@ -10,6 +10,7 @@ import openpyxl
 import pytest
 
 from thrustbook.addin.cli import main
+from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.longhand.make import Made
 from thrustbook.addin.xlsx.package import Package
@@ -91,9 +92,25 @@ def test_a_stale_value_is_found(book: Path, tmp_path: Path) -> None:
 def test_a_workbook_without_values_is_refused(book: Path, tmp_path: Path) -> None:
     path = tmp_path / "empty.xlsx"
     openpyxl.load_workbook(book).save(path)
-    with pytest.raises(Refusal, match="hold no value"):
+    with pytest.raises(Refusal, match="holds no value"):
         Made(Package.read(path))
     assert main(["longhand", str(path)]) == 2
+
+
+def test_values_that_no_call_reads_may_be_missing(book: Path, tmp_path: Path) -> None:
+    path, unread = tmp_path / "one.xlsx", openpyxl.load_workbook(book)
+    unread["Units"]["F1"] = "=F2"
+    unread["Units"]["F2"] = "=F1"
+    unread.save(path)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package, fill_native=True).replaced)
+    assert len(Made(Package.read(path)).verdicts()["agrees"]) == 32
+    unread[SHEET]["C7"] = "=400+70"
+    unread.save(path)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package).replaced)
+    with pytest.raises(Refusal, match=r"Calc's sheet!C7 .* holds no value"):
+        Made(Package.read(path))
 
 
 def test_a_workbook_with_checking_sheets_is_refused(copy: Path) -> None:
