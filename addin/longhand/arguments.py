@@ -23,6 +23,8 @@ Written = Callable[[Call], str]
 """How a call inside an argument is written: a reference to its long-hand result."""
 
 _QUANTITY = re.compile(r"\s*[-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?\s*(\S.*?)\s*")
+_WORDS = ("choice", "text", "any")
+"""Roles of arguments that are no numbers."""
 
 
 @dataclass(slots=True, eq=False)
@@ -215,14 +217,18 @@ def taken(
             return value, None
         if not isinstance(value, str):
             return Formula(str(value)), None
-        own = None if arg.role == "choice" else own_unit(value, arg.role)
-        if own is None:
+        if arg.role in _WORDS:
             return value, None
+        own = own_unit(value, arg.role)
+        if own is None:
+            return Formula("#VALUE!"), None  # a spreadsheet would take "10" for a number
         return float(value.strip()[: -len(str(own.unit))].strip()), own
     text = argument.text(written, i, j)
     if argument.form == "area":
         value = argument.value(i, j)
-        if isinstance(value, str) and arg.role != "choice" and not is_blank(value):
+        if arg.role in _WORDS:
+            return linked(text), None
+        if isinstance(value, str) and not is_blank(value):
             own = own_unit(value, arg.role)
             if own is not None:
                 name = str(own.unit)
@@ -230,8 +236,8 @@ def taken(
                 digits = f"TRIM(LEFT({trimmed},LEN({trimmed})-{len(name)}))"
                 same = f"EXACT(RIGHT({trimmed},{len(name)}),{quoted(name)})"
                 return Formula(f"IF({same},VALUE({digits}),#VALUE!)"), own
-        if isinstance(value, bool):
-            return Formula(f"IF(ISLOGICAL({text}),#VALUE!,{linked(text).text})"), None
+        if isinstance(value, bool) or (isinstance(value, str) and not is_blank(value)):
+            return Formula(f"IF(OR(ISTEXT({text}),ISLOGICAL({text})),#VALUE!,{linked(text).text})"), None
         return linked(text), None
     return Formula(text), None
 

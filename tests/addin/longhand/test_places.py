@@ -37,15 +37,16 @@ def book(tmp_path: Path) -> Path:
     sheet["H2"] = ArrayFormula("H2:I3", '=TB_AREA("metric",A2)')
     sheet["J2"] = '=TB_AREA("metric",INDIRECT("A!A3"))'
     sheet["K2"] = '=TB_AREA("metric",TRUE)'
-    sheet["A9"] = True
+    sheet["A9"], sheet["A10"] = True, "100"
     sheet["K3"] = '=TB_AREA("metric",A9)'
+    sheet["K4"], sheet["K5"] = '=TB_AREA("metric","100")', '=TB_AREA("metric",A10)'
     book.save(path)
     return evaluated(path)
 
 
 def test_every_cell_agrees(book: Path) -> None:
     found = Made(Package.read(book)).verdicts()
-    assert {e.cell.where for e in found["error"]} == {"A!K2", "A!K3"}
+    assert {e.cell.where for e in found["error"]} == {"A!K2", "A!K3", "A!K4", "A!K5"}
     assert not found["differs"]
     assert not found["not worked"]
 
@@ -59,7 +60,7 @@ def test_detached_copy_after_a_change(book: Path, tmp_path: Path) -> None:
     without = recalculated(changed(copy, changes, tmp_path / "plain.xlsx"), tmp_path)
     assert same(values(engine, "A", "C2:K7"), values(without, "A", "C2:K7")) == 24
     assert same(values(engine, "B", "B1:B1"), values(without, "B", "B1:B1")) == 1
-    assert values(without, "A", "K2:K3") == [["#VALUE!"], ["#VALUE!"]]
+    assert values(without, "A", "K2:K5") == [["#VALUE!"]] * 4
 
 
 @pytest.mark.parametrize(
