@@ -18,7 +18,7 @@ def configure(parser: argparse.ArgumentParser) -> None:
 
 
 def run(options: argparse.Namespace) -> int:
-    """Make the copy; 0: every number recalculates, 1: some stand as constants, 2: refused."""
+    """Make the copy; 0: every number recalculates, 1: some stand as constants or need the add-in still, 2: refused."""
     started = time.perf_counter()
     detached = write_copy(options.book, options.output, Detached)
     if detached is None:
@@ -32,4 +32,7 @@ def run(options: argparse.Namespace) -> int:
     if lost:
         print(f"  cells that could not be worked and stand as constants: {len(lost)}")
         print("\n".join(first_lines([f"{cell.where}  {cell.reason}" for cell in lost])))
-    return 1 if lost else 0
+    if detached.outside:
+        print(f"  conditional formats and validations that need the add-in still: {len(detached.outside)}")
+        print("\n".join(first_lines(detached.outside)))
+    return 1 if lost or detached.outside else 0

@@ -9,6 +9,7 @@ from typing import NamedTuple
 from lxml import etree
 
 from ..cells import CellError, Scalar
+from ..hosts.headless.elsewhere import elsewhere
 from ..hosts.headless.plainvalues import evaluate_sheets
 from ..progress import Progress
 from ..xlsx.opc import MAIN, parse
@@ -49,6 +50,13 @@ class Detached:
         self.frozen: list[Frozen] = []
         self.cells = 0
         self._formulas: dict[str, dict[Place, str]] = {}
+        names = self.made.book.source.names
+        self.outside = [
+            f"{sheet.name}!{where.split()[0]}  {formula}"
+            for sheet in package.sheets
+            for where, formula in elsewhere(package.part(sheet.part), names, sheet.name)
+        ]
+        """Conditional formats and validations that call the functions still."""
         for entry in self.made.book.entries:
             for place, formula in self._of_entry(entry):
                 self._formulas.setdefault(entry.cell.sheet, {})[place] = formula

@@ -8,6 +8,7 @@ from pathlib import Path
 
 import openpyxl
 import pytest
+from openpyxl.formatting.rule import FormulaRule
 
 from thrustbook.addin.cli import main
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
@@ -153,6 +154,20 @@ def test_detached_copy_calls_nothing_of_ours(book: Path, tmp_path: Path) -> None
         for cell in row:
             assert not re.search(r"TB_\w+\(", str(cell.value)), cell.coordinate
     assert {frozen.reason for frozen in detached.frozen} == {"it is a text"}
+
+
+def test_detached_copy_tells_what_calls_still(
+    book: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path, copy = tmp_path / "format.xlsx", tmp_path / "copy.xlsx"
+    with_format = openpyxl.load_workbook(book)
+    rule = FormulaRule(formula=["TB_AREA(Units,A4)>1"], stopIfTrue=True)
+    with_format[SHEET].conditional_formatting.add("A4:A9", rule)
+    with_format.save(path)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package, fill_native=True).replaced)
+    assert main(["detach", str(path), "-o", str(copy)]) == 1
+    assert "Calc's sheet!A4:A9  TB_AREA(Units,A4)>1" in capsys.readouterr().out
 
 
 def test_the_units_of_the_book_are_those_of_the_test() -> None:
