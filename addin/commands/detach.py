@@ -18,7 +18,7 @@ def configure(parser: argparse.ArgumentParser) -> None:
 
 
 def run(options: argparse.Namespace) -> int:
-    """Make the copy; 0: every number recalculates, 1: some stand as constants or need the add-in still, 2: refused."""
+    """Make the copy; 0: all recalculates, 1: some stand as constants or need the add-in still, 2: refused."""
     started = time.perf_counter()
     detached = write_copy(options.book, options.output, Detached)
     if detached is None:
