@@ -127,7 +127,8 @@ class Relink(_Service, XJobExecutor):
             _show(document, f"The formulas could not be linked: {error}")
             return
         if count:
-            _show(document, f"{count} formulas were linked to the functions of thrustbook.")
+            formulas = "1 formula was" if count == 1 else f"{count} formulas were"
+            _show(document, f"{formulas} linked to the functions of thrustbook.")
 
 
 class Batch(_Service, XJobExecutor):
