@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
+from .. import dispatch
 from ..cells import CellError, Scalar
 from ..figures import figure
 from ..hosts.headless.elsewhere import elsewhere
@@ -20,6 +21,8 @@ OF_LARGEST = 1e-12
 """The same as a fraction of the largest number in the same result: rounding of what should be zero."""
 _FOLLOWS = "no result: "
 """How the message of a row begins that has no result because of another row."""
+_COVERS = ("IFERROR(", "IFNA(", "ISERR", "ISNUMBER(", "ISNA(", "AGGREGATE(", "COUNT(")
+"""Functions by which a formula can go on after an error."""
 _VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
 
 
@@ -213,10 +216,35 @@ def not_checked(book: Book) -> Iterator[Finding]:
             )
 
 
+def covered(book: Book) -> Iterator[Finding]:
+    """V06: a call fails, and the formula around it shows a number instead."""
+    remarks = []
+    for call in book.calls:
+        node = call.node
+        shown = book.results.values.get(node.index)
+        if not isinstance(shown, float) or not any(word in node.cell.text.upper() for word in _COVERS):
+            continue
+        answer = dispatch.call(call.row.name, call.values)
+        if isinstance(answer, CellError):
+            remarks.append(
+                Remark(
+                    book.sheet(node.sheet),
+                    node.cell.row,
+                    node.cell.col,
+                    f"{call.row.name} {book.signatures[node.index]}",
+                    f"{call.row.name} fails ({answer}), and the formula shows {figure(shown)} instead",
+                    f"The reason: {answer.message or answer}. A sum over such cells does not tell it.",
+                    f"{answer} {figures(shown)}",
+                )
+            )
+    yield from joined("V06", Severity.WARNING, remarks)
+
+
 RULES = (
     Rule("V01", "stored value differs from recomputation", stale),
     Rule("V02", "no value stored", missing),
     Rule("V03", "error value", errors),
     Rule("V04", "formula not recomputed", not_recomputed),
     Rule("V05", "formula outside the cells", not_checked),
+    Rule("V06", "failed call covered by a number", covered),
 )

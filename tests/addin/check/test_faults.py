@@ -127,6 +127,13 @@ FAULTS = {
     "formula in a validation, through a name": Fault(
         _validation_through_a_name, "V05", ("Bends!B5:B10",), "B5<Enough", Severity.NOTE
     ),
+    "error covered by a number": Fault(
+        _put("Bends", B14='=IFERROR(TB_CLOSED("F",Units,-5,Inputs!B3),0)'),
+        "V06",
+        ("Bends!B14",),
+        "#NUM!",
+        W,
+    ),
     "number over a formula": Fault(_put("Bends", G8=5.0), "P01", ("Bends!G8",), "5 stands"),
     "number over the last formula": Fault(
         _put("Bends", **{f"G{LAST}": 5.0}), "P01", (f"Bends!G{LAST}",), "5"

@@ -130,6 +130,13 @@ def test_results_computed_further_have_units_of_their_own(tmp_path: Path) -> Non
     assert findings(stored(book, tmp_path / "book.xlsx")) == []
 
 
+def test_errors_covered_by_a_text_show_themselves(tmp_path: Path) -> None:
+    book = clean_book()
+    book["Bends"]["B15"] = '=IFERROR(TB_CLOSED("F",Units,-5,Inputs!B3),"not in use")'
+    book["Bends"]["B16"] = '=IFERROR(TB_CLOSED("F",Units,B5,Inputs!B3),0)'
+    assert findings(stored(book, tmp_path / "book.xlsx")) == []
+
+
 def test_changing_formulas_are_not_stale(tmp_path: Path) -> None:
     book = clean_book()
     book["Inputs"]["E1"] = "=NOW()"
