@@ -90,10 +90,11 @@ def build() -> Workbook:
         [*ENVELOPE, *(f"F, {case[0]}" for case in CASES)],
         ENVELOPE + tuple(f"F, {case[0]}" for case in CASES),
     )
-    fittings(layout.sheet(book, "Fittings", (34, 12, 8, 30, 12, 8, 12, 10)), _node, _input)
+    fittings(layout.sheet(book, "Fittings", (34, 12, 8, 30, 12, 8, 12, 10), landscape=False), _node, _input)
     _run_data(book)
     _cases_data(book)
     _cover(cover)
+    book["Fittings"].page_setup.fitToHeight = 1
     _grade_lines(book["Run"], book["Inputs"])
     _thrusts(book["Cases"])
     book.active = 0
@@ -262,7 +263,7 @@ def _reading_sheet(
                 _format(column),
             )
             if _format(column) == "@":
-                ws[place].alignment = Alignment(indent=1)
+                ws[place].alignment = Alignment(horizontal="left", indent=1)
     layout.freeze(ws, f"B{FIRST}")
     layout.repeat_rows(ws, FIRST - 2, FIRST - 1)
 
