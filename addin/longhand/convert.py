@@ -84,10 +84,15 @@ def not_given(row: Row, arg: Arg) -> Content | None:
 
 
 def agreement(value: str, own: str, tolerance: str, scale: str) -> str:
-    """The verdict on a cell: "agrees", "differs", or "error" where both sides are errors."""
+    """The verdict on a cell: "agrees", "differs", or "error" where both sides are errors.
+
+    A text into which a number was written says "agrees" or, as its last figures may be
+    rounded another way, "text".
+    """
     allowed = f"{tolerance}*MAX(ABS({value}),ABS({own})"
     allowed += f",0.000001*{scale})" if scale else ")"
     return (
         f'IF(ISERROR({own}),IF(ISERROR({value}),"error","differs"),'
-        f'IF(ISERROR({value}),"differs",IF(ABS({value}-{own})<={allowed},"agrees","differs")))'
+        f'IF(ISERROR({value}),"differs",IF(ISTEXT({own}),IF({value}={own},"agrees","text"),'
+        f'IF(ABS({value}-{own})<={allowed},"agrees","differs"))))'
     )

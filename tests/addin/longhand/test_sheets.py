@@ -172,3 +172,20 @@ def test_detached_copy_tells_what_calls_still(
 
 def test_the_units_of_the_book_are_those_of_the_test() -> None:
     assert dict(UNITS)["force"] == "kN"
+
+
+def test_a_text_with_a_number_in_it_is_no_error(tmp_path: Path) -> None:
+    path = tmp_path / "text.xlsx"
+    book = openpyxl.Workbook()
+    sheet = book.active
+    assert sheet is not None
+    sheet["A1"] = 300
+    sheet["B1"] = '=TB_AREA("metric",A1)&" m2"'
+    sheet["B2"] = '=TB_AREA("metric",A1)'
+    book.save(path)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package).replaced)
+    found = Made(Package.read(path)).verdicts()
+    assert not found["error"]
+    assert not found["differs"]
+    assert [e.cell.where for e in found["agrees"]] in (["Sheet!B1", "Sheet!B2"], ["Sheet!B2"])
