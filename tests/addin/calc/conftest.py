@@ -6,6 +6,8 @@ from collections.abc import Iterator
 
 import pytest
 
+from tests import libreoffice
+
 from .office import Office
 
 
@@ -21,3 +23,9 @@ def book(office: Office) -> Iterator[int]:
     number = office.new()
     yield number
     office.close(number)
+
+
+@pytest.fixture(scope="session")
+def real_office() -> None:
+    """For tests in which the product itself finds and starts the office."""
+    libreoffice.program()

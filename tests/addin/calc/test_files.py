@@ -262,6 +262,7 @@ def test_opening_and_closing_again_and_again_keeps_little(office: Office, pipe_r
     assert office.processes("hosts.calc.worker") == [worker_pid]
 
 
+@pytest.mark.usefixtures("real_office")
 def test_evaluated_with_calc_as_by_the_embedded_engine(
     pipe_run: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
@@ -309,6 +310,7 @@ def contract_book(path: Path) -> Path:
     return path
 
 
+@pytest.mark.usefixtures("real_office")
 def test_contract_is_the_same_with_calc_and_with_the_embedded_engine(tmp_path: Path) -> None:
     package = Package.read(contract_book(tmp_path / "book.xlsx"))
     calc, headless = evaluate_in_calc(package), evaluate_workbook(package)
@@ -326,6 +328,7 @@ def test_contract_is_the_same_with_calc_and_with_the_embedded_engine(tmp_path: P
     assert calc.not_evaluated == headless.not_evaluated
 
 
+@pytest.mark.usefixtures("real_office")
 @pytest.mark.parametrize(("held", "blocked"), [("D1:D2", ""), ("D1:D9", ""), ("D1", "D4")])
 def test_spilling_formula_gets_the_extent_of_its_result(tmp_path: Path, held: str, blocked: str) -> None:
     path = tmp_path / "book.xlsx"
@@ -377,6 +380,7 @@ def test_office_that_does_not_answer_is_stopped(tmp_path: Path, monkeypatch: pyt
         evaluate_in_calc(package, timeout=1.0)
 
 
+@pytest.mark.usefixtures("real_office")
 def test_installed_removed_and_again(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
