@@ -63,7 +63,8 @@ ROLES: Final[Mapping[str, Role]] = {
     "ratio": Role("plain number", "-", "-", "-"),
 }
 
-SETS: Final = {"si": "si", "metric": "metric", "us": "us"}
+SETS: Final = {"si": "SI", "metric": "metric", "us": "US"}
+"""Named unit set, its column in ``Role`` -> how it is written."""
 
 _ZERO: Final[Mapping[str, Fraction]] = {
     # NIST SP 811 appendix B.8: the zero of each scale in kelvin. Exact, so that 20 degC is 68 degF.
@@ -236,7 +237,7 @@ def named_set(name: str) -> UnitSet:
     key = name.strip().lower()
     if key not in SETS:
         raise UnitError(f'unit set "{name}" is not known; expected SI, metric, US or a range of role | unit')
-    return UnitSet({"si": "SI", "metric": "metric", "us": "US"}[key], SETS[key])
+    return UnitSet(SETS[key], key)
 
 
 @functools.lru_cache(maxsize=256)
@@ -253,7 +254,7 @@ def _ranged_set(rows: tuple[tuple[Scalar, ...], ...]) -> UnitSet:
         if not isinstance(symbol, str) or not symbol.strip():
             raise UnitError(f'units: no unit is given for "{role}"')
         if key in ("set", "base"):
-            base = SETS.get(symbol.strip().lower()) or named_set(symbol).name
+            base = named_set(symbol).name.lower()
             continue
         if key not in ROLES:
             near = difflib.get_close_matches(key, ROLES, n=1, cutoff=0.6)

@@ -12,7 +12,7 @@ from ..check.accept import Accepted, BadList, written
 from ..check.run import Report, check
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
-from .progress import Progress
+from .progress import ProgressLine
 
 _EXIT = "exit status: 0 no finding, or notes alone; 1 warnings; 2 refused, nothing was checked; 3 errors"
 
@@ -55,7 +55,7 @@ def run(options: argparse.Namespace) -> int:
             )
         accepted = Accepted.read(options.accept) if options.accept is not None else None
         package = Package.read(book)
-        with Progress() as progress:
+        with ProgressLine() as progress:
             report = check(package, accepted, progress=progress)
         if output is not None:
             _save(package, report, output)

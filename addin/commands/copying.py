@@ -32,7 +32,7 @@ def write_copy(book: Path, target: Path, make: Callable[[Package, Progress], Any
         if target.exists() and book.exists() and target.samefile(book):
             raise Refusal("The copy must not replace the workbook. Give another name for it.")
         package = Package.read(book)
-        with terminal.Progress() as progress:
+        with terminal.ProgressLine() as progress:
             copy = make(package, progress)
             copy.save(target)
     except Refusal as refusal:

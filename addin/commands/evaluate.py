@@ -17,7 +17,7 @@ from ..cells import CellError
 from ..hosts.headless.evaluate import Evaluation, Failed, Kept, Table, evaluate_workbook
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
-from .progress import Progress
+from .progress import ProgressLine
 
 LIST = 20
 """Findings of one kind that are listed before the rest is counted."""
@@ -51,7 +51,7 @@ def run(options: argparse.Namespace) -> int:
     target: Path = options.output or options.book
     try:
         package = Package.read(options.book)
-        with Progress() as progress:
+        with ProgressLine() as progress:
             evaluation = _evaluator(options.host)(package, progress=progress, fill_native=options.fill)
         changed = {part: data for part, data in evaluation.replaced.items() if data != package.part(part)}
         wrote = bool(changed) or target.resolve() != options.book.resolve()

@@ -10,14 +10,14 @@ QUIET = 1.0
 """Seconds before anything is shown: short work needs no progress."""
 
 
-class Progress:
+class ProgressLine:
     """Called as ``progress(stage, done, total)``; rewrites one line on a terminal."""
 
     def __init__(self) -> None:
         self._started = self._shown = time.monotonic()
         self._written = 0
 
-    def __enter__(self) -> Progress:
+    def __enter__(self) -> ProgressLine:
         return self
 
     def __exit__(
