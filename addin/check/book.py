@@ -11,13 +11,14 @@ from ..hosts.headless.dependency import Reference
 from ..hosts.headless.formulas import Kind, Unreadable, take_apart
 from ..hosts.headless.host import Functions, Host
 from ..hosts.headless.model import Model, Node
+from ..hosts.headless.probe import Probe, Recorder
 from ..hosts.headless.results import Results
 from ..hosts.headless.settle import Settlement
 from ..progress import Progress, ticker
 from ..xlsx.a1 import to_a1
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import stored_values
-from .calls import Call, Recorder, read_calls
+from .calls import Call, read_calls
 from .labels import Surroundings
 from .relative import moving, relative_form
 
@@ -37,10 +38,11 @@ class Book:
         self.progress = progress
         self.remarks: list[str] = []
         """What a reader of the report should know of the check itself."""
-        self.recorder = Recorder(Functions.of_catalogue())
-        self.model = Model(package, self.recorder.functions, progress)
+        recorder = Recorder(Functions.of_catalogue())
+        self.model = Model(package, recorder.functions, progress)
         tick = ticker(progress, "evaluate", sum(len(node.calls) for node in self.model.nodes))
-        self.settlement = Settlement(self.model, Host(self.recorder.functions, tick))
+        self.settlement = Settlement(self.model, Host(recorder.functions, tick))
+        self.probe = Probe(self.settlement, recorder)
         self.settlement.settle()
         self.affected = self.settlement.affected()
         computed = [n.index for n in self.model.nodes if n.index not in self.settlement.kept]

@@ -6,14 +6,13 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Arg, Row
 from ..cells import Cell, Refused
 from ..hosts.headless.dependency import Reference
 from ..hosts.headless.formulas import Kind, Part, Unreadable, function_name, take_apart
-from ..hosts.headless.host import Functions
 from ..hosts.headless.model import Node
 from ..leading import Wanted, read_units, wanted
 from ..longhand.calls import Call as Written
@@ -27,20 +26,6 @@ if TYPE_CHECKING:
 
 _PASSING = frozenset(("ABS", "IFERROR", "IFNA", "ROUND", "ROUNDDOWN", "ROUNDUP"))
 _BEHIND = (Kind.COMMA, Kind.CLOSE, Kind.PAREN_CLOSE, Kind.LITERAL)
-
-
-class Recorder:
-    """Keeps the arguments of the last call that went through it."""
-
-    def __init__(self, functions: Functions) -> None:
-        self.last: tuple[str, Sequence[Cell]] | None = None
-        self._call = functions.call
-        self.functions = Functions(self._record, functions.block)
-
-    def _record(self, name: str, args: Sequence[Cell]) -> Any:
-        answer = self._call(name, args)
-        self.last = name, args
-        return answer
 
 
 @dataclass(slots=True, eq=False)
@@ -176,7 +161,7 @@ def _values(book: Book, node: Node, given: Sequence[Given], number: int) -> list
     for argument in given:
         known, value = _known(book, argument)
         if not known:
-            return _recorded(book, node, number)
+            return book.probe.arguments(node, number)
         out.append(value)
     return out
 
@@ -201,14 +186,3 @@ def _known(book: Book, given: Given) -> tuple[bool, Cell]:
         return True, float(text)
     except ValueError:
         return False, None
-
-
-def _recorded(book: Book, node: Node, number: int) -> list[Cell] | None:
-    """The arguments as the evaluator hands them over, found by letting it work this one call again."""
-    if node.rewritten is None or number >= len(node.rewritten.spans):
-        return None
-    name, first, last = node.rewritten.spans[number]
-    book.recorder.last = None
-    book.settlement.run.try_formula(node, "".join(node.rewritten.pieces[first : last + 1]))
-    recorded = book.recorder.last
-    return list(recorded[1]) if recorded is not None and recorded[0] == name else None

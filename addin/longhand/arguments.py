@@ -12,13 +12,13 @@ from ..cells import Scalar
 from ..hosts.headless.formulas import Kind, Part
 from ..tables import is_blank
 from ..units import UnitError, quantity, unit
-from .calls import Call, Items, NotWorked, render
+from .calls import Call, Items, NotWorked, Shape, render
 from .convert import Conversion
+from .expressions import SINGLE, Survey, element, hands_on_cells, outcome_shape, survey, within
 from .grid import Content, Formula
 from .source import Area, Source, literal
 from .symbols import number, quoted
 
-Shape = tuple[int, int]
 Written = Callable[[Call], str]
 """How a call inside an argument is written: a reference to its long-hand result."""
 
@@ -33,6 +33,7 @@ class Argument:
 
     ``form``: "empty"; "literal" or "array" (constants); "area" (cells); "call" (another
     TB_ call alone); "expression". ``values`` are the stored values of constants and cells.
+    ``extent`` are rows and columns of an expression, ``survey`` what its text tells.
     """
 
     form: Literal["empty", "literal", "array", "area", "call", "expression"]
@@ -41,6 +42,8 @@ class Argument:
     source: Source
     area: Area | None = None
     values: list[list[Any]] | None = None
+    survey: Survey | None = None
+    extent: Shape = SINGLE
 
     @property
     def shape(self) -> Shape:
@@ -49,13 +52,14 @@ class Argument:
             assert self.values is not None
             return len(self.values), len(self.values[0])
         if self.form == "expression":
-            shapes = {a.shape for a in self._loose_areas()} - {(1, 1)}
-            if len(shapes) > 1:
-                raise NotWorked("an argument joins ranges of different sizes")
-            return shapes.pop() if shapes else (1, 1)
-        if self.form == "call":
-            return outcome_shape(self.items[0])
-        return 1, 1
+            return self.extent
+        return outcome_shape(self._call) if self.form == "call" else SINGLE
+
+    @property
+    def _call(self) -> Call:
+        (call,) = self.items
+        assert isinstance(call, Call)
+        return call
 
     def value(self, i: int = 0, j: int = 0) -> Scalar:
         """The value stored now, where it is known without evaluating anything."""
@@ -69,8 +73,7 @@ class Argument:
 
     def _inside(self, i: int, j: int) -> Shape:
         """The place in this argument that serves the place (i, j) of the whole call."""
-        rows, cols = self.shape
-        return (i if rows > 1 else 0), (j if cols > 1 else 0)
+        return within(self.shape, i, j)
 
     def text(self, written: Written, i: int = 0, j: int = 0) -> str:
         """The argument, or one element of it, as a formula on another sheet writes it."""
@@ -80,47 +83,30 @@ class Argument:
                 return self.source.operand(_only(self.items).text, self.sheet)
             return self.area.ref(i, j)
         if self.form == "call":
-            return element_text(self.items[0], written, i, j)
+            return element_text(self._call, written, i, j)
+        items = self.items
+        if self.survey is not None and self.extent != SINGLE:
+            items = element(self.survey, items, i, j, self._element)
+        return render(items, lambda text: self.source.operand(text, self.sheet), written)
 
-        def operand(text: str) -> str:
-            area = self.source.area(text, self.sheet) if self.shape != (1, 1) else None
-            if area is not None and area.shape != (1, 1):
-                return area.ref(i, j)
-            return self.source.operand(text, self.sheet)
-
-        return render(self.items, operand, written)
+    def _element(self, n: int, i: int, j: int) -> str:
+        """One element of an item with several values."""
+        item = self.items[n]
+        if isinstance(item, Call):
+            assert item.outcome is not None
+            return item.outcome.at(i, j)
+        area = self.source.area(item.text, self.sheet)
+        assert area is not None
+        return area.ref(i, j)
 
     def shown(self) -> str:
         """The argument as it stands in the formula."""
         return render(self.items, lambda text: text, lambda call: f"{call.name}(...)")
 
-    def _loose_areas(self) -> list[Area]:
-        """The ranges that stand in no function of the spreadsheet."""
-        found = []
-        depth = 0
-        for item in self.items:
-            if isinstance(item, Call):
-                if outcome_shape(item) != (1, 1):
-                    raise NotWorked("an argument computes with a call that gives several values")
-                continue
-            depth += (item.kind is Kind.OPEN) - (item.kind is Kind.CLOSE)
-            if item.kind is Kind.REFERENCE:
-                area = self.source.area(item.text, self.sheet)
-                if area is not None and depth == 0:
-                    found.append(area)
-        return found
 
-
-def outcome_shape(item: Part | Call) -> Shape:
-    """Rows and columns of what an item gives."""
-    outcome = item.outcome if isinstance(item, Call) else None
-    return (1, 1) if outcome is None else outcome.shape
-
-
-def element_text(item: Part | Call, written: Written, i: int, j: int) -> str:
+def element_text(call: Call, written: Written, i: int, j: int) -> str:
     """One element of what a call gives."""
-    assert isinstance(item, Call)
-    return written(item) if item.outcome is None else item.outcome.at(i, j)
+    return written(call) if call.outcome is None else call.outcome.at(i, j)
 
 
 def _only(items: Items) -> Part:
@@ -143,13 +129,30 @@ def resolve(items: Items, sheet: str, source: Source) -> Argument:
             area = source.area(item.text, sheet)
             if area is not None:
                 return Argument("area", sheet, items, source, area, source.grid(area))
-        return Argument("expression", sheet, items, source)
+        return _expression(items, sheet, source)
     signed = _signed(items)
     if signed is not None:
         return Argument("literal", sheet, items, source, None, [[signed]])
-    if isinstance(items[0], Part) and items[0].kind is Kind.ARRAY_OPEN:
+    kinds = [item.kind for item in items if isinstance(item, Part)]
+    if kinds[0] is Kind.ARRAY_OPEN and kinds.index(Kind.ARRAY_CLOSE) == len(items) - 1:
         return Argument("array", sheet, items, source, None, _array(items))
-    return Argument("expression", sheet, items, source)
+    return _expression(items, sheet, source)
+
+
+def _expression(items: Items, sheet: str, source: Source) -> Argument:
+    found = surveyed(items, sheet, source)
+    extent = found.shape if found.elementwise else SINGLE
+    return Argument("expression", sheet, items, source, survey=found, extent=extent)
+
+
+def surveyed(items: Items, sheet: str, source: Source) -> Survey:
+    """What the text of an expression on a sheet tells of its result."""
+
+    def shape_of(operand: Part) -> Shape | None:
+        area = source.area(operand.text, sheet)
+        return None if area is None else area.shape
+
+    return survey(items, shape_of)
 
 
 def _signed(items: Items) -> float | None:
@@ -239,7 +242,7 @@ def taken(
         if isinstance(value, bool) or (isinstance(value, str) and not is_blank(value)):
             return Formula(f"IF(OR(ISTEXT({text}),ISLOGICAL({text})),#VALUE!,{linked(text).text})"), None
         return linked(text), None
-    return Formula(text), None
+    return linked(text) if hands_on_cells(argument.items) else Formula(text), None
 
 
 def own_unit(text: str, role: str) -> Conversion | None:

@@ -7,8 +7,6 @@ from dataclasses import dataclass, field
 from functools import partial
 from typing import Any, Final
 
-import numpy as np
-
 from ..blocks.schedule import Schedule
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Longhand, NoLonghand, Row
@@ -16,27 +14,29 @@ from ..cells import Refused
 from ..leading import heading_row, wanted
 from ..progress import Progress
 from ..units import UnitError
-from ..xlsx.a1 import to_a1
 from ..xlsx.refusals import Refusal
-from .arguments import Argument, Shape, in_group, resolve, same_datum, taken
+from .arguments import Argument, in_group, resolve, same_datum, taken
 from .block import FIRST as FIRST_BLOCK
-from .block import Block, Check, new_block_sheet
-from .calls import Call, NotWorked, Outcome, render
+from .block import Block, new_block_sheet
+from .calls import Call, NotWorked, Outcome
+from .comparison import Comparison
 from .convert import Conversion
 from .detachtext import constant
-from .grid import Sheet, quoted_sheet
+from .expressions import SINGLE, broadcast
+from .given import Reader
+from .grid import Sheet
 from .outcomes import BlockOutcome, Guard, RowsOutcome, WordsOutcome, named, written
 from .rows import Group, Line, RowSheet
 from .schedule import ScheduleOutcome, plan_schedule, schedule_outcome
 from .source import Source, TbCell, plain
+from .staged import Staged
 from .summary import Entry, Summary
 from .tablecalls import TableCalls
-from .tableplan import TableOutcome
 from .tableread import OfRole
-from .tools import convert_formula
+from .tools import convert_outcome
 from .unitsheet import UnitSheet
 
-SUMMARY, UNITS, CELLS = "Long-hand", "LH units", "LH cells"
+SUMMARY, UNITS, CELLS, STAGED = "Long-hand", "LH units", "LH cells", "LH arrays"
 MOST_LINES: Final = 20_000
 """Rows of one call that get a working."""
 _ROWS_A_SHEET: Final = 60_000
@@ -62,7 +62,9 @@ class Book:
         self.summary = Summary(Sheet(SUMMARY))
         self.units = UnitSheet(Sheet(UNITS))
         self.tables = TableCalls(self.source)
-        self._loose = Block(None, [], lambda role: Conversion("", 1.0))
+        self.staged = Staged(Sheet(STAGED))
+        self.reader = Reader(self.source, self.staged, self.progress)
+        self.comparison = Comparison(self.source, self.staged, self.reader)
         self._known: dict[Any, Any] = {}
         self._rows: dict[str, list[RowsOutcome]] = {}
         count = len(self.source.cells)
@@ -79,25 +81,35 @@ class Book:
         try:
             if cell.trouble:
                 raise NotWorked(cell.trouble)
-            for call in cell.calls:
-                call.outcome = self._call(call, cell)
-            self._check(cell, entry)
+            calls = cell.calls
+            taken_whole = {
+                id(items[0]) for call in calls for items in (*call.args, cell.items) if len(items) == 1
+            }
+            for number, call in enumerate(calls):
+                call.outcome = outcome = self._call(call, number, cell)
+                if outcome.shape != SINGLE and not outcome.one_range and id(call) not in taken_whole:
+                    call.range = self.staged.results(cell, f"{call.name}(...)", outcome).text()
+            self.comparison.add(cell, entry)
         except NotWorked as reason:
             entry.trouble = str(reason)
         except (Refused, UnitError) as refusal:
             entry.trouble = str(refusal)
         return entry
 
-    def _call(self, call: Call, cell: TbCell) -> Outcome:
+    def _call(self, call: Call, number: int, cell: TbCell) -> Outcome:
         row = CATALOGUE.get(call.name)
         if row is None:
             raise NotWorked(f"there is no function {call.name}")
-        given = [resolve(items, cell.sheet, self.source) for items in call.args]
-        if row.kind == "tool":
-            return self._tool(row, given, cell)
-        empty = resolve([], cell.sheet, self.source)
-        if row.max_args is not None and len(given) > row.max_args:
+        if row.max_args is not None and len(call.args) > row.max_args:
             raise NotWorked(f"{row.name} takes at most {row.max_args} arguments")
+        if row.name == "TB_CONVERT":
+            return convert_outcome(self.reader.arguments(call, number, cell, row))
+        if row.kind == "tool":
+            if len(cell.items) != 1:
+                raise NotWorked(f"{row.name} gives a text inside another formula")
+            return WordsOutcome([[cell.cell.value]])
+        given = self.reader.arguments(call, number, cell, row)
+        empty = resolve([], cell.sheet, self.source)
         given += [empty] * (row.leading + len(row.args) - len(given))
         units = given[row.leading - 1]
         results, single, guard = tuple(r.name for r in row.results), True, None
@@ -123,14 +135,6 @@ class Book:
         if all(shape == (1, 1) for shape in shapes):
             return self._block(row, units, arguments, results, guard)
         return self._elements(row, units, arguments, results, single, guard, cell)
-
-    def _tool(self, row: Row, given: list[Argument], cell: TbCell) -> Outcome:
-        if row.name == "TB_CONVERT":
-            return WordsOutcome([[None]], convert_formula(given))
-        value = cell.cell.value
-        if len(cell.items) != 1:
-            raise NotWorked(f"{row.name} gives a text inside another formula")
-        return WordsOutcome([[value]])
 
     def _key(self, row: Row, units: Argument, arguments: list[Argument]) -> Any:
         return row.name, units.text(named), *(self._text(a, named) for a in arguments)
@@ -170,7 +174,7 @@ class Book:
         guard: Guard | None,
         cell: TbCell,
     ) -> RowsOutcome:
-        elements = _broadcast([a.shape for a in arguments])
+        elements = broadcast([a.shape for a in arguments])
         if not single and min(elements) > 1:
             raise NotWorked("several results take ranges of one row or one column")
         count = elements[0] * elements[1]
@@ -220,64 +224,12 @@ class Book:
             notes = {i: constant(values.get((cell.cell.row + i, col))) for i in range(plan.table.size)}
         return schedule_outcome(row, plan, of_role, results, guard, notes)
 
-    # The cells that show the results
-
-    def _check(self, cell: TbCell, entry: Entry) -> None:
-        only = cell.items[0] if len(cell.items) == 1 else None
-        if not isinstance(only, Call):
-            if cell.cell.ref is not None and cell.cell.ref[:2] != cell.cell.ref[2:]:
-                raise NotWorked("the formula fills several cells and is not one call alone")
-            plain(cell.items, self.source, cell.sheet, named)  # whatever cannot be written is found here
-            last = [item for item in cell.items if isinstance(item, Call)][-1].outcome
-            block = last.block if isinstance(last, BlockOutcome) else self._loose
-            entry.formula = lambda: plain(cell.items, self.source, cell.sheet, written)
-            entry.formula_of = lambda i, j: render(cell.items, str, written)
-            self._add_check(block, cell, entry, 0, 0, entry.formula, "")
-            return
-        outcome = only.outcome
-        assert outcome is not None
-        entry.formula_of = partial(_repeated, outcome)
-        if isinstance(outcome, WordsOutcome):
-            if outcome.formula is None:
-                entry.words = True
-            else:
-                self._add_check(self._loose, cell, entry, 0, 0, outcome.formula, "")
-            return
-        for i, j in _filled(cell, outcome.shape):
-            if isinstance(outcome, BlockOutcome):
-                value = _bound(outcome.at, i, j)
-                self._add_check(outcome.block, cell, entry, i, j, value, outcome.results[j])
-            elif isinstance(outcome, RowsOutcome):
-                self._own_line(outcome, cell, entry, i, j)
-            elif isinstance(outcome, TableOutcome | ScheduleOutcome):
-                outcome.own(i, j, f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}")
-                entry.table = outcome
-
-    def _add_check(
-        self, block: Block, cell: TbCell, entry: Entry, i: int, j: int, value: Callable[[], str], result: str
-    ) -> None:
-        a1 = to_a1(cell.cell.row + i, cell.cell.col + j)
-        check = Check(cell, f"{quoted_sheet(cell.sheet)}!{a1}", f"{cell.sheet}!{a1}", value)
-        if result:
-            check.scale = lambda: block.scale_ref(result)
-        block.checks.append(check)
-        entry.checks.append((block, check))
-
-    def _own_line(self, outcome: RowsOutcome, cell: TbCell, entry: Entry, i: int, j: int) -> None:
-        line, result = outcome.place(i, j)
-        ref = f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}"
-        chosen = outcome.group.lines[line]
-        chosen.own.setdefault(result, ref)
-        if not chosen.target:
-            chosen.target = ref
-        entry.rows = outcome
-
     # Placing and writing
 
     def _lay_out(self) -> None:
         tolerance = self.summary.tolerance
-        if self._loose.checks:
-            self.blocks.append(self._loose)
+        if self.comparison.loose.checks:
+            self.blocks.append(self.comparison.loose)
         block_sheets: list[Sheet] = []
         at = _ROWS_A_SHEET + 1
         for block in self.blocks:
@@ -305,8 +257,11 @@ class Book:
         for rows in row_sheets:
             rows.write()
         self.tables.write(tolerance)
+        self.staged.write()
         self.summary.write(self.entries, self.source.package.path.name)
         self.sheets = [self.summary.sheet, *block_sheets, *(rows.sheet for rows in row_sheets), *table_sheets]
+        if self.staged.used:
+            self.sheets.append(self.staged.sheet)
         if self.units.used:
             self.sheets.append(self.units.sheet)
 
@@ -324,32 +279,3 @@ def _given(
         return out
 
     return contents
-
-
-def _bound(at: Callable[[int, int], str], i: int, j: int) -> Callable[[], str]:
-    return lambda: at(i, j)
-
-
-def _repeated(outcome: Outcome, i: int, j: int) -> str:
-    """A cell of an array formula: one row or column fills all; beyond the result there is nothing."""
-    rows, cols = outcome.shape
-    if (rows > 1 and i >= rows) or (cols > 1 and j >= cols):
-        raise NotWorked("the array formula covers more cells than its result has")
-    return outcome.at(i if rows > 1 else 0, j if cols > 1 else 0)
-
-
-def _broadcast(shapes: list[Shape]) -> Shape:
-    try:
-        rows, cols = np.broadcast_shapes(*shapes)
-    except ValueError:
-        raise NotWorked("the ranges do not fit together") from None
-    return rows, cols
-
-
-def _filled(cell: TbCell, shape: Shape) -> list[Shape]:
-    """The elements of the answer that the formula's cells show."""
-    if cell.cell.kind == "plain" or cell.cell.ref is None:
-        return [(0, 0)]
-    r1, c1, r2, c2 = cell.cell.ref
-    rows, cols = min(r2 - r1 + 1, shape[0]), min(c2 - c1 + 1, shape[1])
-    return [(i, j) for i in range(rows) for j in range(cols)]

@@ -6,12 +6,11 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Protocol, TypeAlias
 
-from ..hosts.headless.formulas import Kind, Part, call_name
+from ..hosts.headless.formulas import CLOSES, OPENS, Kind, Part, call_name
 
 Items: TypeAlias = "list[Part | Call]"
-
-_OPENS = frozenset((Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN))
-_CLOSES = frozenset((Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE))
+Shape: TypeAlias = tuple[int, int]
+"""Rows and columns."""
 
 
 class NotWorked(Exception):
@@ -22,7 +21,7 @@ class Outcome(Protocol):
     """Results of one call on the checking sheets, as a grid of the shape that the call itself gives."""
 
     @property
-    def shape(self) -> tuple[int, int]: ...
+    def shape(self) -> Shape: ...
 
     @property
     def one_range(self) -> bool:
@@ -43,6 +42,8 @@ class Call:
     args: list[Items] = field(default_factory=list)
     outcome: Outcome | None = None
     """What the plan of the book makes of it."""
+    range: str = ""
+    """Where all that it gives stands in one range, if its outcome has none."""
 
 
 def tree(parts: Sequence[Part]) -> Items:
@@ -63,9 +64,9 @@ def _items(parts: Sequence[Part], at: int, inside: bool) -> tuple[Items, int]:
             call, at = _call(parts, at + 1, name)
             out.append(call)
             continue
-        if inside and depth == 0 and (part.kind is Kind.COMMA or part.kind in _CLOSES):
+        if inside and depth == 0 and (part.kind is Kind.COMMA or part.kind in CLOSES):
             return out, at
-        depth += (part.kind in _OPENS) - (part.kind in _CLOSES)
+        depth += (part.kind in OPENS) - (part.kind in CLOSES)
         out.append(part)
         at += 1
     if inside:
@@ -103,7 +104,7 @@ def _closing(items: Items) -> int:
     depth = 0
     for i, item in enumerate(items):
         if isinstance(item, Part):
-            depth += (item.kind in _OPENS) - (item.kind in _CLOSES)
+            depth += (item.kind in OPENS) - (item.kind in CLOSES)
             if depth == 0:
                 return i
     return -1

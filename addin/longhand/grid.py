@@ -9,9 +9,14 @@ from ..xlsx.a1 import column_letters
 
 
 class Formula(NamedTuple):
-    """The text of a formula, without its equals sign."""
+    """The text of a formula, without its equals sign; with ``ref`` it is an array formula for those cells."""
 
     text: str
+    ref: str = ""
+
+
+FILLED = Formula("")
+"""A cell that the array formula in another one fills."""
 
 
 Content: TypeAlias = float | str | Formula

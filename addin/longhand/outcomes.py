@@ -6,9 +6,8 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from ..hosts.headless.shadow import literal
-from .arguments import Shape
 from .block import Block
-from .calls import Call, NotWorked, Outcome
+from .calls import Call, NotWorked, Outcome, Shape
 from .rows import Group, RowSheet
 from .symbols import quoted
 
@@ -18,16 +17,16 @@ def written(call: Call) -> str:
     outcome = call.outcome
     if outcome is None:
         raise NotWorked(f"{call.name} has no long-hand result")
-    return outcome.at(0, 0) if outcome.shape == (1, 1) else outcome.range_text()
+    if outcome.shape == (1, 1):
+        return outcome.at(0, 0)
+    return call.range or outcome.range_text()
 
 
 def named(call: Call) -> str:
-    """A name for what a call gives, while nothing has its place; NotWorked where no formula can use it."""
+    """A name for what a call gives, while nothing has its place."""
     outcome: Outcome | None = call.outcome
     if outcome is None:
         raise NotWorked(f"{call.name} has no long-hand result")
-    if outcome.shape != (1, 1) and not outcome.one_range:
-        raise NotWorked("the formula computes with several results that do not lie side by side")
     return f"#{id(outcome)}"
 
 
@@ -106,8 +105,8 @@ class WordsOutcome:
     """Headings and other answers that are not computed: they stand as constants."""
 
     grid: list[list[object]]
-    formula: Callable[[], str] | None = None
-    """For a single value that can be worked after all."""
+    formula: Callable[[int, int], str] | None = None
+    """For values that can be worked after all."""
     shape: Shape = field(init=False)
 
     def __post_init__(self) -> None:
@@ -115,7 +114,7 @@ class WordsOutcome:
 
     def at(self, i: int, j: int) -> str:
         if self.formula is not None:
-            return self.formula()
+            return self.formula(i, j)
         return literal(self.grid[i][j])  # type: ignore[arg-type]
 
     @property

@@ -9,8 +9,8 @@ from typing import Final
 from ..blocks.schedule import COLUMN_OF, Schedule
 from ..catalogue.types import Longhand, Row
 from ..tables import is_blank
-from .arguments import Argument, Shape
-from .calls import NotWorked
+from .arguments import Argument
+from .calls import NotWorked, Shape
 from .convert import Conversion
 from .grid import Content
 from .outcomes import Guard, RowsOutcome

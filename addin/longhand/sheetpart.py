@@ -55,7 +55,7 @@ def _pieces(
             content, style = cells[col]
             head = f'<c r="{letters[col - 1]}{row}" s="{styles[style]}"'
             if type(content) is Formula:
-                yield head + _formula(content.text, found[col - 1] if found is not None else None)
+                yield head + _formula(content, found[col - 1] if found is not None else None)
             elif type(content) is str:
                 keep = ' xml:space="preserve"' if content != content.strip() else ""
                 yield (
@@ -76,12 +76,14 @@ def _text(text: str) -> str:
     return f' t="inlineStr"><is><t{keep}>{escape(text)}</t></is></c>'
 
 
-def _formula(text: str, value: Any) -> str:
+def _formula(formula: Formula, value: Any) -> str:
+    array = f' t="array" ref="{formula.ref}"' if formula.ref else ""
+    text = f"<f{array}>{escape(formula.text)}</f>" if formula.text else ""
     if value is None:
-        return f"><f>{escape(text)}</f></c>"
+        return f">{text}</c>" if text else "/>"
     kind, shown = encode(value)
     mark = f' t="{kind}"' if kind else ""
-    return f"{mark}><f>{escape(text)}</f><v>{shown}</v></c>"
+    return f"{mark}>{text}<v>{shown}</v></c>"
 
 
 def _below(sheet: Sheet, dxfs: Mapping[str, int]) -> Iterator[str]:

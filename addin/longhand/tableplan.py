@@ -12,8 +12,8 @@ from ..catalogue.types import Arg, Column, Row, RowStep, Step, TableLonghand
 from ..catalogue.workings.runs import ENVELOPE, run_working
 from ..hosts.headless.shadow import literal
 from ..tables import is_blank
-from .arguments import Argument, Shape, taken
-from .calls import NotWorked
+from .arguments import Argument, taken
+from .calls import NotWorked, Shape
 from .convert import Conversion
 from .grid import Content, Formula
 from .outcomes import Guard, written

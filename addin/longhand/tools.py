@@ -2,19 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-
 from ..units import UnitError, convert
 from .arguments import Argument
 from .calls import NotWorked
-from .outcomes import written
-from .symbols import number
+from .outcomes import WordsOutcome, written
+from .symbols import number, quoted
 
 
-def convert_formula(given: list[Argument]) -> Callable[[], str]:
-    """The formula of a conversion between two units that are constants or cells as they stand."""
-    if len(given) < 3 or given[0].shape != (1, 1):
-        raise NotWorked("TB_CONVERT of a range")
+def convert_outcome(given: list[Argument]) -> WordsOutcome:
+    """A conversion between two units that are constants, or cells as they stand. Raises NotWorked."""
+    if len(given) < 3:
+        raise NotWorked("TB_CONVERT without two units")
     source, target = given[1].value(), given[2].value()
     if not isinstance(source, str) or not isinstance(target, str):
         raise NotWorked("a unit of TB_CONVERT is not a text")
@@ -26,13 +24,13 @@ def convert_formula(given: list[Argument]) -> Callable[[], str]:
     except UnitError as error:
         raise NotWorked(str(error)) from None
     guards = [
-        f'EXACT({argument.text(written)},"{word}")'
+        f"EXACT({argument.text(written)},{quoted(word)})"
         for argument, word in ((given[1], source), (given[2], target))
         if argument.area is not None
     ]
 
-    def formula() -> str:
-        text = f"{given[0].text(written)}*{number(factor)}"
+    def formula(i: int, j: int) -> str:
+        text = f"{given[0].text(written, i, j)}*{number(factor)}"
         if shift:
             text += f"+{number(shift)}"
         if ambient:
@@ -40,4 +38,5 @@ def convert_formula(given: list[Argument]) -> Callable[[], str]:
             text += f"+{pamb}*{number(ambient)}"
         return f"IF(AND({','.join(guards)}),{text},NA())" if guards else text
 
-    return formula
+    rows, cols = given[0].shape
+    return WordsOutcome([[None] * cols for _ in range(rows)], formula)

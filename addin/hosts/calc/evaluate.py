@@ -22,7 +22,7 @@ from ...xlsx.sheetxml import set_formulas, store, stored_values
 from ..headless.dependency import Reference
 from ..headless.elsewhere import elsewhere
 from ..headless.evaluate import Computed, Elsewhere, Evaluation, Failed, Kept, Table
-from ..headless.formulas import Kind, Part, call_name, join, take_apart
+from ..headless.formulas import CLOSES, OPENS, Kind, Part, call_name, join, take_apart
 from ..headless.host import Functions
 from ..headless.model import Model, Node
 from . import soffice
@@ -32,8 +32,6 @@ TIMEOUT = 600.0
 _KINDS: dict[int, ErrorKind] = {code: kind for kind, code in wire.ERROR_CODES.items()}  # type: ignore[misc]
 _NATIVE = "a cell that it depends on is an error, or its own formula fails"
 _MOST_ERRORS = 1000
-_OPENS = (Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN)
-_CLOSES = (Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE)
 Batch = Callable[[Mapping[str, Any], float], dict[str, Any]]
 
 
@@ -120,7 +118,7 @@ def _leading(node: Node) -> list[list[Part]]:
     depth = 0
     inside = take_apart(f"{whole[0]}({whole[1]})")[1:-1] if whole is not None else []
     for part in inside:
-        depth += (part.kind in _OPENS) - (part.kind in _CLOSES)
+        depth += (part.kind in OPENS) - (part.kind in CLOSES)
         if part.kind is Kind.COMMA and depth == 0:
             found.append([])
         elif part.kind is not Kind.SPACE:
@@ -164,9 +162,9 @@ def _left_out(model: Model, node: Node, empty: Callable[[Reference], bool]) -> s
     stack: list[bool] = []
     out: list[Part] = []
     for i, part in enumerate(parts):
-        if part.kind in _OPENS:
+        if part.kind in OPENS:
             stack.append(part.kind is Kind.OPEN and call_name(part.text) is not None)
-        elif part.kind in _CLOSES and stack:
+        elif part.kind in CLOSES and stack:
             stack.pop()
         if part.kind is Kind.REFERENCE and stack and stack[-1] and _alone(parts, i):
             found = model.references([part], node)

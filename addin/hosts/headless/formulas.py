@@ -55,8 +55,8 @@ _KINDS = {
     (TokenType.Whitespace, TokenSubType.None_): Kind.SPACE,
 }
 _LITERALS = (TokenType.Operand, TokenType.Literal)
-_OPENS = frozenset((Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN))
-_CLOSES = frozenset((Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE))
+OPENS = frozenset((Kind.OPEN, Kind.PAREN_OPEN, Kind.ARRAY_OPEN))
+CLOSES = frozenset((Kind.CLOSE, Kind.PAREN_CLOSE, Kind.ARRAY_CLOSE))
 
 # [1]!TB_X(   'C:\dir\thrustbook.xlam'!TB_X(   book.xlam!TB_X(   _xll.TB_X(   org.thrustbook.TB_X(
 _CALL = re.compile(r"(?:.*!)?(?:[A-Z_]\w*\.)*(TB_[A-Z0-9_]+)", re.IGNORECASE | re.DOTALL)
@@ -167,7 +167,7 @@ def rewrite(parts: Sequence[Part]) -> Rewritten:
         kind, text = part.kind, part.text
         top = stack[-1] if stack else None
         if reducing:
-            reducing += (kind in _OPENS) - (kind in _CLOSES)
+            reducing += (kind in OPENS) - (kind in CLOSES)
         if kind is Kind.OPEN:
             if top:
                 top[2] = False

@@ -1,0 +1,73 @@
+"""Questions about single formulas of a workbook: what a call was given, how many cells a formula gives."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+from ...cells import Cell
+from ...progress import Progress
+from ...xlsx.package import Package
+from .host import Functions, Host
+from .model import Model, Node
+from .settle import Settlement
+
+
+class Recorder:
+    """Keeps the arguments of the last call that went through it."""
+
+    def __init__(self, functions: Functions) -> None:
+        self.last: tuple[str, Sequence[Cell]] | None = None
+        self._call = functions.call
+        self.functions = Functions(self._record, functions.block)
+
+    def _record(self, name: str, args: Sequence[Cell]) -> Any:
+        answer = self._call(name, args)
+        self.last = name, args
+        return answer
+
+
+class Probe:
+    """An evaluated workbook whose formulas can be tried once more, whole or in part."""
+
+    def __init__(self, settlement: Settlement, recorder: Recorder) -> None:
+        self._settlement, self._recorder = settlement, recorder
+        model = settlement.model
+        self._sheets = {name.casefold(): number for number, name in enumerate(model.sheet_names)}
+
+    @classmethod
+    def of(cls, package: Package, progress: Progress | None = None) -> Probe:
+        """Evaluate a workbook in order to ask. Raises Refusal when the evaluator gives up on it."""
+        recorder = Recorder(Functions.of_catalogue())
+        settlement = Settlement(Model(package, recorder.functions, progress), Host(recorder.functions))
+        settlement.settle()
+        return cls(settlement, recorder)
+
+    def node(self, sheet: str, row: int, col: int) -> Node | None:
+        """The formula in a cell, None where there is none that can be computed."""
+        node = self._settlement.model.at.get((self._sheets[sheet.casefold()], row, col))
+        return None if node is None or node.index in self._settlement.kept else node
+
+    def arguments(self, node: Node, number: int) -> list[Cell] | None:
+        """The arguments of one TB_ call of a formula, as the dispatcher gets them; None where it gets none.
+
+        The calls are counted from 0, those inside a call before it.
+        """
+        if node.rewritten is None or number >= len(node.rewritten.spans):
+            return None
+        name, first, last = node.rewritten.spans[number]
+        self._recorder.last = None
+        self._settlement.run.try_formula(node, "".join(node.rewritten.pieces[first : last + 1]))
+        recorded = self._recorder.last
+        return list(recorded[1]) if recorded is not None and recorded[0] == name else None
+
+    def shape(self, node: Node) -> tuple[int, int] | None:
+        """Rows and columns of all that a formula gives, shown or not; None where that cannot be told."""
+        if node.rewritten is None:
+            return None
+        text = node.rewritten.text
+        rows, _ = self._settlement.run.try_formula(node, f"ROWS({text})")
+        columns, _ = self._settlement.run.try_formula(node, f"COLUMNS({text})")
+        if not isinstance(rows, float) or not isinstance(columns, float):
+            return None
+        return int(rows), int(columns)

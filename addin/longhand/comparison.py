@@ -1,0 +1,168 @@
+"""The cells that show results: each beside the long-hand value of its whole formula."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from functools import partial
+
+from ..xlsx.a1 import to_a1
+from .arguments import surveyed
+from .block import Block, Check
+from .calls import Call, NotWorked, Outcome, Shape, render
+from .convert import Conversion
+from .expressions import SINGLE, Survey, element, within
+from .given import Reader
+from .grid import quoted_sheet
+from .outcomes import BlockOutcome, RowsOutcome, WordsOutcome, named, written
+from .schedule import ScheduleOutcome
+from .source import Area, Source, TbCell, plain
+from .staged import Staged
+from .summary import Entry
+from .tableplan import TableOutcome
+
+
+class Comparison:
+    """Puts every cell of the workbook beside its working."""
+
+    def __init__(self, source: Source, staged: Staged, reader: Reader) -> None:
+        self._source, self._staged, self._reader = source, staged, reader
+        self.loose = Block(None, [], lambda role: Conversion("", 1.0))
+        """Formulas that compute with results of more than one working."""
+
+    def add(self, cell: TbCell, entry: Entry) -> None:
+        """Plan the comparison of a cell, or of all cells that its formula fills. Raises NotWorked."""
+        only = cell.items[0] if len(cell.items) == 1 else None
+        if not isinstance(only, Call):
+            self._formula(cell, entry)
+            return
+        outcome = only.outcome
+        assert outcome is not None
+        entry.formula_of = partial(_repeated, outcome)
+        if isinstance(outcome, WordsOutcome):
+            if outcome.formula is None:
+                entry.words = True
+                return
+            for i, j in _filled(cell, outcome.shape):
+                self._check(self.loose, cell, entry, i, j, partial(outcome.formula, i, j), "")
+            return
+        for i, j in _filled(cell, outcome.shape):
+            if isinstance(outcome, BlockOutcome):
+                value = partial(outcome.at, i, j)
+                self._check(outcome.block, cell, entry, i, j, value, outcome.results[j])
+            elif isinstance(outcome, RowsOutcome):
+                self._own_line(outcome, cell, entry, i, j)
+            elif isinstance(outcome, TableOutcome | ScheduleOutcome):
+                outcome.own(i, j, f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}")
+                entry.table = outcome
+
+    def _formula(self, cell: TbCell, entry: Entry) -> None:
+        """A formula around one call or several."""
+        plain(cell.items, self._source, cell.sheet, named)  # whatever cannot be written is found here
+        found = surveyed(cell.items, cell.sheet, self._source)
+        r1, c1, r2, c2 = cell.cell.ref or (0, 0, 0, 0)
+        one = cell.cell.kind == "plain" or (r1, c1) == (r2, c2)
+        last = [item for item in cell.items if isinstance(item, Call)][-1].outcome
+        block = last.block if isinstance(last, BlockOutcome) and one else self.loose
+        array = found.computes and (found.takes_results or cell.cell.kind != "plain")
+        if found.elementwise and not array:
+            entry.formula_of = self._elements(cell, found)
+        elif one and not array and not found.loose and self._gives_one(cell, found):
+            entry.formula_of = lambda i, j: render(cell.items, self._operand(cell), written)
+        else:
+            entry.formula_of = self._staged_formula(cell)
+        for i in range(r2 - r1 + 1 if not one else 1):
+            for j in range(c2 - c1 + 1 if not one else 1):
+                self._check(block, cell, entry, i, j, partial(_or_not_available, entry.formula_of, i, j), "")
+
+    def _gives_one(self, cell: TbCell, found: Survey) -> bool:
+        return not found.takes_results or self._reader.shape(cell) == SINGLE
+
+    def _operand(self, cell: TbCell) -> Callable[[str], str]:
+        return lambda text: self._source.operand(text, cell.sheet)
+
+    def _elements(self, cell: TbCell, found: Survey) -> Callable[[int, int], str]:
+        """The formula of each cell: every range in it gives the one element that belongs there."""
+        shape = found.shape
+        own = cell.cell
+
+        def of_range(n: int, i: int, j: int) -> str:
+            item = cell.items[n]
+            if isinstance(item, Call):
+                assert item.outcome is not None
+                return item.outcome.at(i, j)
+            area = self._source.area(item.text, cell.sheet)
+            assert area is not None
+            return area.ref(i, j) if own.kind != "plain" else _meeting(area, own.row, own.col)
+
+        def formula(i: int, j: int) -> str:
+            i, j = _beyond(shape, i, j)
+            items = element(found, cell.items, i, j, of_range)
+            return render(items, self._operand(cell), written)
+
+        return formula
+
+    def _staged_formula(self, cell: TbCell) -> Callable[[int, int], str]:
+        """The formula as an array over as many cells as it gives values."""
+        shape = self._reader.shape(cell)
+        if shape is None:
+            raise NotWorked("how many values the formula gives cannot be evaluated here")
+        text = partial(plain, cell.items, self._source, cell.sheet, written)
+        area = self._staged.array(cell, f"={cell.cell.text}", shape, text)
+        return lambda i, j: area.ref(*_beyond(shape, i, j))
+
+    def _check(
+        self, block: Block, cell: TbCell, entry: Entry, i: int, j: int, value: Callable[[], str], result: str
+    ) -> None:
+        a1 = to_a1(cell.cell.row + i, cell.cell.col + j)
+        check = Check(cell, f"{quoted_sheet(cell.sheet)}!{a1}", f"{cell.sheet}!{a1}", value)
+        if result:
+            check.scale = lambda: block.scale_ref(result)
+        block.checks.append(check)
+        entry.checks.append((block, check))
+
+    def _own_line(self, outcome: RowsOutcome, cell: TbCell, entry: Entry, i: int, j: int) -> None:
+        line, result = outcome.place(i, j)
+        ref = f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}"
+        chosen = outcome.group.lines[line]
+        chosen.own.setdefault(result, ref)
+        if not chosen.target:
+            chosen.target = ref
+        entry.rows = outcome
+
+
+def _beyond(shape: Shape, i: int, j: int) -> Shape:
+    """The element that a cell of an array formula shows. Raises NotWorked where it shows none.
+
+    One row or column of values fills all cells; beyond the result there is nothing.
+    """
+    if (shape[0] > 1 and i >= shape[0]) or (shape[1] > 1 and j >= shape[1]):
+        raise NotWorked("the array formula covers more cells than its result has")
+    return within(shape, i, j)
+
+
+def _repeated(outcome: Outcome, i: int, j: int) -> str:
+    return outcome.at(*_beyond(outcome.shape, i, j))
+
+
+def _or_not_available(formula_of: Callable[[int, int], str], i: int, j: int) -> str:
+    try:
+        return formula_of(i, j)
+    except NotWorked:
+        return "NA()"
+
+
+def _meeting(area: Area, row: int, col: int) -> str:
+    """The cell of a range that a plain formula takes: the one in its own row or column."""
+    rows, cols = area.shape
+    i = 0 if rows == 1 else row - area.r1
+    j = 0 if cols == 1 else col - area.c1
+    return area.ref(i, j) if 0 <= i < rows and 0 <= j < cols else "#VALUE!"
+
+
+def _filled(cell: TbCell, shape: Shape) -> list[Shape]:
+    """The elements of the answer that the formula's cells show."""
+    if cell.cell.kind == "plain" or cell.cell.ref is None:
+        return [(0, 0)]
+    r1, c1, r2, c2 = cell.cell.ref
+    rows, cols = min(r2 - r1 + 1, shape[0]), min(c2 - c1 + 1, shape[1])
+    return [(i, j) for i in range(rows) for j in range(cols)]
