@@ -13,7 +13,7 @@ from ..hosts.headless.formulas import Kind, Part
 from ..tables import is_blank
 from ..units import UnitError, quantity, unit
 from .calls import Call, Items, NotWorked, Shape, render
-from .convert import Conversion
+from .convert import AMBIENT, Conversion
 from .expressions import SINGLE, Survey, element, hands_on_cells, outcome_shape, survey, within
 from .grid import Content, Formula
 from .source import Area, Source, literal
@@ -267,13 +267,6 @@ def in_group(content: Content | None, own: Conversion | None, group: Conversion)
     si = f"({inside})*{number(float(own.factor))}"  # type: ignore[arg-type]
     if own.offset or group.offset:  # scales of temperature with different zeros
         si = f"({si}+{number(own.offset)}-{number(group.offset)})"
+    if own.shift != group.shift:  # pressures against different data
+        si = f"({si}{'+' if own.shift > group.shift else '-'}{AMBIENT})"
     return Formula(f"{si}/{factor}")
-
-
-def same_datum(argument: Argument, arg: Arg | Column, group: Conversion) -> None:
-    """Refuse elements that bring a unit against another datum than their column. Raises NotWorked."""
-    for line in argument.values or []:
-        for cell in line:
-            own = own_unit(cell, arg.role) if isinstance(cell, str) and arg.role != "choice" else None
-            if own is not None and own.shift != group.shift:
-                raise NotWorked(f"an element of {arg.name} has a unit of its own, {own.unit}")

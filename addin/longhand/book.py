@@ -15,10 +15,10 @@ from ..leading import heading_row, wanted
 from ..progress import Progress
 from ..units import UnitError
 from ..xlsx.refusals import Refusal
-from .arguments import Argument, in_group, resolve, same_datum, taken
+from .arguments import Argument, in_group, resolve, taken
 from .block import FIRST as FIRST_BLOCK
 from .block import Block, new_block_sheet
-from .calls import Call, NotWorked, Outcome
+from .calls import Call, NotWorked, Outcome, Refuses
 from .comparison import Comparison
 from .convert import Conversion
 from .detachtext import constant
@@ -53,12 +53,6 @@ class Book:
     sheets: list[Sheet] = field(default_factory=list)
 
     def __post_init__(self) -> None:
-        taken_names = {sheet.name.casefold() for sheet in self.source.package.sheets}
-        if SUMMARY.casefold() in taken_names or UNITS.casefold() in taken_names:
-            raise Refusal(
-                f"{self.source.package.path.name} has checking sheets already ({SUMMARY}, {UNITS}). "
-                "Take the workbook without them."
-            )
         self.summary = Summary(Sheet(SUMMARY))
         self.units = UnitSheet(Sheet(UNITS))
         self.tables = TableCalls(self.source)
@@ -73,6 +67,13 @@ class Book:
                 self.progress("plan", i, count)
             self.entries.append(self._cell(cell))
         self._lay_out()
+        there = {sheet.name.casefold() for sheet in self.source.package.sheets}
+        twice = [sheet.name for sheet in self.sheets if sheet.name.casefold() in there]
+        if twice:
+            raise Refusal(
+                f"{self.source.package.path.name} has checking sheets already ({', '.join(twice)}). "
+                "Take the workbook without them."
+            )
 
     # Planning
 
@@ -90,10 +91,9 @@ class Book:
                 if outcome.shape != SINGLE and not outcome.one_range and id(call) not in taken_whole:
                     call.range = self.staged.results(cell, f"{call.name}(...)", outcome).text()
             self.comparison.add(cell, entry)
-        except NotWorked as reason:
+        except (NotWorked, Refused, UnitError) as reason:
             entry.trouble = str(reason)
-        except (Refused, UnitError) as refusal:
-            entry.trouble = str(refusal)
+            entry.refused = not isinstance(reason, NotWorked) or isinstance(reason, Refuses)
         return entry
 
     def _call(self, call: Call, number: int, cell: TbCell) -> Outcome:
@@ -187,9 +187,6 @@ class Book:
             conversions = [
                 None if a.role == "choice" else self.units.conversion(units, a.role) for a in row.args
             ]
-            for arg, argument, conversion in zip(row.args, arguments, conversions, strict=True):
-                if conversion is not None:
-                    same_datum(argument, arg, conversion)
             lines = [
                 Line(str(n + 1), "", _given(row, arguments, conversions, n // elements[1], n % elements[1]))
                 for n in range(count)

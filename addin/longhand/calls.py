@@ -17,6 +17,10 @@ class NotWorked(Exception):
     """A call that gets no long-hand working; the text says why."""
 
 
+class Refuses(NotWorked):
+    """A call that the function itself refuses; the text is its reason."""
+
+
 class Outcome(Protocol):
     """Results of one call on the checking sheets, as a grid of the shape that the call itself gives."""
 

@@ -15,7 +15,7 @@ from .given import Reader
 from .grid import quoted_sheet
 from .outcomes import BlockOutcome, RowsOutcome, WordsOutcome, named, written
 from .schedule import ScheduleOutcome
-from .source import Area, Source, TbCell, plain
+from .source import Source, TbCell, plain
 from .staged import Staged
 from .summary import Entry
 from .tableplan import TableOutcome
@@ -92,7 +92,7 @@ class Comparison:
                 return item.outcome.at(i, j)
             area = self._source.area(item.text, cell.sheet)
             assert area is not None
-            return area.ref(i, j) if own.kind != "plain" else _meeting(area, own.row, own.col)
+            return area.ref(i, j) if own.kind != "plain" else area.meeting(own.row, own.col)
 
         def formula(i: int, j: int) -> str:
             i, j = _beyond(shape, i, j)
@@ -149,14 +149,6 @@ def _or_not_available(formula_of: Callable[[int, int], str], i: int, j: int) -> 
         return formula_of(i, j)
     except NotWorked:
         return "NA()"
-
-
-def _meeting(area: Area, row: int, col: int) -> str:
-    """The cell of a range that a plain formula takes: the one in its own row or column."""
-    rows, cols = area.shape
-    i = 0 if rows == 1 else row - area.r1
-    j = 0 if cols == 1 else col - area.c1
-    return area.ref(i, j) if 0 <= i < rows and 0 <= j < cols else "#VALUE!"
 
 
 def _filled(cell: TbCell, shape: Shape) -> list[Shape]:

@@ -17,6 +17,17 @@ ANGLE_SCALE = "1000"
 """Scale of an angle [rad]: below a thousandth of a millionth of a millionth it is rounding."""
 
 
+AMBIENT = "\N{WHITE SQUARE}"
+"""Stands for the ambient pressure in a formula that has no place yet."""
+
+
+def with_ambient(content: Content, ambient: str) -> Content:
+    """A content with the cell of the ambient pressure put in."""
+    if isinstance(content, Formula) and AMBIENT in content.text:
+        return Formula(content.text.replace(AMBIENT, ambient))
+    return content
+
+
 class Conversion(NamedTuple):
     """The unit of a column: its name, its factor to SI, and where its zero stands."""
 

@@ -9,7 +9,18 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
 from ..xlsx.a1 import column_letters
-from .convert import ANGLE_SCALE, P_ATM, PLAIN, Conversion, agreement, from_si, in_use, not_given, to_si
+from .convert import (
+    ANGLE_SCALE,
+    P_ATM,
+    PLAIN,
+    Conversion,
+    agreement,
+    from_si,
+    in_use,
+    not_given,
+    to_si,
+    with_ambient,
+)
 from .grid import Content, Formula, Link, Sheet, fixed, local
 from .sheetpart import SCALE
 from .symbols import fill, shown, si_unit
@@ -191,9 +202,9 @@ class RowSheet:
                 if missing is not None:
                     sheet.put(at, col, missing, "number")
                 continue
-            sheet.put(at, raw, given, "linked")
-            factor = fixed(factors, raw)
             own_ambient = P_ATM if arg.name == "pamb" else ambient
+            sheet.put(at, raw, with_ambient(given, own_ambient), "linked")
+            factor = fixed(factors, raw)
             si = to_si(local(at, raw), factor, units_of.get(arg.name, PLAIN), own_ambient)
             sheet.put(at, col, Formula(in_use(row, arg, local(at, raw), si)), "number")
         for step in self._steps:

@@ -7,7 +7,7 @@ from typing import Final
 
 from ..catalogue.types import Result, RowStep, TableLonghand
 from ..xlsx.a1 import column_letters
-from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, to_si
+from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, to_si, with_ambient
 from .grid import Formula, Link, fixed, local
 from .placed import FORMULA_TO, SUFFIX, TEXT_FROM, TEXT_TO, Entry, Placed, TableLine
 from .rows import NARROW, column_breaks, worst
@@ -47,6 +47,7 @@ class Section(Placed):
             content = entry.content()
             sheet.put(at, 1, entry.name)
             if content is not None:
+                content = with_ambient(content, self._ambient)
                 sheet.put(at, 3, content, "linked" if isinstance(content, Formula) else "number")
             numeric = entry.role != "text"
             if numeric:
@@ -171,6 +172,7 @@ class Section(Placed):
             raw = self._raw[column.name]
             content = given.get(column.name)
             if content is not None:
+                content = with_ambient(content, self._ambient)
                 sheet.put(at, raw, content, "linked" if isinstance(content, Formula) else "number")
             formula = self._in_use(
                 column.name,
@@ -227,6 +229,9 @@ class Section(Placed):
         if result.role == "angle":
             return f"{ANGLE_SCALE}/{unit}"
         names = [n for n in like.get(result.role, ()) if n in self._column]
+        if result.role == "flow":
+            flows = [self._cell(column.name, at) for column, _ in self.columns if column.role == "flow"]
+            return f"MAX({','.join(flows)},0-MIN({','.join(flows)}))/{unit}" if flows else ""
         if not names:
             return ""
         return f"MAX({','.join(f'ABS({self._cell(n, at)})' for n in names)})/{unit}"

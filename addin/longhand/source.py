@@ -53,6 +53,13 @@ class Area(NamedTuple):
         """The reference to the cell in row i and column j of the area, from 0."""
         return f"{quoted_sheet(self.sheet)}!{to_a1(self.r1 + i, self.c1 + j, absolute=True)}"
 
+    def meeting(self, row: int, col: int) -> str:
+        """The cell that a formula takes which wants one only: that in its own row or column."""
+        rows, cols = self.shape
+        i = 0 if rows == 1 else row - self.r1
+        j = 0 if cols == 1 else col - self.c1
+        return self.ref(i, j) if 0 <= i < rows and 0 <= j < cols else "#VALUE!"
+
     def text(self) -> str:
         first = self.ref(0, 0)
         if self.shape == (1, 1):
@@ -100,13 +107,21 @@ class Source:
         self.cells: list[TbCell] = []
         self._valueless: dict[str, set[tuple[int, int]]] = {}
         """By sheet the formula cells that hold no stored value."""
+        self._spills: dict[tuple[str, int, int], tuple[int, int, int, int]] = {}
+        """What the formulas fill that fill more than their own cell."""
+        calling: list[tuple[str, FormulaCell]] = []
         for number, sheet in enumerate(package.sheets):
             if progress is not None:
                 progress("read", number, len(package.sheets))
             for cell in formula_cells(package.part(sheet.part), package.shared_strings):
                 if cell.value is None and cell.kind != "table":
                     self._valueless.setdefault(sheet.name, set()).add((cell.row, cell.col))
-                self._take(sheet.name, cell)
+                if cell.kind in ("array", "dynamic") and cell.ref is not None:
+                    self._spills[sheet.name.casefold(), cell.row, cell.col] = cell.ref
+                if "TB_" in cell.text.upper() or self._calling_names:
+                    calling.append((sheet.name, cell))
+        for name, cell in calling:
+            self._take(name, cell)
 
     def without_value(self) -> str | None:
         """The first formula cell that holds no value although a TB_ call stands in it or reads it."""
@@ -143,18 +158,41 @@ class Source:
         return any(self.names.calling(name) for name in self.package.defined_names)
 
     def _take(self, sheet: str, cell: FormulaCell) -> None:
-        if "TB_" not in cell.text.upper() and not self._calling_names:
-            return
         try:
             text = self.tables.written_out(cell.text, sheet, cell.row, cell.col)
             parts = self.names.written_out(take_apart(text), sheet, cell.row, cell.col)
             if not any(p.kind is Kind.OPEN and call_name(p.text) for p in parts):
                 return
-            if functions(parts) & {"LET", "LAMBDA"}:
-                raise NotWorked("the formula declares variables of its own (LET or LAMBDA)")
+            parts = self._older(parts, sheet, cell)
+            if "LAMBDA" in functions(parts):
+                raise NotWorked("the formula declares a function of its own (LAMBDA)")
             self.cells.append(TbCell(sheet, cell, tree(self._fixed(parts, sheet, cell))))
         except (Unreadable, NotWorked) as error:
             self.cells.append(TbCell(sheet, cell, [], str(error)))
+
+    def _older(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
+        """The parts of a formula as every spreadsheet knows them: C4# and @A1:A9 as the cells they mean.
+
+        Raises :class:`NotWorked` where that cannot be had.
+        """
+        out: list[Part] = []
+        at = 0
+        while at < len(parts):
+            part, at = parts[at], at + 1
+            name = function_name(part.text) if part.kind is Kind.OPEN else ""
+            if name not in ("ANCHORARRAY", "SINGLE"):
+                out.append(part)
+                continue
+            area = self.area(parts[at].text, sheet) if parts[at].kind is Kind.REFERENCE else None
+            if area is None or parts[at + 1].kind is not Kind.CLOSE:
+                raise NotWorked(f"the formula uses {name}, which not every spreadsheet knows")
+            text = area.meeting(cell.row, cell.col)
+            if name == "ANCHORARRAY":
+                filled = self._spills.get((area.sheet.casefold(), area.r1, area.c1))
+                text = "#REF!" if filled is None else Area(area.sheet, *filled).text()
+            out.append(Part(text, Kind.LITERAL if text.startswith("#") else Kind.REFERENCE))
+            at += 2
+        return out
 
     def _fixed(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
         """The parts of a formula such that the arguments of our calls mean the same on another sheet.

@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any, Final
 
+from ..cells import CellError
 from .block import Block, Check
 from .calls import Call
 from .grid import Formula, Link, Sheet, fixed, local, quoted_sheet
@@ -32,6 +33,9 @@ class Entry:
 
     cell: TbCell
     trouble: str = ""
+    """Why it has no working."""
+    refused: bool = False
+    """Whether that is what the function itself has against its arguments."""
     words: bool = False
     checks: list[tuple[Block, Check]] = field(default_factory=list)
     rows: RowsOutcome | None = None
@@ -41,6 +45,14 @@ class Entry:
     """The long-hand formula of each cell that the formula fills, counted from its first."""
     row: int = 0
     """Its row on the summary."""
+
+    @property
+    def word(self) -> str:
+        """Its verdict where no formula gives one."""
+        if self.trouble:
+            failed = self.refused and isinstance(self.cell.cell.value, CellError)
+            return "error" if failed else "not worked"
+        return "text" if self.words else ""
 
 
 class Summary:
@@ -87,7 +99,7 @@ class Summary:
         sheet.put(at, 3, f"={cell.cell.text}", "mono")
         sheet.fit_height(at)
         if entry.trouble:
-            sheet.put(at, 7, "not worked", "verdict")
+            sheet.put(at, 7, entry.word, "verdict")
             sheet.put(at, 8, entry.trouble, "wrapped")
             sheet.fit_height(at)
         elif entry.words:
@@ -144,7 +156,7 @@ class Summary:
         """The entries by verdict, from the values of the front sheet."""
         found: dict[str, list[Entry]] = {word: [] for word, _ in _COUNTS}
         for entry in entries:
-            word = "not worked" if entry.trouble else "text" if entry.words else ""
+            word = entry.word
             if not word:
                 shown = values[entry.row][6]
                 word = shown if isinstance(shown, str) and shown in found else "error"

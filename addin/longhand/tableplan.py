@@ -10,16 +10,17 @@ from ..blocks.balance import PORT_COLUMNS
 from ..blocks.runread import CASE_COLUMNS, NODE_COLUMNS, START_COLUMNS
 from ..catalogue.types import Arg, Column, Row, RowStep, Step, TableLonghand
 from ..catalogue.workings.runs import ENVELOPE, run_working
+from ..catalogue.workings.sections import junctions
 from ..hosts.headless.shadow import literal
 from ..tables import is_blank
-from .arguments import Argument, taken
+from .arguments import Argument, in_group, taken
 from .calls import NotWorked, Shape
 from .convert import Conversion
 from .grid import Content, Formula
 from .outcomes import Guard, written
 from .section import Entry, Section, TableLine
 from .symbols import si_unit
-from .tableread import OfRole, ReadTable, read_block, read_headed
+from .tableread import OfRole, ReadTable, read_block, read_headed, whole_table
 
 MOST_ROWS: Final = 5_000
 """Rows of a table that get a working."""
@@ -86,24 +87,28 @@ class TableOutcome:
 def plan_branchflow(
     row: Row, arguments: list[Argument], of_role: OfRole, title: str, target: str
 ) -> tuple[Section, ReadTable | None]:
-    """One junction: the flows one below the other."""
+    """Junctions: one with its flows one below the other, or several with a row each."""
     (flows,) = arguments
-    if flows.values is None:
-        raise NotWorked("the flows are an expression")
-    rows, cols = flows.shape
-    if min(rows, cols) > 1:
-        raise NotWorked("a range of several junctions")
-    column = Column(name="Q", role="flow", text="known flow, positive into the junction")
     conversion = of_role("flow")
+    text = "known flow, positive into the junction"
+    if min(flows.shape) > 1:
+        width = flows.shape[1]
+        columns = [
+            (Column(name=f"Q_{n}", role="flow", text=f"{text} ({n})"), conversion)
+            for n in range(1, width + 1)
+        ]
+        table = whole_table(flows, columns)
+        return Section(row.name, title, target, junctions(width), columns, [], _lines(table)), table
+    column = Column(name="Q", role="flow", text=text)
     lines = []
-    for n in range(rows * cols):
-        i, j = (n, 0) if cols == 1 else (0, n)
-        if flows.area is None and is_blank(flows.value(i, j)):
+    for n in range(max(flows.shape)):
+        i, j = (n, 0) if flows.shape[1] == 1 else (0, n)
+        if flows.form == "array" and is_blank(flows.value(i, j)):
             continue
 
         def given(i: int = i, j: int = j) -> dict[str, Content | None]:
             arg = Arg(name="Q", role="flow")
-            return {"Q": taken(flows, arg, written, i, j)[0]}
+            return {"Q": in_group(*taken(flows, arg, written, i, j), conversion)}
 
         lines.append(TableLine(str(n + 1), "", given))
     assert isinstance(row.longhand, TableLonghand)

@@ -10,8 +10,8 @@ from ..catalogue.types import Column
 from ..cells import Refused
 from ..tables import find_column, heading, is_blank, match_headings
 from ..units import Unit, UnitError, unit
-from .arguments import Argument, in_group, linked, own_unit, same_datum, taken
-from .calls import NotWorked
+from .arguments import Argument, in_group, linked, own_unit, taken
+from .calls import NotWorked, Refuses, Shape
 from .convert import Conversion
 from .grid import Content, Formula
 from .outcomes import written
@@ -81,6 +81,14 @@ def cell_content(
     return taken(argument, column, written, i, j)
 
 
+def whole_table(table: Argument, columns: list[tuple[Column, Conversion]]) -> ReadTable:
+    """A table without headings whose columns are all of it."""
+    rows = _grid(table, "the range")
+    used = [i for i, line in enumerate(rows) if not all(map(is_blank, line))]
+    at = {column.name: j for j, (column, _) in enumerate(columns)}
+    return ReadTable(table, columns, at, used, len(rows))
+
+
 def read_headed(
     columns: Sequence[Column], heads: Argument, table: Argument, of_role: OfRole, what: str, top: int = 0
 ) -> ReadTable:
@@ -89,17 +97,18 @@ def read_headed(
     if not rows:
         raise NotWorked(f"{what} has no rows")
     found: list[tuple[Column, str | None] | None]
+    downwards = False
     if heads.form == "empty":
         found = [(column, None) for column in columns[: len(rows[0])]]
         head_rows: list[list[Any]] = []
     else:
         head_rows = _grid(heads, "headings")[: 1 if top else None]
-        if len(head_rows) > 2:
-            raise NotWorked("headings written downwards")
+        if len(head_rows) > 2 and len(head_rows[0]) == 1:
+            downwards, head_rows = True, [[line[0] for line in head_rows]]
         try:
             found = match_headings(columns, head_rows, len(rows[0]), what)
         except (Refused, UnitError) as error:
-            raise NotWorked(str(error)) from None
+            raise Refuses(str(error)) from None
     chosen: list[tuple[Column, Conversion]] = []
     at: dict[str, int] = {}
     for j, entry in enumerate(found):
@@ -108,17 +117,13 @@ def read_headed(
         column, own = entry
         conversion = Conversion("", 1.0)
         if column.role != "text":
-            conversion = _own_conversion(heads, head_rows, j, own, column) if own else of_role(column.role)
-            same_datum(_column_of(table, j, top), column, conversion)
+            below = len(head_rows) == 2 and not is_blank(head_rows[1][j])
+            place = (j, 0) if downwards else (int(below), j)
+            conversion = _own_conversion(heads, place, own, column) if own else of_role(column.role)
         chosen.append((column, conversion))
         at[column.name] = j
     used = [i for i, line in enumerate(rows) if not all(is_blank(line[j]) for j in at.values())]
     return ReadTable(table, chosen, at, used, len(rows), top)
-
-
-def _column_of(table: Argument, j: int, top: int) -> Argument:
-    rows = table.values or []
-    return Argument("array", table.sheet, [], table.source, None, [[line[j]] for line in rows[top:]])
 
 
 def _grid(argument: Argument, what: str) -> list[list[Any]]:
@@ -127,16 +132,15 @@ def _grid(argument: Argument, what: str) -> list[list[Any]]:
     return argument.values
 
 
-def _own_conversion(heads: Argument, rows: list[list[Any]], j: int, own: str, column: Column) -> Conversion:
+def _own_conversion(heads: Argument, place: Shape, own: str, column: Column) -> Conversion:
     """The unit that a heading gives, kept only while the heading says so."""
     try:
         given = unit(own, column.role)
     except UnitError as error:
-        raise NotWorked(str(error)) from None
+        raise Refuses(str(error)) from None
     if heads.area is None:
         return Conversion.of(given)
-    below = len(rows) == 2 and not is_blank(rows[1][j])
-    return guarded(given, heads.area.ref(1 if below else 0, j), str(rows[1 if below else 0][j]))
+    return guarded(given, heads.area.ref(*place), str(heads.value(*place)))
 
 
 def guarded(given: Unit, ref: str, text: str) -> Conversion:
@@ -155,7 +159,7 @@ def read_block(columns: Sequence[Column], pairs: Argument, of_role: OfRole, what
                 continue
             column = find_column(name, columns, what)
         except Refused as refusal:
-            raise NotWorked(str(refusal)) from None
+            raise Refuses(str(refusal)) from None
         conversion = Conversion("", 1.0)
         if column.role != "text":
             conversion = _pair_conversion(pairs, line, i, own, column, of_role)
@@ -164,9 +168,6 @@ def read_block(columns: Sequence[Column], pairs: Argument, of_role: OfRole, what
 
 
 def _pair_entry(pairs: Argument, column: Column, i: int, conversion: Conversion) -> Entry:
-    _, own = cell_content(pairs, column, i, 1)
-    if own is not None and own.shift != conversion.shift:
-        raise NotWorked(f"{column.name} has a unit of its own, {own.unit}")
 
     def content() -> Content | None:
         found, own = cell_content(pairs, column, i, 1)
@@ -186,5 +187,5 @@ def _pair_conversion(
     try:
         given = unit(own, column.role)
     except UnitError as error:
-        raise NotWorked(str(error)) from None
+        raise Refuses(str(error)) from None
     return guarded(given, pairs.area.ref(i, j), str(line[j])) if pairs.area else Conversion.of(given)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from ..units import UnitError, convert
 from .arguments import Argument
-from .calls import NotWorked
+from .calls import NotWorked, Refuses
 from .outcomes import WordsOutcome, written
 from .symbols import number, quoted
 
@@ -22,7 +22,7 @@ def convert_outcome(given: list[Argument]) -> WordsOutcome:
         factor = convert(1.0, source, target, 0.0) - shift
         ambient = convert(0.0, source, target, 1.0) - shift
     except UnitError as error:
-        raise NotWorked(str(error)) from None
+        raise Refuses(str(error)) from None
     guards = [
         f"EXACT({argument.text(written)},{quoted(word)})"
         for argument, word in ((given[1], source), (given[2], target))

@@ -6,7 +6,7 @@ from ..cells import Cell, Scalar
 from ..leading import read_units
 from ..units import ROLES, SETS, Unit, UnitError, UnitSet, known_units, unit
 from .arguments import Argument
-from .calls import NotWorked
+from .calls import NotWorked, Refuses
 from .convert import Conversion
 from .grid import Formula, Sheet, fixed
 from .symbols import number, quoted, si_unit
@@ -64,7 +64,7 @@ class UnitSheet:
             try:
                 found = self._sets[key] = read_units(cell)
             except UnitError as error:
-                raise NotWorked(str(error)) from None
+                raise Refuses(str(error)) from None
         return key, found
 
     def _key(self, argument: Argument) -> tuple[str, Cell]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from ..types import Longhand, Step, TableLonghand
+from ..types import Longhand, RowStep, Step, TableLonghand
 
 TB_AREA = Longhand(
     steps=(
@@ -64,3 +64,10 @@ TB_BRANCHFLOW = TableLonghand(
     single=(Step("Q'", "what must flow in to make the sum zero", "flow", "0-SUM({Q.column})"),),
     results={"Q": "Q'"},
 )
+
+
+def junctions(width: int) -> TableLonghand:
+    """The working of several junctions, a row each, of up to so many flows."""
+    flows = ",".join(f"{{Q_{n}}}" for n in range(1, width + 1))
+    step = RowStep("Q'", "what must flow in to make the sum zero", "flow", f"0-SUM({flows})")
+    return TableLonghand(rows=(step,), results={"Q": "Q'"})

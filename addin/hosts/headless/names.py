@@ -7,6 +7,7 @@ from collections.abc import Iterable, Sequence
 from ...xlsx.formulashift import MovableFormula
 from ...xlsx.package import NameRef
 from .formulas import Kind, Part, Unreadable, calls, join, take_apart
+from .lets import without_lets
 
 _DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
 
@@ -74,8 +75,10 @@ class Names:
     def written_out(self, parts: list[Part], sheet: str, row: int, col: int, depth: int = 0) -> list[Part]:
         """The parts of a formula with every name that calls a TB_ function replaced by its text.
 
-        The evaluator drops such names. Raises :class:`Unreadable` for names in a circle.
+        The evaluator drops such names. The LETs of a formula that calls one are written out, too.
+        Raises :class:`Unreadable` for names in a circle.
         """
+        parts = without_lets(parts)
         if not self._names:
             return parts
         out: list[Part] = []
@@ -91,7 +94,7 @@ class Names:
             inner = self._at(name, row, col)
             inner = self.written_out(inner, name.sheet or sheet, row, col, depth + 1)
             out += [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
-        return out if changed else parts
+        return without_lets(out) if changed else parts
 
     def _at(self, name: NameRef, row: int, col: int) -> list[Part]:
         """The text of a name as it reads in one cell: its free references count from A1."""
