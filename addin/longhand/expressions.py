@@ -42,8 +42,8 @@ class Survey:
     takes ranges whole: number of the item -> rows and columns. ``elementwise`` says that
     each element of the result comes from the same element of those. ``number`` says that
     the result can be nothing but numbers. ``takes_results`` says that a function that takes
-    ranges whole is given several results of ours, ``computes`` that it is given more than
-    plain ranges.
+    ranges whole is given several results of ours, ``computes`` that it is given an array
+    that is computed first: not every spreadsheet does so outside an array formula.
     """
 
     loose: dict[int, Shape]
@@ -74,19 +74,24 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
     """
     loose: dict[int, Shape] = {}
     elementwise = number = True
-    takes_results = computes = False
+    takes_results = several = computes = False
     whole = 0  # open brackets inside the outermost function that takes ranges whole
     for i, item in enumerate(items):
         if isinstance(item, Call):
             shape = outcome_shape(item)
-            if whole:
-                takes_results = takes_results or shape != SINGLE
+            if whole and shape != SINGLE:
+                takes_results = several = True
+            elif whole:
+                pass
             elif shape != SINGLE:
                 loose[i] = shape
             continue
         if whole:
             whole += (item.kind in OPENS) - (item.kind in CLOSES)
-            computes = computes or item.kind in (Kind.OPERATOR, Kind.ARRAY_OPEN, Kind.OPEN)
+            computes = computes or item.kind in (Kind.OPERATOR, Kind.OPEN)
+            several = several or item.kind is Kind.ARRAY_OPEN
+            if item.kind is Kind.REFERENCE and not several:
+                several = shape_of(item) not in (None, SINGLE)
             continue
         if item.kind is Kind.OPEN:
             name = function_name(item.text)
@@ -106,7 +111,7 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
             number = number and item.text in _OF_NUMBERS
         elif item.kind is Kind.LITERAL:
             number = number and item.text[:1] in "0123456789."
-    return Survey(loose, elementwise, number, takes_results, computes)
+    return Survey(loose, elementwise, number, takes_results, computes and several)
 
 
 def element(survey_: Survey, items: Items, i: int, j: int, at: Callable[[int, int, int], str]) -> Items:

@@ -69,7 +69,8 @@ class Reader:
         """An expression as a working can take it: by its text, or staged with its values."""
         found = argument.survey
         role = row.args[k - row.leading].role if row.leading <= k < row.leading + len(row.args) else "any"
-        if found is not None and not beforehand and found.elementwise and (found.number or role in _WORDS):
+        plain_text = found is not None and not beforehand and found.elementwise and not found.computes
+        if found is not None and plain_text and (found.number or role in _WORDS):
             return argument
         grid = self._values(cell, number, k)
         failed = grid is None or (len(grid) == 1 and isinstance(grid[0][0], CellError))
@@ -77,7 +78,7 @@ class Reader:
             return argument
         if grid is None or (failed and not isinstance(cell.cell.value, CellError)):
             raise NotWorked(f"{argument.shown()} must be known beforehand and cannot be evaluated here")
-        if found is not None and not beforehand:
+        if found is not None and not beforehand and not found.computes:
             numbers = role in _WORDS or all(isinstance(v, float | CellError) for line in grid for v in line)
             shape = len(grid), len(grid[0])
             if numbers and shape == (found.shape if found.elementwise else SINGLE):

@@ -7,7 +7,6 @@ from dataclasses import dataclass, field
 from typing import Final
 
 from .calls import NotWorked, Outcome, Shape
-from .expressions import SINGLE
 from .grid import FILLED, Content, Formula, Link, Sheet, local
 from .source import Area, TbCell
 
@@ -52,7 +51,7 @@ class Staged:
             for row in range(area.r1, area.r2 + 1):
                 for col in range(area.c1, area.c2 + 1):
                     self.sheet.put(row, col, FILLED, "linked")
-            ref = "" if shape == SINGLE else f"{local(area.r1, area.c1)}:{local(area.r2, area.c2)}"
+            ref = f"{local(area.r1, area.c1)}:{local(area.r2, area.c2)}"
             self.sheet.put(area.r1, area.c1, Formula(text(), ref), "linked")
 
         self._waiting.append(write)

@@ -81,3 +81,5 @@ class Run:
             return {"type": "Error", "kind": "Error", "message": str(error)}, self._host.last_error
         finally:
             self._host.looking = False
+            # A volatile formula left there would be computed again with the next one.
+            self._workbook.set_value(sheet, row, _SCRATCH_COLUMN, None)

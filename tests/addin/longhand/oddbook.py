@@ -1,0 +1,144 @@
+"""A workbook of formulas as people come to write them: arrays around calls, arguments computed on the way."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import NamedTuple
+
+import openpyxl
+from openpyxl.worksheet.formula import ArrayFormula
+
+from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
+from thrustbook.addin.xlsx.a1 import to_a1
+from thrustbook.addin.xlsx.package import Package
+
+SHEET = "S"
+COLUMN = 8
+FIRST = 20
+TALL = 5
+"""Rows from one formula to the next."""
+
+
+class Odd(NamedTuple):
+    """A formula; with a size it is an array formula over so many rows and columns."""
+
+    text: str
+    size: tuple[int, int] | None = None
+
+
+BEND = "1000,0.3,200000,0.2,90"
+FORMULAS = (
+    # Formulas around calls
+    Odd('TB_AREA("SI",A1:A3)*2', (3, 1)),
+    Odd('TRANSPOSE(TB_AREA("SI",A1:A3))', (1, 3)),
+    Odd('TB_AREA("SI",A1:A3)*B1:B3', (3, 1)),
+    Odd('TB_AREA("SI",A1:A3)*TRANSPOSE(B1:B3)', (3, 3)),
+    Odd('SUM(TB_AREA("SI",A1:A3)*B1:B3)', (1, 1)),
+    Odd('SUM(TB_AREA("SI",A1:A3))'),
+    Odd('SUMPRODUCT(TB_AREA("SI",A1:A3),B1:B3)'),
+    Odd('INDEX(TB_AREA("SI",A1:A3),2)'),
+    Odd('MAX(TB_AREA("SI",A1:A3),0.01)'),
+    Odd('TB_AREA("SI",A1:A3)*2'),
+    Odd('TB_AREA("SI",A1)*2', (3, 1)),
+    Odd('TB_AREA("SI",A1)*B1:B3', (3, 1)),
+    Odd('IFERROR(TB_AREA("SI",A1:A3),0)', (3, 1)),
+    Odd('IF(B1:B3>1,TB_AREA("SI",A1:A3),-1)', (3, 1)),
+    Odd(f'SUM(TB_BEND("Fx,Fy","SI",{BEND}))'),
+    Odd(f'SQRT(SUMSQ(TB_BEND("Fx,Fy","SI",{BEND})))'),
+    Odd(f'TB_BEND("Fx,Fy","SI",{BEND})/1000', (1, 2)),
+    Odd(f'"d="&TB_BEND("units: Fx","SI",{BEND})'),
+    Odd('TB_BRANCHFLOW("metric",B1:D3)*-1', (3, 1)),
+    Odd('TB_SCHEDULE("Fx","SI",E1:K1,E2:K4)/1000', (3, 1)),
+    # Units and wanted results computed on the way
+    Odd('TB_AREA("S"&"I",A1)'),
+    Odd('TB_AREA(E5&"",A1:A3)', (3, 1)),
+    Odd(f'TB_BEND("F"&"x","SI",{BEND})'),
+    Odd(f'TB_BEND(E6&",Fy",E5,{BEND})', (1, 2)),
+    Odd(f'TB_BEND(INDEX(E6:F6,1),CHOOSE(2,"SI","metric"),{BEND})'),
+    # Arguments that are arrays, by whatever function
+    Odd('TB_AREA("SI",TRANSPOSE(A1:A3))', (1, 3)),
+    Odd('TB_AREA("SI",IF(A1:A3>0.15,A1:A3,1))', (3, 1)),
+    Odd('TB_AREA("SI",A1:A3/SUM(A1:A3))', (3, 1)),
+    Odd('TB_AREA("SI",SUM(A1:A3*B1:B3))', (1, 1)),
+    Odd('TB_AREA("SI",A1:A3/SUM(A1:A3*B1:B3))', (3, 1)),
+    Odd('TB_AREA("SI",OFFSET(A1,0,0,3,1))', (3, 1)),
+    Odd('TB_AREA("SI",INDEX(A1:B3,0,1))', (3, 1)),
+    Odd('TB_AREA("SI",INDEX(A1:B3,2,1))'),
+    Odd('TB_AREA("SI",A1:A3*B1:B3)', (3, 1)),
+    Odd('TB_AREA("SI",A1:A3*TRANSPOSE(A1:A3))', (3, 3)),
+    Odd('TB_VELOCITY("SI",A1:A3,TB_AREA("SI",A1:A3)*2)', (3, 1)),
+    Odd('TB_AREA("SI",TB_AREA("SI",A1:A3))', (3, 1)),
+    Odd('TB_AREA("SI",SUM(TB_AREA("SI",A1:A3)))'),
+    Odd('TB_AREA("SI",{0.1;0.2}*2)', (2, 1)),
+    Odd('TB_AREA("SI",VLOOKUP(2,B1:C3,2,FALSE))'),
+    Odd('TB_AREA("SI",A1*1000&" mm")'),
+    Odd('TB_AREA("SI",IF(A1>0,E7,1))'),
+    Odd('TB_AREA("SI",IF(A1:A3>0.15,E7,A1:A3))', (3, 1)),
+    Odd('LET(x,A1*2,d,x+A2,TB_AREA("SI",d)*x)'),
+    Odd('_xlfn.LET(_xlpm.d,A1:A3,TB_AREA("SI",_xlpm.d))', (3, 1)),
+    Odd('TB_AREA("SI",_xlfn.SINGLE($M$1:$M$999))'),
+    Odd('TB_AREA("SI",_xlfn.ANCHORARRAY(H20))', (3, 1)),
+    # Tables computed on the way
+    Odd('TB_BRANCHFLOW("metric",B1:D3)', (3, 1)),
+    Odd('TB_BRANCHFLOW("metric",B1:C3*2)', (3, 1)),
+    Odd('TB_BRANCHFLOW("metric",B1:B3*2)'),
+    Odd('TB_BRANCHFLOW("metric",B1*2)'),
+    Odd('TB_SCHEDULE("name,Fx,Fy","SI",E1:K1,OFFSET(E1,1,0,3,7))', (3, 3)),
+    Odd('TB_SCHEDULE("name,Fx,Fy","SI",TRANSPOSE(E10:E16),E2:K4)', (3, 3)),
+    Odd('TB_SCHEDULE("name,Fx,Fy","SI",E10:E16,E2:K4)', (3, 3)),
+    # Conversions
+    Odd('TB_CONVERT(A1:A3,"m","mm")', (3, 1)),
+    Odd('TB_CONVERT(A1:A3*2,"m",E8&"m")', (3, 1)),
+    Odd('TB_CONVERT(A1,"m","m"&"m")'),
+    # Pressures against different data in one range
+    Odd('TB_CLOSED("Fx","metric",A1*1000,L1:L3)', (3, 1)),
+)
+
+
+def place(number: int) -> str:
+    """The cell of a formula, counted from 0."""
+    return to_a1(FIRST + TALL * number, COLUMN)
+
+
+def area(number: int) -> str:
+    """All cells of a formula."""
+    rows, cols = FORMULAS[number].size or (1, 1)
+    top = FIRST + TALL * number
+    return f"{to_a1(top, COLUMN)}:{to_a1(top + rows - 1, COLUMN + cols - 1)}"
+
+
+def make(path: Path) -> Path:
+    """Write the workbook, with values."""
+    book = openpyxl.Workbook()
+    sheet = book.active
+    sheet.title = SHEET
+    columns = {
+        "A": (0.1, 0.2, 0.3),
+        "B": (1.0, 2.0, 3.0),
+        "C": (-0.5, 0.7, None),
+        "D": (0.25, -0.6, "40 L/s"),
+        "L": (250.0, "3 bar(g)", "400 kPa(a)"),
+    }
+    for letter, values in columns.items():
+        for row, value in enumerate(values, 1):
+            sheet[f"{letter}{row}"] = value
+    table = (
+        ("name", "fitting", "rho", "D1", "p1 [bar]", "Q", "theta"),
+        ("B1", "bend", 1000.0, 0.3, 2.0, 0.2, 90.0),
+        ("C1", "bend", 998.0, 0.25, 3.0, 0.1, 45.0),
+        ("B2", "bend", 1000.0, 0.2, "400 kPa(a)", 0.05, 30.0),
+    )
+    for i, line in enumerate(table, 1):
+        for j, value in enumerate(line):
+            sheet.cell(i, 5 + j, value)
+    for i, head in enumerate(table[0]):
+        sheet.cell(10 + i, 5, head)
+    sheet["E5"], sheet["E6"], sheet["F6"], sheet["E7"], sheet["E8"] = "SI", "Fx", "Fy", "150 mm", "m"
+    for number, odd in enumerate(FORMULAS):
+        text, at = f"={odd.text}", place(number)
+        sheet.cell(FIRST + TALL * number, 13, 0.1 + 0.001 * number)
+        sheet[at] = text if odd.size is None else ArrayFormula(area(number), text)
+    book.save(path)
+    package = Package.read(path)
+    package.save(path, evaluate_workbook(package, fill_native=True).replaced)
+    return path
