@@ -63,9 +63,9 @@ def _maybe(random_: random.Random, share: float, value: Any) -> Any:
     return value if random_.random() < share else None
 
 
-def nodes(random_: random.Random, end: str) -> Rows:
+def nodes(random_: random.Random, end: str, most: int = 5) -> Rows:
     """Rows of nodes with reducers, offtakes, pumps and joints."""
-    count = random_.randint(2, 5)
+    count = random_.randint(2, most)
     x = y = z = 0.0
     rows: Rows = []
     for n in range(count):
@@ -130,9 +130,9 @@ def start(random_: random.Random, end: str) -> Rows:
     return rows
 
 
-def cases(random_: random.Random, end: str, table: Rows) -> Rows:
-    """One case of every kind."""
-    rows: Rows = [CASE_HEADS]
+def cases(random_: random.Random, end: str, table: Rows, count: int) -> Rows:
+    """So many cases, each of another kind."""
+    rows: Rows = []
 
     def add(**given: Any) -> None:
         rows.append([given.get(head) for head in CASE_HEADS])
@@ -145,7 +145,7 @@ def cases(random_: random.Random, end: str, table: Rows) -> Rows:
     valve = random_.choice(table)[0]
     add(case="valve", kind="shut", H=120.0, valve=valve, H2=_maybe(random_, 0.5, 60.0))
     add(case="empty", kind="empty")
-    return rows
+    return [CASE_HEADS, *random_.sample(rows, count)]
 
 
 def make(path: Path, counts: dict[str, int]) -> list[tuple[str, str]]:
@@ -205,9 +205,11 @@ def _run(book: Book, sheet: Any, random_: random.Random) -> None:
 def _run_cases(book: Book, sheet: Any, random_: random.Random) -> None:
     def draw() -> tuple[str, Sequence[Any]]:
         end = random_.choice(["continues", "jet", "closed"])
-        table, begin = nodes(random_, end), start(random_, end)
+        # Every tenth call has all kinds of cases; the others keep the workbook small.
+        large = random_.random() < 0.1
+        table, begin = nodes(random_, end, 5 if large else 3), start(random_, end)
         args = ["F", "metric", _floats(begin), [NODE_HEADS], _floats(table)]
-        return "TB_RUNCASES", [*args, _floats(cases(random_, end, table))]
+        return "TB_RUNCASES", [*args, _floats(cases(random_, end, table, 7 if large else 2))]
 
     args = _valid(draw)
     begin, heads, table = book.put(sheet, args[2]), book.put(sheet, args[3], 0), book.put(sheet, args[4])
@@ -222,13 +224,14 @@ def _schedule(book: Book, sheet: Any, random_: random.Random) -> None:
     kinds = row.routine.kinds
     heads = [column.name for column in row.routine.columns]
     rows: Rows = []
-    for _ in range(60):
+    for _ in range(random_.choice([2, 3, 4])):
         kind = random_.choice(list(kinds))
         given = sample(kinds[kind], random_)
         entry: dict[str, Any] = {"name": "x", "fitting": kind.upper()}
         entry |= {COLUMN_OF.get(a.name, a.name): v for a, v in zip(kinds[kind].args, given, strict=True)}
         rows.append([entry.get(head) for head in heads])
-    rows[7] = [None] * len(heads)
+    if random_.random() < 0.2:
+        rows.insert(random_.randrange(len(rows)), [None] * len(heads))
     headings, table = book.put(sheet, [heads], 0), book.put(sheet, rows)
     names = [r.name for r in row.results]
     book.formula(sheet, f'=TB_SCHEDULE("all","SI",{headings},{table})', len(rows), len(names))

@@ -23,7 +23,8 @@ from .test_detach import same
 
 # The entries of a load case begin with c in the working.
 CASES = tuple(Column(name=f"c{column.name}", role=column.role) for column in CASE_COLUMNS)
-COUNTS = {"runs": 200, "cases": 30, "schedules": 6, "balances": 200, "junctions": 200}
+# Random calls of each table function.
+COUNTS = {"runs": 200, "cases": 200, "schedules": 200, "balances": 200, "junctions": 200}
 
 
 @pytest.fixture(scope="module")
