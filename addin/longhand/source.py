@@ -22,7 +22,6 @@ from ..hosts.headless.names import Names, split_sheet
 from ..hosts.headless.tablerefs import Tables
 from ..progress import Progress
 from ..xlsx.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
-from ..xlsx.formulashift import MovableFormula
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
 from .calls import Call, Items, NotWorked, all_calls, everything, render, tree
@@ -216,10 +215,6 @@ class Source:
                 stack.append(inside or not name)
             elif part.kind is Kind.CLOSE:
                 stack.pop()
-            elif part.kind is Kind.REFERENCE and inside:
-                known = self.names.find(part.text, sheet)
-                if known is not None and _moves(known.text):
-                    raise NotWorked(f"the name {known.name} means another cell at each place")
         return out
 
     def values(self, sheet: str) -> dict[tuple[int, int], Scalar]:
@@ -300,11 +295,6 @@ class Source:
 def _closes_at_once(parts: list[Part], i: int) -> bool:
     after = next((p for p in parts[i + 1 :] if p.kind is not Kind.SPACE), None)
     return after is not None and after.kind is Kind.CLOSE
-
-
-def _moves(text: str) -> bool:
-    """Whether the text of a name reads otherwise in another cell."""
-    return MovableFormula(text, 1, 1).at(2, 2) != text
 
 
 def literal(part: Part) -> Scalar:

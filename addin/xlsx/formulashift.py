@@ -50,16 +50,23 @@ def _reference(match: re.Match[str]) -> _Reference | None:
     return None
 
 
-def _row(axis: _Axis, by: int) -> str:
+def _moved(axis: _Axis, by: int, last: int, around: bool) -> int:
+    """The number moved, 0 where it leaves the sheet."""
     held, number = axis
     number += 0 if held else by
-    return f"{'$' if held else ''}{number}" if 1 <= number <= MAX_ROW else ""
+    if around:
+        return (number - 1) % last + 1
+    return number if 1 <= number <= last else 0
 
 
-def _col(axis: _Axis, by: int) -> str:
-    held, number = axis
-    number += 0 if held else by
-    return ("$" if held else "") + column_letters(number) if 1 <= number <= MAX_COLUMN else ""
+def _row(axis: _Axis, by: int, around: bool) -> str:
+    number = _moved(axis, by, MAX_ROW, around)
+    return f"{'$' if axis[0] else ''}{number}" if number else ""
+
+
+def _col(axis: _Axis, by: int, around: bool) -> str:
+    number = _moved(axis, by, MAX_COLUMN, around)
+    return ("$" if axis[0] else "") + column_letters(number) if number else ""
 
 
 class MovableFormula:
@@ -79,10 +86,11 @@ class MovableFormula:
                 start = match.end()
         self._pieces.append(text[start:])
 
-    def at(self, row: int, col: int) -> str:
+    def at(self, row: int, col: int, around: bool = False) -> str:
         """The formula in another cell; ``$`` parts, strings, names and table parts stay.
 
-        A reference that leaves the sheet becomes ``#REF!``, as a spreadsheet writes it.
+        A reference that leaves the sheet becomes ``#REF!``, as a spreadsheet writes it; in a
+        defined name it goes ``around`` and comes in at the other edge.
         """
         rows, cols = row - self._row, col - self._col
         if rows == 0 and cols == 0:
@@ -94,10 +102,10 @@ class MovableFormula:
                 continue
             kind, one, two = piece
             if kind == "cell":
-                number, letters = _row(one, rows), _col(two, cols)
+                number, letters = _row(one, rows, around), _col(two, cols, around)
                 out.append(letters + number if letters and number else "#REF!")
             else:
                 shift, by = (_col, cols) if kind == "cols" else (_row, rows)
-                first, last = shift(one, by), shift(two, by)
+                first, last = shift(one, by, around), shift(two, by, around)
                 out.append(f"{first}:{last}" if first and last else "#REF!")
         return "".join(out)

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 
 from ...xlsx.formulashift import MovableFormula
 from ...xlsx.package import NameRef
-from .formulas import Kind, Part, Unreadable, calls, join, take_apart
+from .formulas import OPENS, Kind, Part, Unreadable, calls, join, take_apart
 from .lets import without_lets
 
 _DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
@@ -31,6 +31,7 @@ class Names:
             self._names[(name.sheet or "").casefold(), name.name.casefold()] = name
         self._parts: dict[NameRef, list[Part]] = {}
         self._calling: dict[NameRef, bool] = {}
+        self._formula: dict[NameRef, bool] = {}
 
     def find(self, operand: str, sheet: str) -> NameRef | None:
         """The name that an operand (``Q`` or ``Sheet1!Q``) means in a formula on that sheet."""
@@ -68,14 +69,33 @@ class Names:
             self._calling[name] = found
         return found
 
+    def formula(self, name: NameRef) -> bool:
+        """Whether the name is more than a constant or the same cells everywhere.
+
+        One that refers to tables or to other workbooks is left to whoever reads it.
+        """
+        known = self._formula.get(name)
+        if known is None:
+            text = name.text.removeprefix("=")
+            moving = MovableFormula(text, 1, 1).at(2, 2, around=True) != text
+            known = self._formula[name] = "[" not in text and (moving or self._of_parts(name))
+        return known
+
+    def _of_parts(self, name: NameRef) -> bool:
+        try:
+            return any(part.kind in OPENS or part.kind is Kind.OPERATOR for part in self.parts(name))
+        except Unreadable:
+            return False
+
     def that_call(self) -> list[str]:
         """The names in which a TB_ function is called."""
         return [name.name for name in self._names.values() if self.calling(name)]
 
     def written_out(self, parts: list[Part], sheet: str, row: int, col: int, depth: int = 0) -> list[Part]:
-        """The parts of a formula with every name that calls a TB_ function replaced by its text.
+        """The parts of a formula with every name that is a formula itself replaced by its text.
 
-        The evaluator drops such names. The LETs of a formula that calls one are written out, too.
+        The evaluator drops names that call a TB_ function, and does not compute those of arrays
+        nor those that mean another cell at each place. The LETs of a formula that calls one are written out, too.
         Raises :class:`Unreadable` for names in a circle.
         """
         parts = without_lets(parts)
@@ -85,7 +105,7 @@ class Names:
         changed = False
         for part in parts:
             name = self.find(part.text, sheet) if part.kind is Kind.REFERENCE else None
-            if name is None or not self.calling(name):
+            if name is None or not (self.calling(name) or self.formula(name)):
                 out.append(part)
                 continue
             if depth > _DEEPEST:
@@ -93,14 +113,15 @@ class Names:
             changed = True
             inner = self._at(name, row, col)
             inner = self.written_out(inner, name.sheet or sheet, row, col, depth + 1)
-            out += [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
+            alone = len(inner) == 1
+            out += inner if alone else [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
         return without_lets(out) if changed else parts
 
     def _at(self, name: NameRef, row: int, col: int) -> list[Part]:
         """The text of a name as it reads in one cell: its free references count from A1."""
         parts = self.parts(name)
         text = join(parts)
-        moved = MovableFormula(text, 1, 1).at(row, col)
+        moved = MovableFormula(text, 1, 1).at(row, col, around=True)
         return parts if moved == text else take_apart(moved)
 
     def direct_calls(self, parts: Sequence[Part], sheet: str) -> list[str]:

@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import NamedTuple
 
 import openpyxl
+from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
@@ -78,6 +79,10 @@ FORMULAS = (
     Odd('_xlfn.LET(_xlpm.d,A1:A3,TB_AREA("SI",_xlpm.d))', (3, 1)),
     Odd('TB_AREA("SI",_xlfn.SINGLE($M$1:$M$999))'),
     Odd('TB_AREA("SI",_xlfn.ANCHORARRAY(H20))', (3, 1)),
+    # Names: of a cell, of an expression, of the cell that stands four columns to the right
+    Odd('TB_AREA("SI",diameters)', (3, 1)),
+    Odd('TB_AREA("SI",doubled)', (3, 1)),
+    Odd('TB_AREA("SI",beside)*2'),
     # Tables computed on the way
     Odd('TB_BRANCHFLOW("metric",B1:D3)', (3, 1)),
     Odd('TB_BRANCHFLOW("metric",B1:C3*2)', (3, 1)),
@@ -134,6 +139,8 @@ def make(path: Path) -> Path:
     for i, head in enumerate(table[0]):
         sheet.cell(10 + i, 5, head)
     sheet["E5"], sheet["E6"], sheet["F6"], sheet["E7"], sheet["E8"] = "SI", "Fx", "Fy", "150 mm", "m"
+    for name, text in (("diameters", "$A$1:$A$3"), ("doubled", "$A$1:$A$3*2"), ("beside", "F1")):
+        book.defined_names[name] = DefinedName(name, attr_text=f"{SHEET}!{text}")
     for number, odd in enumerate(FORMULAS):
         text, at = f"={odd.text}", place(number)
         sheet.cell(FIRST + TALL * number, 13, 0.1 + 0.001 * number)
