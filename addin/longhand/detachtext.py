@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from ..cells import Scalar
-from ..hosts.headless.shadow import literal
+from ..hosts.headless.formulas import literal
 
 _TEXT = 250
 """The longest text that a formula may hold in one piece."""

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import contextlib
 import gc
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
+from ..hosts.headless.formulas import join, take_apart
+from ..hosts.headless.names import Names
 from ..progress import Progress
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
@@ -26,6 +28,16 @@ def collection_paused() -> Iterator[None]:
     finally:
         if was:
             gc.enable()
+
+
+def _kept_outside(package: Package) -> Callable[[str], str]:
+    """Formulas with the values that the file keeps of other workbooks; for evaluation only."""
+    names = Names((), package.externals)
+
+    def text_of(text: str) -> str:
+        return join(names.written_out(take_apart(text), "", 1, 1)) if "[" in text else text
+
+    return text_of
 
 
 class Made:
@@ -48,7 +60,7 @@ class Made:
         if progress is not None:
             progress("evaluate", 0, 1)
         still = {s.part: without_formulas(package.part(s.part)) for s in package.sheets}
-        parts = self.addition.parts(None)
+        parts = self.addition.parts(None, _kept_outside(package))
         extents = {s.name: (s.last_row, s.last_col) for s in self.book.sheets}
         with collection_paused():
             self.values = evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, field
 
-from ..hosts.headless.shadow import literal
+from ..hosts.headless.formulas import literal
 from .block import Block
 from .calls import Call, NotWorked, Outcome, Shape
 from .rows import Group, RowSheet

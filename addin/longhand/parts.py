@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import posixpath
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Final, NamedTuple
 
 from lxml import etree
@@ -51,14 +51,18 @@ class Addition:
         self._styles_part, self._formats, self._new_styles = self._styled()
         self._common = self._register()
 
-    def parts(self, values: Mapping[str, Values] | None) -> Parts:
-        """All parts; with ``values`` (by sheet) the formulas of the new sheets carry their results."""
+    def parts(self, values: Mapping[str, Values] | None, text_of: Callable[[str], str] = str) -> Parts:
+        """All parts; with ``values`` (by sheet) the formulas of the new sheets carry their results.
+
+        ``text_of`` may write the formulas another way.
+        """
         added = {
             part: sheet_xml(
                 sheet,
                 self._formats.cells,
                 self._formats.dxfs,
                 None if values is None else values[sheet.name],
+                text_of,
             )
             for part, sheet in zip(self._names, self.sheets, strict=True)
         }

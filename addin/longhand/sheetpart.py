@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from typing import Any
 
 from ..xlsx.a1 import column_letters
@@ -16,14 +16,25 @@ Values = Mapping[int, list[Any]]
 
 
 def sheet_xml(
-    sheet: Sheet, styles: Mapping[str, int], dxfs: Mapping[str, int], values: Values | None
+    sheet: Sheet,
+    styles: Mapping[str, int],
+    dxfs: Mapping[str, int],
+    values: Values | None,
+    text_of: Callable[[str], str] = str,
 ) -> bytes:
-    """The part of a sheet; with ``values`` its formulas carry their results."""
-    return "".join(_pieces(sheet, styles, dxfs, values)).encode()
+    """The part of a sheet; with ``values`` its formulas carry their results.
+
+    ``text_of`` may write the formulas another way.
+    """
+    return "".join(_pieces(sheet, styles, dxfs, values, text_of)).encode()
 
 
 def _pieces(
-    sheet: Sheet, styles: Mapping[str, int], dxfs: Mapping[str, int], values: Values | None
+    sheet: Sheet,
+    styles: Mapping[str, int],
+    dxfs: Mapping[str, int],
+    values: Values | None,
+    text_of: Callable[[str], str],
 ) -> Iterator[str]:
     yield '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>\n'
     yield f'<worksheet xmlns="{_MAIN}"><sheetPr><pageSetUpPr fitToPage="{int(sheet.fit_width)}"/></sheetPr>'
@@ -55,7 +66,8 @@ def _pieces(
             content, style = cells[col]
             head = f'<c r="{letters[col - 1]}{row}" s="{styles[style]}"'
             if type(content) is Formula:
-                yield head + _formula(content, found[col - 1] if found is not None else None)
+                value = found[col - 1] if found is not None else None
+                yield head + _formula(content, value, text_of)
             elif type(content) is str:
                 keep = ' xml:space="preserve"' if content != content.strip() else ""
                 yield (
@@ -76,9 +88,9 @@ def _text(text: str) -> str:
     return f' t="inlineStr"><is><t{keep}>{escape(text)}</t></is></c>'
 
 
-def _formula(formula: Formula, value: Any) -> str:
+def _formula(formula: Formula, value: Any, text_of: Callable[[str], str]) -> str:
     array = f' t="array" ref="{formula.ref}"' if formula.ref else ""
-    text = f"<f{array}>{escape(formula.text)}</f>" if formula.text else ""
+    text = f"<f{array}>{escape(text_of(formula.text))}</f>" if formula.text else ""
     if value is None:
         return f">{text}</c>" if text else "/>"
     kind, shown = encode(value)

@@ -241,7 +241,7 @@ class Source:
         """The cells that an operand means in a formula on a sheet; None when it is no plain reference."""
         place, rest = split_sheet(operand) if "!" in operand else (None, operand)
         if operand.startswith("[") or (place is not None and "[" in place):
-            raise NotWorked("the formula refers to another workbook")
+            return None  # of another workbook
         if _RANGE.fullmatch(rest):
             home = sheet if place is None else place
             if home.casefold() not in self._parts:
@@ -273,7 +273,7 @@ class Source:
     def operand(self, text: str, sheet: str) -> str:
         """An operand of a formula on a sheet, as a formula on any other sheet writes it."""
         if text.startswith("[") or "[" in text.partition("!")[0]:
-            raise NotWorked("the formula refers to another workbook")
+            return text
         if "!" in text and _RANGE.fullmatch(split_sheet(text)[1]):
             return text
         if _RANGE.fullmatch(text):

@@ -11,7 +11,7 @@ from ..blocks.runread import CASE_COLUMNS, NODE_COLUMNS, START_COLUMNS
 from ..catalogue.types import Arg, Column, Row, RowStep, Step, TableLonghand
 from ..catalogue.workings.runs import ENVELOPE, run_working
 from ..catalogue.workings.sections import junctions
-from ..hosts.headless.shadow import literal
+from ..hosts.headless.formulas import literal
 from ..tables import is_blank
 from .arguments import Argument, in_group, taken
 from .calls import NotWorked, Shape

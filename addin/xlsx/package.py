@@ -11,6 +11,7 @@ from typing import NamedTuple
 
 from lxml import etree
 
+from .externals import Externals
 from .filetype import SAVE_AS, refuse_other_formats
 from .opc import (
     MAIN,
@@ -75,6 +76,7 @@ class Package:
     signed: bool
     has_macros: bool
     external_links: bool
+    externals: Externals
     date1904: bool
     sha256: str
 
@@ -106,7 +108,10 @@ class Package:
         self.has_macros = any(
             name.endswith("vbaproject.bin") or name.startswith("xl/macrosheets/") for name in parts
         )
-        self.external_links = any(link.kind == "externalLink" for link in links)
+        by_id = {link.id: link.part for link in links if link.kind == "externalLink"}
+        linked = [by_id.get(n.get(RELATION_ID, ""), "") for n in root.iter(f"{{{MAIN}}}externalReference")]
+        self.external_links = bool(by_id)
+        self.externals = Externals([parse(self.part(part), part, label) for part in linked if part])
 
     @classmethod
     def read(cls, path: str | PathLike[str]) -> Package:

@@ -160,6 +160,10 @@ def _evaluated(
         }
     results = Results(settlement, wanted)
     evaluation.warnings += settlement.warnings + _built_on_stale(settlement, affected)
+    if model.names.outside:
+        evaluation.warnings.append(
+            "cells of other workbooks have the values that this file keeps of them; no other file was opened"
+        )
     _Report(evaluation, settlement, results, affected).write()
     settlement.release()  # the evaluated copy and the new sheets together would be the peak of memory
     if progress is not None:

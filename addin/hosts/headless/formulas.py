@@ -15,6 +15,8 @@ from typing import NamedTuple
 
 from formualizer import TokenizerError, TokenSubType, TokenType, tokenize
 
+from ...cells import CellError, Scalar
+
 # Stands for an omitted argument in the rewritten text: two characters of private use,
 # which no keyboard makes.
 OMITTED = "\ue0f0\ue0f1"
@@ -105,6 +107,19 @@ def take_apart(text: str) -> list[Part]:
 def join(parts: Sequence[Part]) -> str:
     """The text of the parts."""
     return "".join(part.text for part in parts)
+
+
+def literal(value: Scalar) -> str:
+    """A value as the text of a formula; what is not stored is #N/A, and never 0."""
+    if value is None:
+        return "#N/A"
+    if value is True or value is False:
+        return "TRUE" if value else "FALSE"
+    if isinstance(value, CellError):
+        return str(value)
+    if isinstance(value, str):
+        return '"' + value.replace('"', '""') + '"'
+    return repr(float(value)).upper()
 
 
 def call_name(opening: str) -> str | None:

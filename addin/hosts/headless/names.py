@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 
+from ...xlsx.externals import Externals
 from ...xlsx.formulashift import MovableFormula
 from ...xlsx.package import NameRef
-from .formulas import OPENS, Kind, Part, Unreadable, calls, join, take_apart
+from .formulas import OPENS, Kind, Part, Unreadable, calls, join, literal, take_apart
 from .lets import without_lets
 
 _DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
@@ -22,10 +23,17 @@ def split_sheet(text: str) -> tuple[str | None, str]:
     return place, rest
 
 
+def _is_outside(part: Part) -> bool:
+    return part.kind is Kind.REFERENCE and "[" in part.text
+
+
 class Names:
     """The defined names of a workbook; a sheet's own name goes before the workbook's."""
 
-    def __init__(self, names: Iterable[NameRef]) -> None:
+    def __init__(self, names: Iterable[NameRef], externals: Externals | None = None) -> None:
+        self._externals = externals
+        self.outside = False
+        """Whether a value was taken that the file keeps of another workbook."""
         self._names: dict[tuple[str, str], NameRef] = {}
         for name in names:
             self._names[(name.sheet or "").casefold(), name.name.casefold()] = name
@@ -78,7 +86,10 @@ class Names:
         if known is None:
             text = name.text.removeprefix("=")
             moving = MovableFormula(text, 1, 1).at(2, 2, around=True) != text
-            known = self._formula[name] = "[" not in text and (moving or self._of_parts(name))
+            known = "[" not in text and (moving or self._of_parts(name))
+            if "[" in text and self._externals is not None:
+                known = self._externals.grid(text) is not None
+            self._formula[name] = known
         return known
 
     def _of_parts(self, name: NameRef) -> bool:
@@ -98,7 +109,7 @@ class Names:
         nor those that mean another cell at each place. The LETs of a formula that calls one are written out, too.
         Raises :class:`Unreadable` for names in a circle.
         """
-        parts = without_lets(parts)
+        parts = self._kept_outside(without_lets(parts))
         if not self._names:
             return parts
         out: list[Part] = []
@@ -116,6 +127,22 @@ class Names:
             alone = len(inner) == 1
             out += inner if alone else [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
         return without_lets(out) if changed else parts
+
+    def _kept_outside(self, parts: list[Part]) -> list[Part]:
+        """The parts with cells of other workbooks as the values that the file keeps of them."""
+        if self._externals is None or not any(_is_outside(part) for part in parts):
+            return parts
+        out: list[Part] = []
+        for part in parts:
+            grid = self._externals.grid(part.text) if _is_outside(part) else None
+            if grid is None:
+                out.append(part)
+                continue
+            self.outside = True
+            lines = [",".join('""' if value is None else literal(value) for value in line) for line in grid]
+            text = ";".join(lines)
+            out += take_apart(text if len(grid) == len(grid[0]) == 1 else f"{{{text}}}")
+        return out
 
     def _at(self, name: NameRef, row: int, col: int) -> list[Part]:
         """The text of a name as it reads in one cell: its free references count from A1."""

@@ -9,22 +9,10 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from ...cells import CellError, Grid, Scalar
+from ...cells import Grid, Scalar
 from ...xlsx.sheetxml import set_formulas, store
+from .formulas import literal
 from .model import Model, Node
-
-
-def literal(value: Scalar) -> str:
-    """A value as the text of a formula; what is not stored is #N/A, and never 0."""
-    if value is None:
-        return "#N/A"
-    if value is True or value is False:
-        return "TRUE" if value else "FALSE"
-    if isinstance(value, CellError):
-        return str(value)
-    if isinstance(value, str):
-        return '"' + value.replace('"', '""') + '"'
-    return repr(float(value)).upper()
 
 
 def evaluation_copy(model: Model, instead: Mapping[int, Scalar]) -> bytes:

@@ -6,7 +6,17 @@ from pathlib import Path
 from typing import NamedTuple
 
 import openpyxl
+from openpyxl.packaging.relationship import Relationship
 from openpyxl.workbook.defined_name import DefinedName
+from openpyxl.workbook.external_link.external import (
+    ExternalBook,
+    ExternalCell,
+    ExternalLink,
+    ExternalRow,
+    ExternalSheetData,
+    ExternalSheetDataSet,
+    ExternalSheetNames,
+)
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
@@ -83,6 +93,12 @@ FORMULAS = (
     Odd('TB_AREA("SI",diameters)', (3, 1)),
     Odd('TB_AREA("SI",doubled)', (3, 1)),
     Odd('TB_AREA("SI",beside)*2'),
+    # Cells of another workbook, of which this one keeps the values
+    Odd('TB_AREA("SI",[1]Data!$A$1)'),
+    Odd('TB_AREA("SI",[1]Data!$A$1:$A$3)', (3, 1)),
+    Odd('TB_AREA("SI",A1:A3)*[1]Data!$B$1', (3, 1)),
+    Odd("TB_AREA([1]Data!$B$2,A1:A3)", (3, 1)),
+    Odd('TB_AREA("SI",linked)'),
     # Tables computed on the way
     Odd('TB_BRANCHFLOW("metric",B1:D3)', (3, 1)),
     Odd('TB_BRANCHFLOW("metric",B1:C3*2)', (3, 1)),
@@ -110,6 +126,28 @@ def area(number: int) -> str:
     rows, cols = FORMULAS[number].size or (1, 1)
     top = FIRST + TALL * number
     return f"{to_a1(top, COLUMN)}:{to_a1(top + rows - 1, COLUMN + cols - 1)}"
+
+
+def _link(kept: dict[str, float | str]) -> ExternalLink:
+    """A link to a workbook that is nowhere, with the values kept of it."""
+    rows = [
+        ExternalRow(
+            r=row,
+            cell=[
+                ExternalCell(r=at, t="str" if isinstance(value, str) else "n", v=str(value))
+                for at, value in kept.items()
+                if at[1:] == str(row)
+            ],
+        )
+        for row in (1, 2, 3)
+    ]
+    data = ExternalSheetDataSet(sheetData=[ExternalSheetData(sheetId=0, row=rows)])
+    names = ExternalSheetNames(sheetName=["Data"])
+    link = ExternalLink(externalBook=ExternalBook(sheetNames=names, sheetDataSet=data, id="rId1"))
+    link.file_link = Relationship(
+        type="externalLinkPath", Target="elsewhere.xlsx", TargetMode="External", Id="rId1"
+    )
+    return link
 
 
 def make(path: Path) -> Path:
@@ -141,6 +179,8 @@ def make(path: Path) -> Path:
     sheet["E5"], sheet["E6"], sheet["F6"], sheet["E7"], sheet["E8"] = "SI", "Fx", "Fy", "150 mm", "m"
     for name, text in (("diameters", "$A$1:$A$3"), ("doubled", "$A$1:$A$3*2"), ("beside", "F1")):
         book.defined_names[name] = DefinedName(name, attr_text=f"{SHEET}!{text}")
+    book.defined_names["linked"] = DefinedName("linked", attr_text="[1]Data!$A$2")
+    book._external_links.append(_link({"A1": 0.11, "A2": 0.12, "A3": 0.13, "B1": 3.0, "B2": "SI"}))
     for number, odd in enumerate(FORMULAS):
         text, at = f"={odd.text}", place(number)
         sheet.cell(FIRST + TALL * number, 13, 0.1 + 0.001 * number)
