@@ -63,13 +63,18 @@ def _cells(data: etree._Element) -> _Cells:
         if text is None:
             continue
         r1, c1, _, _ = range_from_a1(cell.get("r", "A1"))
-        cells[r1, c1] = _value(cell.get("t", "n"), text)
+        value = _value(cell.get("t", "n"), text)
+        if value is not None:
+            cells[r1, c1] = value
     return cells
 
 
 def _value(kind: str, text: str) -> Scalar:
     if kind == "n":
-        return float(text)
+        try:
+            return float(text)
+        except ValueError:
+            return None
     if kind == "b":
         return text.strip() in ("1", "true")
     if kind == "e":

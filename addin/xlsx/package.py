@@ -111,7 +111,7 @@ class Package:
         by_id = {link.id: link.part for link in links if link.kind == "externalLink"}
         linked = [by_id.get(n.get(RELATION_ID, ""), "") for n in root.iter(f"{{{MAIN}}}externalReference")]
         self.external_links = bool(by_id)
-        self.externals = Externals([parse(self.part(part), part, label) for part in linked if part])
+        self.externals = Externals([parse(self.part(part), part, label) for part in linked if self.has(part)])
 
     @classmethod
     def read(cls, path: str | PathLike[str]) -> Package:

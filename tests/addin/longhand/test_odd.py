@@ -8,6 +8,7 @@ import openpyxl
 import pytest
 
 from thrustbook.addin.cells import Scalar
+from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.xlsx.package import Package
 
@@ -42,6 +43,11 @@ def test_every_formula_has_values(book: Path) -> None:
         shown = [value for line in table for value in line]
         assert len(shown) == rows * cols
         assert all(isinstance(v, float | int) or not str(v).startswith("#") for v in shown), (odd, shown)
+
+
+def test_the_evaluation_says_that_it_used_kept_values(book: Path) -> None:
+    warnings = evaluate_workbook(Package.read(book)).warnings
+    assert [warning for warning in warnings if "other workbooks" in warning]
 
 
 def test_every_cell_is_worked_and_agrees(detached: Detached) -> None:
