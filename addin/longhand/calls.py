@@ -146,7 +146,7 @@ def render(items: Items, operand: Callable[[str], str], call: Callable[[Call], s
             out.append(call(item))
         elif item.kind is Kind.REFERENCE:
             out.append(operand(item.text))
-        elif item.kind is Kind.OPERATOR and item.text in (":", "#", "@"):
+        elif item.kind is Kind.OPERATOR and item.text in ("#", "@"):
             raise NotWorked(f'the formula uses the operator "{item.text}"')
         else:
             out.append(item.text)

@@ -30,6 +30,8 @@ _REDUCING: Final = frozenset(
     + ("STDEV", "STDEV.P", "STDEV.S", "SUM", "SUMPRODUCT", "SUMSQ", "VAR", "VAR.P", "VAR.S")
 )
 _OF_NUMBERS: Final = frozenset("+-*/^%")
+_OF_CELLS: Final = frozenset((":", " ", ","))
+"""From one cell to another, what two ranges share, both of them."""
 _GIVES_CELLS: Final = frozenset(("CHOOSE", "IF", "IFERROR", "IFNA", "INDEX", "INDIRECT", "OFFSET"))
 """Functions that may hand on a cell as it is, an empty one included."""
 
@@ -109,6 +111,7 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
                 loose[i] = of
         elif item.kind is Kind.OPERATOR:
             number = number and item.text in _OF_NUMBERS
+            elementwise = elementwise and item.text not in _OF_CELLS
         elif item.kind is Kind.LITERAL:
             number = number and item.text[:1] in "0123456789."
     return Survey(loose, elementwise, number, takes_results, computes and several)
@@ -130,7 +133,14 @@ def within(shape: Shape, i: int, j: int) -> Shape:
 def hands_on_cells(items: Items) -> bool:
     """Whether an expression may give a cell as it is."""
     first = items[0]
-    return isinstance(first, Part) and first.kind is Kind.OPEN and function_name(first.text) in _GIVES_CELLS
+    if spans(items) or not isinstance(first, Part):
+        return spans(items)
+    return first.kind is Kind.OPEN and function_name(first.text) in _GIVES_CELLS
+
+
+def spans(items: Items) -> bool:
+    """Whether an expression refers to cells by an operator, as from one cell to another."""
+    return any(isinstance(i, Part) and i.kind is Kind.OPERATOR and i.text in _OF_CELLS for i in items)
 
 
 def outcome_shape(item: Call) -> Shape:

@@ -14,7 +14,7 @@ from ..tables import is_blank
 from ..xlsx.refusals import Refusal
 from .arguments import Argument, resolve
 from .calls import Call, Items, NotWorked
-from .expressions import SINGLE, hands_on_cells
+from .expressions import SINGLE, hands_on_cells, spans
 from .outcomes import written
 from .source import Area, Source, TbCell, plain
 from .staged import Staged
@@ -78,7 +78,7 @@ class Reader:
             return argument
         if grid is None or (failed and not isinstance(cell.cell.value, CellError)):
             raise NotWorked(f"{argument.shown()} must be known beforehand and cannot be evaluated here")
-        if found is not None and not beforehand and not found.computes:
+        if found is not None and not beforehand and not found.computes and not spans(argument.items):
             numbers = role in _WORDS or all(isinstance(v, float | CellError) for line in grid for v in line)
             shape = len(grid), len(grid[0])
             if numbers and shape == (found.shape if found.elementwise else SINGLE):
@@ -110,6 +110,8 @@ class Reader:
 
             def text() -> str:
                 inside = plain(items, self._source, cell.sheet, written)
+                if spans(items):  # not every evaluator gives the cells between two others as an array
+                    inside = f"INDEX({inside},0,0)"
                 # An empty cell stays empty and does not become 0.
                 return f'IF({inside}="","",{inside})' if blanks else inside
 

@@ -74,6 +74,8 @@ FORMULAS = (
     Odd('TB_AREA("SI",A1:A3/SUM(A1:A3*B1:B3))', (3, 1)),
     Odd('TB_AREA("SI",OFFSET(A1,0,0,3,1))', (3, 1)),
     Odd('TB_AREA("SI",INDEX(A1:B3,0,1))', (3, 1)),
+    Odd('TB_AREA("SI",A1:INDEX(A1:A9,COUNT(A1:A9)))', (3, 1)),
+    Odd('SUM(TB_AREA("SI",A1:INDEX(A1:A9,3)))'),
     Odd('TB_AREA("SI",INDEX(A1:B3,2,1))'),
     Odd('TB_AREA("SI",A1:A3*B1:B3)', (3, 1)),
     Odd('TB_AREA("SI",A1:A3*TRANSPOSE(A1:A3))', (3, 3)),
