@@ -10,6 +10,8 @@ from typing import Any, NamedTuple
 
 from ..cells import CellError, Scalar
 from ..hosts.headless.formulas import (
+    CLOSES,
+    OPENS,
     Kind,
     Part,
     Unreadable,
@@ -26,6 +28,7 @@ from ..xlsx.package import Package
 from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
 from .calls import Call, Items, NotWorked, all_calls, everything, render, tree
 from .grid import quoted_sheet
+from .symbols import quoted
 
 _RANGE = re.compile(
     r"\$?[A-Za-z]{1,3}\$?[0-9]{1,7}(?::\$?[A-Za-z]{1,3}\$?[0-9]{1,7})?"
@@ -194,27 +197,35 @@ class Source:
         return out
 
     def _fixed(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
-        """The parts of a formula such that the arguments of our calls mean the same on another sheet.
+        """The parts of a formula such that they mean the same on another sheet.
 
         Raises :class:`NotWorked` where that cannot be had.
         """
-        own = f"{quoted_sheet(sheet)}!{to_a1(cell.row, cell.col, absolute=True)}"
-        stack: list[bool] = []
+        own = Area(sheet, cell.row, cell.col, cell.row, cell.col)
+        if cell.kind == "array" and cell.ref is not None:
+            own = Area(sheet, *cell.ref)
         out: list[Part] = []
-        for i, part in enumerate(parts):
+        at = 0
+        while at < len(parts):
+            part, at = parts[at], at + 1
             out.append(part)
-            inside = bool(stack) and stack[-1]
-            if part.kind is Kind.OPEN:
-                name = "" if call_name(part.text) else function_name(part.text)
-                if inside and name in _OF_THE_PLACE:
-                    named = name == "INDIRECT" and '"' in parts[i + 1].text and "!" in parts[i + 1].text
-                    if name not in ("ROW", "COLUMN") and not named:
-                        raise NotWorked(f"an argument uses {name}, which depends on where the formula stands")
-                    if not named and _closes_at_once(parts, i):
-                        out.append(Part(own, Kind.REFERENCE))
-                stack.append(inside or not name)
-            elif part.kind is Kind.CLOSE:
-                stack.pop()
+            name = function_name(part.text) if part.kind is Kind.OPEN else ""
+            if name not in _OF_THE_PLACE:
+                continue
+            given, end = _first_argument(parts, at)
+            first = given[0].text if given else ""
+            if name == "INDIRECT" and first.startswith('"'):
+                word = str(literal(given[0]))
+                if "!" in word:
+                    continue
+                if len(given) > 1 or parts[end].kind is Kind.COMMA:
+                    raise NotWorked("the formula uses INDIRECT, which depends on where it stands")
+                out.append(Part(quoted(f"{quoted_sheet(sheet)}!{word}"), Kind.LITERAL))
+                at = end
+            elif name not in ("ROW", "COLUMN"):
+                raise NotWorked(f"the formula uses {name}, which depends on where it stands")
+            elif not given:
+                out.append(Part(own.text(), Kind.REFERENCE))
         return out
 
     def values(self, sheet: str) -> dict[tuple[int, int], Scalar]:
@@ -292,9 +303,15 @@ class Source:
         return text if "!" in text else f"{quoted_sheet(sheet)}!{text}"
 
 
-def _closes_at_once(parts: list[Part], i: int) -> bool:
-    after = next((p for p in parts[i + 1 :] if p.kind is not Kind.SPACE), None)
-    return after is not None and after.kind is Kind.CLOSE
+def _first_argument(parts: list[Part], at: int) -> tuple[list[Part], int]:
+    """What is given first to a function opened before, and the place of the comma or bracket behind it."""
+    depth, end = 0, at
+    while end < len(parts) and (depth or not (parts[end].kind is Kind.COMMA or parts[end].kind in CLOSES)):
+        depth += (parts[end].kind in OPENS) - (parts[end].kind in CLOSES)
+        end += 1
+    if end == len(parts):
+        raise NotWorked("the brackets of the formula do not close")
+    return [part for part in parts[at:end] if part.kind is not Kind.SPACE], end
 
 
 def literal(part: Part) -> Scalar:

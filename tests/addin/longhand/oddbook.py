@@ -95,6 +95,10 @@ FORMULAS = (
     Odd('TB_AREA("SI",diameters)', (3, 1)),
     Odd('TB_AREA("SI",doubled)', (3, 1)),
     Odd('TB_AREA("SI",beside)*2'),
+    # Formulas that depend on where they stand
+    Odd('TB_AREA("SI",INDIRECT("A2"))'),
+    Odd('TB_AREA("SI",INDIRECT("S!A2"))*INDIRECT("A3")'),
+    Odd('TB_AREA("SI",A1)*ROW()+COLUMN()'),
     # Cells of another workbook, of which this one keeps the values
     Odd('TB_AREA("SI",[1]Data!$A$1)'),
     Odd('TB_AREA("SI",[1]Data!$A$1:$A$3)', (3, 1)),

@@ -66,10 +66,11 @@ def test_detached_copy_after_a_change(book: Path, tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     ("formula", "words"),
     [
-        ('=TB_AREA("metric",INDIRECT("A2"))', "INDIRECT"),
+        ('=TB_AREA("metric",INDIRECT("R2C1",FALSE))', "INDIRECT"),
         ('=TB_AREA("metric",INDIRECT("A"&ROW()))', "INDIRECT"),
         ('=TB_AREA("metric",IF(CELL("row")>0,A2,A3))', "CELL"),
-        ('=TB_AREA("metric",HERE)', "HERE"),
+        ('=TB_AREA("metric",A2)*SHEET()', "SHEET"),
+        ('=MAP(A2:A3,LAMBDA(d,TB_AREA("metric",d)))', "LAMBDA"),
     ],
 )
 def test_what_cannot_be_placed_is_said(tmp_path: Path, formula: str, words: str) -> None:
@@ -77,7 +78,6 @@ def test_what_cannot_be_placed_is_said(tmp_path: Path, formula: str, words: str)
     sheet = book.worksheets[0]
     sheet.title = "A"
     sheet["A2"], sheet["B2"] = 100.0, formula
-    book.defined_names["HERE"] = DefinedName("HERE", attr_text="A!$A1")
     path = tmp_path / "book.xlsx"
     book.save(path)
     found = Made(Package.read(changed(path, {"A": {"B2": 1.0}}, tmp_path / "stored.xlsx"))).verdicts()
