@@ -13,6 +13,7 @@ from ...xlsx.a1 import MAX_COLUMN, MAX_ROW, column_number, to_a1
 from ...xlsx.package import NameRef, Package
 from ...xlsx.sheetxml import FormulaCell, formula_cells
 from .areas import AREA, CALL, Area, Extent
+from .contexts import Operand, in_context, operand
 from .dependency import Graph, Reference
 from .formulas import (
     Kind,
@@ -116,7 +117,7 @@ class Model:
     def __init__(self, package: Package, functions: Functions, progress: Progress | None = None) -> None:
         self.package = package
         self.functions = functions
-        self.names = Names(package.defined_names)
+        self.names = Names(package.defined_names, package.externals)
         self.tables = Tables(package.tables)
         self.sheet_names = [sheet.name for sheet in package.sheets]
         self._sheet_index = {name.casefold(): i for i, name in enumerate(self.sheet_names)}
@@ -124,6 +125,8 @@ class Model:
         self._of_name: dict[NameRef, _Seen] = {}
         # Formulas of the spreadsheet's own that need no rewriting, row numbers apart.
         self._unchanged: set[str] = set()
+        # Those in which no range stands for a single value.
+        self._in_context: set[str] = set()
         self._missing: dict[frozenset[str], str] = {}
         self.nodes: list[Node] = []
         self.areas: list[Area] = []
@@ -195,10 +198,22 @@ class Model:
         shape = _DIGITS.sub("0", cell.text) if own else ""
         if own and shape in self._unchanged:
             return join(parts)
+        named = any(part.kind is Kind.REFERENCE and operand(part.text) is Operand.UNKNOWN for part in parts)
+        if not own or shape not in self._in_context:
+            given = parts
+            parts = self._single_values(node, parts)
+            if own and not named and not node.reason and parts == given:
+                self._in_context.add(shape)
         if cell.kind == "plain":
             parts = one_cell(parts)
         rewritten = rewrite(parts)
-        if own and not rewritten.may_be_array and rewritten.text == cell.text:
+        if (
+            own
+            and not named
+            and not node.reason
+            and not rewritten.may_be_array
+            and rewritten.text == cell.text
+        ):
             self._unchanged.add(shape)
         if node.calls:
             node.rewritten = rewritten
@@ -214,6 +229,33 @@ class Model:
         if whole is None:
             return f"{AREA}({area.number},{rewritten.text})"
         return f"{CALL}({area.number},{whole[1]})" if whole[1].strip() else f"{CALL}({area.number})"
+
+    def _single_values(self, node: Node, parts: list[Part]) -> list[Part]:
+        """The formula with a range or an array where a single value is meant as a spreadsheet takes it."""
+        cell, sheet = node.cell, self.sheet_names[node.sheet]
+        own = ""
+        if cell.kind == "array" and cell.ref is not None and cell.ref[:2] != cell.ref[2:]:
+            own = f"{to_a1(*cell.ref[:2])}:{to_a1(*cell.ref[2:])}"
+        try:
+            return in_context(parts, cell.kind != "plain", lambda name: self._named(name, sheet), own)
+        except Unreadable as error:
+            node.reason = node.reason or str(error)
+            return parts
+
+    def _named(self, text: str, sheet: str) -> Operand:
+        """What a name stands for, as far as that can be seen at once."""
+        name = self.names.find(text, sheet)
+        if name is None:
+            return Operand.UNKNOWN
+        try:
+            parts = [part for part in self.names.parts(name) if part.kind is not Kind.SPACE]
+        except Unreadable:
+            return Operand.UNKNOWN
+        if len(parts) == 1 and parts[0].kind is Kind.REFERENCE:
+            return operand(parts[0].text)
+        simple = (Kind.LITERAL, Kind.OPERATOR, Kind.PAREN_OPEN, Kind.PAREN_CLOSE)
+        one = all(part.kind in simple or operand(part.text) is Operand.CELL for part in parts)
+        return Operand.CELL if one else Operand.UNKNOWN
 
     def _table_names(self, parts: list[Part], sheet: str) -> list[Part]:
         """A table's bare name as the range of its data, unless a defined name has that name."""

@@ -9,6 +9,7 @@ from formualizer import ExcelEvaluationError, Workbook, WorkbookConfig
 
 from ...cells import CellError, Scalar
 from .areas import register_areas
+from .each import register_each
 from .host import Host, scalar
 from .model import Model, Node
 
@@ -55,6 +56,7 @@ class Run:
             self._workbook.set_temporal_egress("serial")
             host.register(self._workbook)
             register_areas(self._workbook, host, model.areas)
+            register_each(self._workbook)
             for area in model.areas:
                 area.grid = None
             self._workbook.evaluate_all()
