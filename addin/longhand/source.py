@@ -9,6 +9,7 @@ from functools import cached_property
 from typing import Any, NamedTuple
 
 from ..cells import CellError, Scalar
+from ..hosts.headless.contexts import Operand, meant_as_one_cell
 from ..hosts.headless.formulas import (
     CLOSES,
     OPENS,
@@ -165,12 +166,33 @@ class Source:
             parts = self.names.written_out(take_apart(text), sheet, cell.row, cell.col)
             if not any(p.kind is Kind.OPEN and call_name(p.text) for p in parts):
                 return
-            parts = self._older(parts, sheet, cell)
+            parts = self._older(self._met(parts, sheet, cell), sheet, cell)
             if "LAMBDA" in functions(parts):
                 raise NotWorked("the formula declares a function of its own (LAMBDA)")
             self.cells.append(TbCell(sheet, cell, tree(self._fixed(parts, sheet, cell))))
         except (Unreadable, NotWorked) as error:
             self.cells.append(TbCell(sheet, cell, [], str(error)))
+
+    def _met(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
+        """The parts of a plain formula with the one cell that is meant in place of a range."""
+        if cell.kind != "plain":
+            return parts
+
+        def named(text: str) -> Operand:
+            area = self.area(text, sheet)
+            return (
+                Operand.UNKNOWN if area is None else Operand.CELL if area.shape == (1, 1) else Operand.RANGE
+            )
+
+        out = list(parts)
+        places = {id(part): at for at, part in enumerate(parts)}
+        for part in meant_as_one_cell(parts, named):
+            area = self.area(part.text, sheet)
+            if area is not None:
+                text = area.meeting(cell.row, cell.col)
+                kind = Kind.LITERAL if text.startswith("#") else Kind.REFERENCE
+                out[places[id(part)]] = Part(text, kind)
+        return out
 
     def _older(self, parts: list[Part], sheet: str, cell: FormulaCell) -> list[Part]:
         """The parts of a formula as every spreadsheet knows them: C4# and @A1:A9 as the cells they mean.

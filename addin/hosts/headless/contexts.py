@@ -104,6 +104,23 @@ def in_context(
     return _Formula(named, own).expression(arguments[0], Stands.ARRAY if array else Stands.WHOLE)[0]
 
 
+def meant_as_one_cell(parts: Sequence[Part], named: Callable[[str], Operand]) -> list[Part]:
+    """The ranges of a plain formula that mean the cell in the formula's own row or column.
+
+    The parts themselves come back, to be told by their identity.
+    """
+    if not _worth_a_look(parts):
+        return []
+    formula = _Formula(named, "")
+    try:
+        (arguments, _), end = _read(parts, 0)
+        if end == len(parts) and len(arguments) == 1:
+            formula.expression(arguments[0], Stands.WHOLE)
+    except Unreadable:
+        return []
+    return formula.met
+
+
 def _worth_a_look(parts: Sequence[Part]) -> bool:
     """Whether anything in a formula may give several values."""
     for part in parts:
@@ -169,6 +186,8 @@ def _is_reference(items: Sequence[_Item]) -> bool:
 class _Formula:
     def __init__(self, named: Callable[[str], Operand], own: str) -> None:
         self._named, self._own = named, own
+        self.met: list[Part] = []
+        """Ranges of which one cell is meant."""
 
     def expression(self, items: Sequence[_Item], stands: Stands) -> _Shown:
         """Operands with operators between them."""
@@ -216,6 +235,7 @@ class _Formula:
             return [part], False
         kind = self._kind(part.text)
         if kind in (Operand.RANGE, Operand.LINES) and stands in (Stands.OPERAND, Stands.SINGLE):
+            self.met.append(part)
             return [_AT, part], False
         return [part], kind is not Operand.CELL
 

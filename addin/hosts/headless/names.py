@@ -106,8 +106,8 @@ class Names:
         """The parts of a formula with every name that is a formula itself replaced by its text.
 
         The evaluator drops names that call a TB_ function, and does not compute those of arrays
-        nor those that mean another cell at each place. The LETs of a formula that calls one are written out, too.
-        Raises :class:`Unreadable` for names in a circle.
+        nor those that mean another cell at each place. The LETs of a formula that calls one are
+        written out, too. Raises :class:`Unreadable` for names in a circle.
         """
         parts = self._kept_outside(without_lets(parts))
         if not self._names:

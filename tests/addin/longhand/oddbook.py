@@ -99,6 +99,10 @@ FORMULAS = (
     Odd('TB_AREA("SI",INDIRECT("A2"))'),
     Odd('TB_AREA("SI",INDIRECT("S!A2"))*INDIRECT("A3")'),
     Odd('TB_AREA("SI",A1)*ROW()+COLUMN()'),
+    # Ranges of which a plain formula means the cell in its own row
+    Odd('SUM($M$1:$M$999*2)+TB_AREA("SI",A1)'),
+    Odd('ABS($M$1:$M$999)*TB_AREA("SI",A1)'),
+    Odd('$M$1:$M$999*TB_AREA("SI",A1)'),
     # Cells of another workbook, of which this one keeps the values
     Odd('TB_AREA("SI",[1]Data!$A$1)'),
     Odd('TB_AREA("SI",[1]Data!$A$1:$A$3)', (3, 1)),
