@@ -9,25 +9,35 @@ from typing import Final
 import numpy as np
 
 from ..hosts.headless.formulas import CLOSES, OPENS, Kind, Part, function_name
+from ..hosts.headless.singlevalues import ALL_SINGLE, BY_ITSELF, REDUCES, REDUCES_ARRAYS
 from .calls import Call, Items, NotWorked, Shape
 
 SINGLE: Final = (1, 1)
 
 # Functions of single values: given a range they work element by element.
+_ELEMENTWISE: Final = ALL_SINGLE | BY_ITSELF | {"PI"}
+# Functions that make one value of whatever they are given.
+_REDUCING: Final = REDUCES | REDUCES_ARRAYS
+# Of both, those that surely give numbers; of the others the evaluator tells.
 _NUMERIC: Final = frozenset(
-    ("ABS", "ACOS", "ASIN", "ATAN", "ATAN2", "CEILING", "COS", "COSH", "DEGREES", "EVEN", "EXP", "FACT")
-    + ("FLOOR", "INT", "LN", "LOG", "LOG10", "MOD", "ODD", "PI", "POWER", "RADIANS", "ROUND", "ROUNDDOWN")
-    + ("ROUNDUP", "SIGN", "SIN", "SINH", "SQRT", "TAN", "TANH", "TRUNC")
-)
-_OTHER_ELEMENTWISE: Final = frozenset(
-    ("CHAR", "CODE", "CONCATENATE", "EXACT", "FIND", "IF", "IFERROR", "IFNA", "ISBLANK", "ISERR", "ISERROR")
-    + ("ISLOGICAL", "ISNA", "ISNUMBER", "ISTEXT", "LEFT", "LEN", "LOWER", "MID", "NOT", "PROPER", "REPT")
-    + ("RIGHT", "SEARCH", "SUBSTITUTE", "TEXT", "TRIM", "UPPER", "VALUE")
-)
-# Functions that make one number of whatever they are given.
-_REDUCING: Final = frozenset(
-    ("AVERAGE", "COLUMNS", "COUNT", "COUNTA", "COUNTBLANK", "MAX", "MEDIAN", "MIN", "PRODUCT", "ROWS")
-    + ("STDEV", "STDEV.P", "STDEV.S", "SUM", "SUMPRODUCT", "SUMSQ", "VAR", "VAR.P", "VAR.S")
+    (
+        "ABS",
+        "ACOS",
+        "ASIN",
+        "ATAN",
+        "ATAN2",
+        "AVERAGE",
+        "CEILING",
+        "COLUMNS",
+        "COS",
+        "COSH",
+        "COUNT",
+        "COUNTA",
+    )
+    + ("COUNTBLANK", "DEGREES", "EVEN", "EXP", "FACT", "FLOOR", "INT", "LN", "LOG", "LOG10", "MAX", "MEDIAN")
+    + ("MIN", "MOD", "ODD", "PI", "POWER", "PRODUCT", "RADIANS", "ROUND", "ROUNDDOWN", "ROUNDUP", "ROWS")
+    + ("SIGN", "SIN", "SINH", "SQRT", "STDEV", "STDEV.P", "STDEV.S", "SUM", "SUMPRODUCT", "SUMSQ", "TAN")
+    + ("TANH", "TRUNC", "VAR", "VAR.P", "VAR.S")
 )
 _OF_NUMBERS: Final = frozenset("+-*/^%")
 _OF_CELLS: Final = frozenset((":", " ", ","))
@@ -97,8 +107,8 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
             continue
         if item.kind is Kind.OPEN:
             name = function_name(item.text)
-            number = number and (name in _NUMERIC or name in _REDUCING)
-            if name not in _NUMERIC and name not in _OTHER_ELEMENTWISE:
+            number = number and name in _NUMERIC
+            if name not in _ELEMENTWISE:
                 whole = 1
                 elementwise = elementwise and name in _REDUCING
         elif item.kind is Kind.ARRAY_OPEN:

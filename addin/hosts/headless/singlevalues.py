@@ -13,7 +13,7 @@ def _words(text: str) -> frozenset[str]:
 
 
 # Every argument is a single value.
-_ALL: Final = _words(
+ALL_SINGLE: Final = _words(
     """
     ABS ACCRINT ACCRINTM ACOS ACOSH ACOT ACOTH ADDRESS ARABIC ASC ASIN ASINH ATAN ATANH BASE BESSELI BESSELJ
     BESSELK BESSELY BETA.DIST BETA.INV BETADIST BETAINV BIN2DEC BIN2HEX BIN2OCT BINOM.DIST BINOM.DIST.RANGE
@@ -108,7 +108,7 @@ _NOWHERE: Final[frozenset[int]] = frozenset()
 
 def single_values(name: str, count: int) -> frozenset[int]:
     """The positions, counted from 0, at which a call with so many arguments takes a single value."""
-    if name in _ALL or name in BY_ITSELF - CHOOSES:
+    if name in ALL_SINGLE or name in BY_ITSELF - CHOOSES:
         return frozenset(range(count))
     if name in _PAIRS:
         return frozenset(range(_PAIRS[name] + 1, count, 2))
