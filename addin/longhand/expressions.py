@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 
 from ..hosts.headless.formulas import CLOSES, OPENS, Kind, Part, function_name
-from ..hosts.headless.singlevalues import ALL_SINGLE, BY_ITSELF, REDUCES, REDUCES_ARRAYS
+from ..hosts.headless.singlevalues import ALL_SINGLE, BY_ITSELF, REDUCES, REDUCES_ARRAYS, words
 from .calls import Call, Items, NotWorked, Shape
 
 SINGLE: Final = (1, 1)
@@ -19,25 +19,12 @@ _ELEMENTWISE: Final = ALL_SINGLE | BY_ITSELF | {"PI"}
 # Functions that make one value of whatever they are given.
 _REDUCING: Final = REDUCES | REDUCES_ARRAYS
 # Of both, those that surely give numbers; of the others the evaluator tells.
-_NUMERIC: Final = frozenset(
-    (
-        "ABS",
-        "ACOS",
-        "ASIN",
-        "ATAN",
-        "ATAN2",
-        "AVERAGE",
-        "CEILING",
-        "COLUMNS",
-        "COS",
-        "COSH",
-        "COUNT",
-        "COUNTA",
-    )
-    + ("COUNTBLANK", "DEGREES", "EVEN", "EXP", "FACT", "FLOOR", "INT", "LN", "LOG", "LOG10", "MAX", "MEDIAN")
-    + ("MIN", "MOD", "ODD", "PI", "POWER", "PRODUCT", "RADIANS", "ROUND", "ROUNDDOWN", "ROUNDUP", "ROWS")
-    + ("SIGN", "SIN", "SINH", "SQRT", "STDEV", "STDEV.P", "STDEV.S", "SUM", "SUMPRODUCT", "SUMSQ", "TAN")
-    + ("TANH", "TRUNC", "VAR", "VAR.P", "VAR.S")
+_NUMERIC: Final = words(
+    """
+    ABS ACOS ASIN ATAN ATAN2 AVERAGE CEILING COLUMNS COS COSH COUNT COUNTA COUNTBLANK DEGREES EVEN EXP FACT FLOOR
+    INT LN LOG LOG10 MAX MEDIAN MIN MOD ODD PI POWER PRODUCT RADIANS ROUND ROUNDDOWN ROUNDUP ROWS SIGN SIN SINH
+    SQRT STDEV STDEV.P STDEV.S SUM SUMPRODUCT SUMSQ TAN TANH TRUNC VAR VAR.P VAR.S
+    """
 )
 _OF_NUMBERS: Final = frozenset("+-*/^%")
 _OF_CELLS: Final = frozenset((":", " ", ","))

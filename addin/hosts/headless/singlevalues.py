@@ -8,12 +8,13 @@ from __future__ import annotations
 from typing import Final
 
 
-def _words(text: str) -> frozenset[str]:
+def words(text: str) -> frozenset[str]:
+    """The words of a text, as a set of names."""
     return frozenset(text.split())
 
 
 # Every argument is a single value.
-ALL_SINGLE: Final = _words(
+ALL_SINGLE: Final = words(
     """
     ABS ACCRINT ACCRINTM ACOS ACOSH ACOT ACOTH ADDRESS ARABIC ASC ASIN ASINH ATAN ATANH BASE BESSELI BESSELJ
     BESSELK BESSELY BETA.DIST BETA.INV BETADIST BETAINV BIN2DEC BIN2HEX BIN2OCT BINOM.DIST BINOM.DIST.RANGE
@@ -61,23 +62,23 @@ _SOME: Final[dict[str, frozenset[int]]] = {
 _PAIRS: Final = {"COUNTIFS": 0, "SUMIFS": 1, "AVERAGEIFS": 1, "MAXIFS": 1, "MINIFS": 1}
 
 # A single value is meant, and the evaluator itself goes through a range.
-BY_ITSELF: Final = _words("ATAN2 COS IF IFERROR IFNA SIN TAN")
+BY_ITSELF: Final = words("ATAN2 COS IF IFERROR IFNA SIN TAN")
 # They hand on one of their arguments, range or not.
-CHOOSES: Final = _words("CHOOSE IF IFERROR IFNA IFS SWITCH")
+CHOOSES: Final = words("CHOOSE IF IFERROR IFNA IFS SWITCH")
 # Of these, the ones that in an array formula go through the ranges among their results as well.
-ALL_ALONG: Final = _words("IFS SWITCH")
+ALL_ALONG: Final = words("IFS SWITCH")
 # They refer to cells, one or several.
-REFERS: Final = _words("INDEX INDIRECT OFFSET")
+REFERS: Final = words("INDEX INDIRECT OFFSET")
 # Several values at a time mean something that cannot be had one by one.
-NEVER_EACH: Final = _words("AGGREGATE INDIRECT OFFSET SUBTOTAL TEXTJOIN")
+NEVER_EACH: Final = words("AGGREGATE INDIRECT OFFSET SUBTOTAL TEXTJOIN")
 # They may hand on an empty cell.
-HANDS_ON: Final = CHOOSES | _words("HLOOKUP INDEX LOOKUP VLOOKUP XLOOKUP")
+HANDS_ON: Final = CHOOSES | words("HLOOKUP INDEX LOOKUP VLOOKUP XLOOKUP")
 # Spreadsheets disagree about a range as that argument in a plain formula; for the last two
 # not about an expression with ranges.
 DISPUTED: Final = {"LARGE": 1, "SMALL": 1, "IFERROR": 0, "IFNA": 0}
 
 # One value is made of ranges.
-REDUCES: Final = _words(
+REDUCES: Final = words(
     """
     AGGREGATE AND AVEDEV AVERAGE AVERAGEA COLUMNS CONCAT COUNT COUNTA COUNTBLANK DEVSQ GCD GEOMEAN HARMEAN
     IMPRODUCT IMSUM IRR KURT LCM MAX MAXA MEDIAN MIN MINA MULTINOMIAL OR PRODUCT ROWS SKEW SKEW.P STDEV
@@ -85,7 +86,7 @@ REDUCES: Final = _words(
     """
 )
 # The same, and every argument is worked as an array in a plain formula, too.
-REDUCES_ARRAYS: Final = _words(
+REDUCES_ARRAYS: Final = words(
     """
     CHISQ.TEST CHITEST CORREL COVAR COVARIANCE.P COVARIANCE.S F.TEST FTEST INTERCEPT MDETERM MODE MODE.SNGL
     PEARSON RSQ SLOPE STEYX SUMPRODUCT SUMX2MY2 SUMX2PY2 SUMXMY2 T.TEST TTEST
