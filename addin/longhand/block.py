@@ -8,7 +8,7 @@ from typing import Final
 
 from ..catalogue.registry import wording
 from ..catalogue.types import Longhand, Row
-from .arguments import Argument, Written, taken
+from .arguments import Argument, Written, linked, taken
 from .convert import ANGLE_SCALE, P_ATM, Conversion, agreement, from_si, in_use, not_given, to_si
 from .grid import Formula, Link, Sheet, local
 from .source import TbCell
@@ -44,6 +44,8 @@ class Check:
     value: Callable[[], str]
     """The long-hand value as a formula, once everything has its place."""
     scale: Callable[[], str] = lambda: ""
+    figures: bool = False
+    """Whether the cell holds a text with figures in it."""
     at: int = 0
     """The row of its line."""
 
@@ -214,9 +216,9 @@ class Block:
         sheet.put(at, 2, check.place.rpartition("!")[0], "text")
         sheet.put(at, 3, "=" + check.cell.cell.text, "mono")
         sheet.put(at, 4, Formula(check.value()), "number")
-        sheet.put(at, 6, Formula(check.ref), "linked")
+        sheet.put(at, 6, linked(check.ref), "linked")
         sheet.put(at, 7, Formula(f"{local(at, 4)}-{local(at, 6)}"), "difference")
-        verdict = agreement(local(at, 4), local(at, 6), tolerance, check.scale())
+        verdict = agreement(local(at, 4), local(at, 6), tolerance, check.scale(), check.figures)
         sheet.put(at, 10, Formula(verdict), "verdict")
         sheet.fit_height(at)
 

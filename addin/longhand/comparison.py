@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 from functools import partial
 
+from ..cells import Scalar
+from ..tables import is_blank
 from ..xlsx.a1 import to_a1
 from .arguments import surveyed
 from .block import Block, Check
@@ -38,22 +40,38 @@ class Comparison:
         outcome = only.outcome
         assert outcome is not None
         entry.formula_of = partial(_repeated, outcome)
-        if isinstance(outcome, WordsOutcome):
-            if outcome.formula is None:
-                entry.words = True
-                return
-            for i, j in _filled(cell, outcome.shape):
-                self._check(self.loose, cell, entry, i, j, partial(outcome.formula, i, j), "")
-            return
-        for i, j in _filled(cell, outcome.shape):
+        entry.words = isinstance(outcome, WordsOutcome) and outcome.formula is None
+        for i, j in _filled(cell):
+            self._result(outcome, cell, entry, i, j)
+
+    def _result(self, outcome: Outcome, cell: TbCell, entry: Entry, i: int, j: int) -> None:
+        """One cell of a formula that is one call: beside its working, or with the loose formulas."""
+        assert entry.formula_of is not None
+        value = partial(_or_not_available, entry.formula_of, i, j)
+        block = outcome.block if isinstance(outcome, BlockOutcome) else self.loose
+        result = ""
+        if _shows(outcome.shape, i, j):
+            row, col = within(outcome.shape, i, j)
             if isinstance(outcome, BlockOutcome):
-                value = partial(outcome.at, i, j)
-                self._check(outcome.block, cell, entry, i, j, value, outcome.results[j])
+                result = outcome.results[col]
             elif isinstance(outcome, RowsOutcome):
-                self._own_line(outcome, cell, entry, i, j)
-            elif isinstance(outcome, TableOutcome | ScheduleOutcome):
-                outcome.own(i, j, f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}")
+                if self._own_line(outcome, cell, entry, row, col, _ref(cell, i, j)):
+                    return
+            elif isinstance(outcome, TableOutcome | ScheduleOutcome) and outcome.own(
+                row, col, _ref(cell, i, j)
+            ):
                 entry.table = outcome
+                entry.shown.add(outcome.results[col])
+                return
+            if isinstance(outcome, WordsOutcome | TableOutcome | ScheduleOutcome):
+                stored = self._stored(cell, i, j)
+                shown = "" if is_blank(stored) else stored
+                if outcome.text(row, col, shown) == shown:
+                    return
+        self._check(block, cell, entry, i, j, value, result)
+
+    def _stored(self, cell: TbCell, i: int, j: int) -> Scalar:
+        return self._source.values(cell.sheet).get((cell.cell.row + i, cell.cell.col + j))
 
     def _formula(self, cell: TbCell, entry: Entry) -> None:
         """A formula around one call or several."""
@@ -114,20 +132,34 @@ class Comparison:
         self, block: Block, cell: TbCell, entry: Entry, i: int, j: int, value: Callable[[], str], result: str
     ) -> None:
         a1 = to_a1(cell.cell.row + i, cell.cell.col + j)
-        check = Check(cell, f"{quoted_sheet(cell.sheet)}!{a1}", f"{cell.sheet}!{a1}", value)
+        check = Check(cell, _ref(cell, i, j), f"{cell.sheet}!{a1}", value)
+        stored = self._stored(cell, i, j)
+        check.figures = isinstance(stored, str) and any(map(str.isdigit, stored))
         if result:
             check.scale = lambda: block.scale_ref(result)
         block.checks.append(check)
         entry.checks.append((block, check))
 
-    def _own_line(self, outcome: RowsOutcome, cell: TbCell, entry: Entry, i: int, j: int) -> None:
+    def _own_line(self, outcome: RowsOutcome, cell: TbCell, entry: Entry, i: int, j: int, ref: str) -> bool:
+        """Set a cell beside its line; False where another cell stands there."""
         line, result = outcome.place(i, j)
-        ref = f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}"
         chosen = outcome.group.lines[line]
-        chosen.own.setdefault(result, ref)
-        if not chosen.target:
-            chosen.target = ref
+        chosen.target = chosen.target or ref
+        if chosen.own.setdefault(result, ref) != ref:
+            return False
         entry.rows = outcome
+        entry.shown.add(result)
+        return True
+
+
+def _ref(cell: TbCell, i: int, j: int) -> str:
+    """A cell that a formula fills, as other sheets refer to it."""
+    return f"{quoted_sheet(cell.sheet)}!{to_a1(cell.cell.row + i, cell.cell.col + j)}"
+
+
+def _shows(shape: Shape, i: int, j: int) -> bool:
+    """Whether a cell of an array formula shows an element of its result."""
+    return (shape[0] == 1 or i < shape[0]) and (shape[1] == 1 or j < shape[1])
 
 
 def _beyond(shape: Shape, i: int, j: int) -> Shape:
@@ -135,7 +167,7 @@ def _beyond(shape: Shape, i: int, j: int) -> Shape:
 
     One row or column of values fills all cells; beyond the result there is nothing.
     """
-    if (shape[0] > 1 and i >= shape[0]) or (shape[1] > 1 and j >= shape[1]):
+    if not _shows(shape, i, j):
         raise NotWorked("the array formula covers more cells than its result has")
     return within(shape, i, j)
 
@@ -151,10 +183,9 @@ def _or_not_available(formula_of: Callable[[int, int], str], i: int, j: int) -> 
         return "NA()"
 
 
-def _filled(cell: TbCell, shape: Shape) -> list[Shape]:
-    """The elements of the answer that the formula's cells show."""
+def _filled(cell: TbCell) -> list[Shape]:
+    """The cells that a formula fills, counted from its first."""
     if cell.cell.kind == "plain" or cell.cell.ref is None:
         return [(0, 0)]
     r1, c1, r2, c2 = cell.cell.ref
-    rows, cols = min(r2 - r1 + 1, shape[0]), min(c2 - c1 + 1, shape[1])
-    return [(i, j) for i in range(rows) for j in range(cols)]
+    return [(i, j) for i in range(r2 - r1 + 1) for j in range(c2 - c1 + 1)]

@@ -94,16 +94,26 @@ def not_given(row: Row, arg: Arg) -> Content | None:
     return default_of(row, arg)
 
 
-def agreement(value: str, own: str, tolerance: str, scale: str) -> str:
+def agreement(value: str, own: str, tolerance: str, scale: str, figures: bool = False) -> str:
     """The verdict on a cell: "agrees", "differs", or "error" where both sides are errors.
 
-    A text into which a number was written says "agrees" or, as its last figures may be
-    rounded another way, "text".
+    With ``figures`` the cell holds a text into which a number is written, whose last
+    figures may be rounded another way: "text" where nothing but figures differs.
     """
     allowed = f"{tolerance}*MAX(ABS({value}),ABS({own})"
     allowed += f",0.000001*{scale})" if scale else ")"
+    other = '"differs"'
+    if figures:
+        other = f'IF({_without_figures(value)}={_without_figures(own)},"text","differs")'
     return (
         f'IF(ISERROR({own}),IF(ISERROR({value}),"error","differs"),'
-        f'IF(ISERROR({value}),"differs",IF(ISTEXT({own}),IF({value}={own},"agrees","text"),'
-        f'IF(ABS({value}-{own})<={allowed},"agrees","differs"))))'
+        f'IF(ISERROR({value}),"differs",IF(ISTEXT({own})<>ISTEXT({value}),"differs",'
+        f'IF(ISTEXT({own}),IF({value}={own},"agrees",{other}),'
+        f'IF(ABS({value}-{own})<={allowed},"agrees","differs")))))'
     )
+
+
+def _without_figures(text: str) -> str:
+    for figure in "0123456789.":
+        text = f'SUBSTITUTE({text},"{figure}","")'
+    return text

@@ -117,6 +117,10 @@ class WordsOutcome:
             return self.formula(i, j)
         return literal(self.grid[i][j])  # type: ignore[arg-type]
 
+    def text(self, i: int, j: int, stored: object) -> object:
+        """The text that the cell of an element shows; None where it is worked."""
+        return self.grid[i][j] if self.formula is None else None
+
     @property
     def one_range(self) -> bool:
         return False

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Final
 
@@ -136,9 +136,16 @@ class Placed:
     def single_ref(self, symbol: str) -> str:
         return self.sheet.ref(self._single_at[symbol], 2)
 
-    def verdict_area(self) -> str:
-        """The cell of the verdict on the whole table."""
-        return self.sheet.ref(self.top, 2)
+    def verdict_areas(self, results: Iterable[str]) -> list[str]:
+        """The verdicts on some results, as a formula refers to them."""
+        areas = []
+        for name in sorted(results):
+            if name in self._result_at:
+                areas.append(self.sheet.ref(self._result_at[name], 7))
+            else:
+                col = self._result[name] + (2 if self.results[name][0].role == "text" else 3)
+                areas.append(f"{self.sheet.ref(self._first, col)}:{fixed(self._last, col)}")
+        return areas
 
     @property
     def _last(self) -> int:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import Final
 
@@ -150,10 +150,11 @@ class RowSheet:
         self.at = last + 2
         return len(self.places) - 1
 
-    def verdict_area(self, number: int) -> str:
-        """The verdicts of a group, as a formula refers to them."""
+    def verdict_areas(self, number: int, results: Iterable[str]) -> list[str]:
+        """The verdicts on some results of a group, as a formula refers to them."""
         first, last = self.verdicts[number]
-        return f"{self.sheet.ref(first, self._verdict)}:{fixed(last, self._verdict)}"
+        columns = sorted(self._result[name] + 3 for name in results)
+        return [f"{self.sheet.ref(first, col)}:{fixed(last, col)}" for col in columns]
 
     def write(self) -> None:
         """Put all groups on the sheet."""
@@ -218,7 +219,7 @@ class RowSheet:
             sheet.put(at, col, Formula(value), "result")
             own = line.own.get(name)
             if own is not None:
-                sheet.put(at, col + 1, Formula(own), "linked")
+                sheet.put(at, col + 1, Formula(f'IF({own}="","",{own})'), "linked")
                 sheet.put(at, col + 2, Formula(f"{local(at, col)}-{local(at, col + 1)}"), "difference")
                 scale = self._scale(name, cells)
                 if scale:

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from dataclasses import dataclass, field
 from typing import Final
 
 from ..blocks.schedule import COLUMN_OF, Schedule
 from ..catalogue.types import Longhand, Row
+from ..cells import Scalar
 from ..tables import is_blank
 from .arguments import Argument
 from .calls import NotWorked, Shape
@@ -53,8 +54,11 @@ class ScheduleOutcome:
 
     def result_of(self, i: int, result: str) -> str:
         """The name that a result has in the function of the row's fitting; "" where it has none."""
-        row = self.rows_of[self.kinds[i]]
-        return next((r.name for r in row.results if COLUMN_OF.get(r.name, r.name) == result), "")
+        return next(iter(self.results_of(self.kinds[i], (result,))), "")
+
+    def results_of(self, kind: str, results: Collection[str]) -> list[str]:
+        """The names that results have in the function of a fitting, of those that it has."""
+        return [r.name for r in self.rows_of[kind].results if COLUMN_OF.get(r.name, r.name) in results]
 
     def at(self, i: int, j: int) -> str:
         text = self._element(i, self.results[j])
@@ -95,15 +99,23 @@ class ScheduleOutcome:
         value = self.table.value(i, column)
         return quoted("" if value is None else str(value))
 
-    def own(self, i: int, j: int, ref: str) -> None:
-        """Set the cell that shows an element beside its working."""
-        if i not in self.kinds:
-            return
-        result = self.result_of(i, self.results[j])
-        if result:
-            line = self.carriers[self.kinds[i]].group.lines[self.lines[i]]
-            line.own.setdefault(result, ref)
-            line.target = line.target or ref
+    def own(self, i: int, j: int, ref: str) -> bool:
+        """Set the cell that shows an element beside its working; False where it has none or it is taken."""
+        result = self.result_of(i, self.results[j]) if i in self.kinds else ""
+        if not result:
+            return False
+        line = self.carriers[self.kinds[i]].group.lines[self.lines[i]]
+        line.target = line.target or ref
+        return line.own.setdefault(result, ref) == ref
+
+    def text(self, i: int, j: int, stored: Scalar) -> Scalar:
+        """The text that the cell of an element shows; None where it is no text known beforehand."""
+        result = self.results[j]
+        if i not in self.table.rows:
+            return ""
+        if result in ("name", "fitting"):
+            return str(self.table.value(i, result) or "")
+        return stored if result == "note" else None
 
 
 @dataclass(slots=True, eq=False)

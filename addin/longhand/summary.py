@@ -37,9 +37,12 @@ class Entry:
     refused: bool = False
     """Whether that is what the function itself has against its arguments."""
     words: bool = False
+    """Whether it is one call that gives texts, which stand as constants."""
     checks: list[tuple[Block, Check]] = field(default_factory=list)
     rows: RowsOutcome | None = None
     table: TableOutcome | ScheduleOutcome | None = None
+    shown: set[str] = field(default_factory=set)
+    """Results whose cells stand beside their rows or their table."""
     formula: Callable[[], str] = lambda: ""
     formula_of: Callable[[int, int], str] | None = None
     """The long-hand formula of each cell that the formula fills, counted from its first."""
@@ -52,7 +55,7 @@ class Entry:
         if self.trouble:
             failed = self.refused and isinstance(self.cell.cell.value, CellError)
             return "error" if failed else "not worked"
-        return "text" if self.words else ""
+        return "" if self.checks or self.rows is not None or self.table is not None else "text"
 
 
 class Summary:
@@ -102,8 +105,8 @@ class Summary:
             sheet.put(at, 7, entry.word, "verdict")
             sheet.put(at, 8, entry.trouble, "wrapped")
             sheet.fit_height(at)
-        elif entry.words:
-            sheet.put(at, 7, "text", "verdict")
+        elif entry.word:
+            sheet.put(at, 7, entry.word, "verdict")
         elif entry.rows is not None:
             self._rows(entry, entry.rows)
         elif isinstance(entry.table, ScheduleOutcome):
@@ -111,7 +114,7 @@ class Summary:
         elif entry.table is not None:
             section = entry.table.section
             sheet.put(at, 4, f"{len(section.lines)} rows", "note")
-            sheet.put(at, 7, Formula(section.verdict_area()), "verdict")
+            self._verdict(entry, *section.verdict_areas(entry.shown))
             self._link(at, section.sheet, local(section.top, 1))
         elif entry.checks:
             self._checks(entry)
@@ -125,28 +128,34 @@ class Summary:
                 sheet.put(at, col, Formula(block.sheet.ref(check.at, source)), style)
             sheet.put(at, 7, Formula(block.sheet.ref(check.at, 10)), "verdict")
         else:
-            last = entry.checks[-1][1].at
-            area = f"{block.sheet.ref(check.at, 10)}:{fixed(last, 10)}"
             sheet.put(at, 4, f"{len(entry.checks)} cells", "note")
-            sheet.put(at, 7, Formula(joint(area)), "verdict")
+            self._verdict(entry)
         self._link(at, block.sheet, local(block.top, 1))
 
     def _rows(self, entry: Entry, outcome: RowsOutcome) -> None:
         sheet, at = self.sheet, entry.row
         assert outcome.rows is not None
         sheet.put(at, 4, f"{len(outcome.group.lines)} rows", "note")
-        sheet.put(at, 7, Formula(joint(outcome.rows.verdict_area(outcome.number))), "verdict")
+        self._verdict(entry, *outcome.rows.verdict_areas(outcome.number, entry.shown))
         self._link(at, outcome.rows.sheet, local(outcome.rows.verdicts[outcome.number][0] - 3, 1))
 
     def _schedule(self, entry: Entry, outcome: ScheduleOutcome) -> None:
         sheet, at = self.sheet, entry.row
         sheet.put(at, 4, f"{len(outcome.table.rows)} rows", "note")
-        areas = []
-        for carrier in outcome.carriers.values():
+        areas: list[str] = []
+        for kind, carrier in outcome.carriers.items():
             assert carrier.rows is not None
-            areas.append(carrier.rows.verdict_area(carrier.number))
+            areas += carrier.rows.verdict_areas(carrier.number, outcome.results_of(kind, entry.shown))
             self._link(at, carrier.rows.sheet, local(carrier.rows.verdicts[carrier.number][0] - 3, 1))
-        sheet.put(at, 7, Formula(joint(*areas)), "verdict")
+        self._verdict(entry, *areas)
+
+    def _verdict(self, entry: Entry, *areas: str) -> None:
+        """The verdict on a formula from those in some areas and those of its own checks."""
+        if entry.checks:
+            (block, first), (_, last) = entry.checks[0], entry.checks[-1]
+            assert block.sheet is not None
+            areas = *areas, f"{block.sheet.ref(first.at, 10)}:{fixed(last.at, 10)}"
+        self.sheet.put(entry.row, 7, Formula(joint(*areas)), "verdict")
 
     def _link(self, at: int, sheet: Sheet, a1: str) -> None:
         self.sheet.put(at, 8, f"{sheet.name}!{a1}", "link")
@@ -166,8 +175,9 @@ class Summary:
 
 def joint(*areas: str) -> str:
     """One verdict for areas of them."""
-    if not areas:
-        return '"error"'
-    differ = "+".join(f'COUNTIF({area},"differs")' for area in areas)
-    agree = "+".join(f'COUNTIF({area},"agrees")' for area in areas)
-    return f'IF({differ}>0,"differs",IF({agree}>0,"agrees","error"))'
+
+    def count(word: str) -> str:
+        return "+".join(f'COUNTIF({area},"{word}")' for area in areas)
+
+    text = f'IF({count("text")}>0,"text","error")'
+    return f'IF({count("differs")}>0,"differs",IF({count("agrees")}>0,"agrees",{text}))'

@@ -11,6 +11,7 @@ from ..blocks.runread import CASE_COLUMNS, NODE_COLUMNS, START_COLUMNS
 from ..catalogue.types import Arg, Column, Row, RowStep, Step, TableLonghand
 from ..catalogue.workings.runs import ENVELOPE, run_working
 from ..catalogue.workings.sections import junctions
+from ..cells import Scalar
 from ..hosts.headless.formulas import literal
 from ..tables import is_blank
 from .arguments import Argument, in_group, taken
@@ -71,17 +72,22 @@ class TableOutcome:
     def range_text(self) -> str:
         return self.section.result_range(self.results[0])
 
-    def own(self, i: int, j: int, ref: str) -> None:
-        """Set the cell that shows an element beside it."""
+    def own(self, i: int, j: int, ref: str) -> bool:
+        """Set the cell that shows an element beside it; False where it has no place or is taken."""
         result = self.results[j]
-        if result in self.constants:
-            return
         if self.one_row:
-            self.section.own.setdefault(result, ref)
-        elif i in self.rows:
-            line = self.section.lines[self.rows.index(i)]
-            line.own.setdefault(result, ref)
-            line.target = line.target or ref
+            return self.section.own.setdefault(result, ref) == ref
+        if result in self.constants or i not in self.rows:
+            return False
+        line = self.section.lines[self.rows.index(i)]
+        line.target = line.target or ref
+        return line.own.setdefault(result, ref) == ref
+
+    def text(self, i: int, j: int, stored: Scalar) -> Scalar:
+        """The text that the cell of an element shows; None where it is no text known beforehand."""
+        if self.results[j] in self.constants:
+            return stored
+        return None if self.one_row or i in self.rows else ""
 
 
 def plan_branchflow(
