@@ -20,7 +20,7 @@ from ..xlsx.package import Package
 from ..xlsx.sheetxml import stored_values
 from .calls import Call, read_calls
 from .labels import Surroundings
-from .relative import moving, relative_form
+from .relative import moving, of_own_row, relative_form
 
 Place = tuple[int, int, int]
 """Sheet (from 0), row and column (from 1)."""
@@ -148,14 +148,17 @@ class Book:
     def relative_references(self, node: Node) -> Iterator[tuple[Reference, bool, bool]]:
         """The single cells that a formula refers to; whether each moves when filled down, or across."""
         try:
-            parts = take_apart(node.cell.text)
+            text = self.model.tables.written_out(
+                node.cell.text, self.sheet(node.sheet), node.cell.row, node.cell.col
+            )
+            parts = take_apart(text)
         except Unreadable:
             return
         for part in parts:
             moves = moving(part.text) if part.kind is Kind.REFERENCE else None
             if moves is not None:
                 for ref in self.model.references([part], node):
-                    yield ref, *moves
+                    yield ref, *((True, False) if of_own_row(node, ref) else moves)
 
     @cached_property
     def _wide(self) -> list[Node]:

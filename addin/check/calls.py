@@ -24,7 +24,26 @@ if TYPE_CHECKING:
     from .book import Book
 
 
-_PASSING = frozenset(("ABS", "IFERROR", "IFNA", "ROUND", "ROUNDDOWN", "ROUNDUP"))
+_PASSING = frozenset(
+    (
+        "ABS",
+        "AVERAGE",
+        "CEILING",
+        "FLOOR",
+        "IFERROR",
+        "IFNA",
+        "INT",
+        "MAX",
+        "MIN",
+        "MROUND",
+        "ROUND",
+        "ROUNDDOWN",
+        "ROUNDUP",
+        "SUM",
+        "TRUNC",
+    )
+)
+"""Functions whose result has the unit of what they are given."""
 _BEHIND = (Kind.COMMA, Kind.CLOSE, Kind.PAREN_CLOSE, Kind.LITERAL)
 
 
@@ -42,7 +61,7 @@ class Call:
     """One call. ``values`` are its arguments as the dispatcher gets them.
 
     ``shown`` tells that the cell shows what the call gives: the formula is this call
-    and nothing else, but for rounding, a sign, or a guard against errors.
+    and nothing else, but for rounding, a sign, a sum or extreme, or a guard against errors.
     """
 
     node: Node

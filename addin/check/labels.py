@@ -14,6 +14,8 @@ if TYPE_CHECKING:
 _BRACKETS = re.compile(r"\[([^\[\]]*)\]\s*$")
 _ROUND = re.compile(r"\(([^()]*(?:\([^()]*\))?[^()]*)\)\s*$")
 _COMMA = re.compile(r",\s*([^,]+)$|\bin\s+(\S+)$")
+_SYMBOL = 3
+"""Letters of a text that may be a symbol, such as Q or D2."""
 _REACH = 3
 """Columns to the left in which a label is looked for."""
 
@@ -71,9 +73,17 @@ class Surroundings:
         return value.strip() if isinstance(value, str) else ""
 
     def label(self, place: Place) -> str:
-        """The label to the left of a cell, without its unit, in small letters."""
-        text = self.text(self.left(place))
-        text = _BRACKETS.sub("", text)
+        """The label to the left of a cell, without its unit, in small letters.
+
+        Of several texts side by side it is the nearest that is neither a unit nor a mere symbol.
+        """
+        texts: list[str] = []
+        at = self.left(place)
+        while at is not None and len(texts) < _REACH and self.text(at):
+            texts.append(_without_unit(self.text(at)))
+            at = (at[0], at[1], at[2] - 1)
+        named = [text for text in texts if not _known(text)] or texts
+        text = next((text for text in named if len(text) > _SYMBOL), next(iter(named), ""))
         return re.sub(r"\s+", " ", text).strip(" :=").casefold()
 
     def written_unit(self, place: Place, role: str) -> Written | None:
@@ -88,6 +98,12 @@ class Surroundings:
             if near is not None and found is not None:
                 return Written(near, *found)
         return None
+
+
+def _without_unit(text: str) -> str:
+    text = _BRACKETS.sub("", text).strip()
+    inside = _ROUND.search(text)
+    return text[: inside.start()].strip() if inside and _known(inside[1]) else text
 
 
 def _bare(text: str, role: str) -> Unit | None:

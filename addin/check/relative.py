@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 
+from ..hosts.headless.dependency import Reference
 from ..hosts.headless.formulas import Kind, Unreadable, call_name, take_apart
 from ..hosts.headless.model import Node
 from ..xlsx.formulashift import MovableFormula
@@ -33,3 +34,10 @@ def moving(text: str) -> tuple[bool, bool] | None:
     """Whether a reference to one cell moves when filled down, and across; None for another text."""
     match = _ONE_CELL.fullmatch(text)
     return (not match[2], not match[1]) if match else None
+
+
+def of_own_row(node: Node, area: Reference) -> bool:
+    """Whether an area is of the formula's own row, and read by a table reference such as ``Pipes[@Flow]``."""
+    text = node.cell.text.casefold()
+    own = (area.sheet, area.r1, area.r2) == (node.sheet, node.cell.row, node.cell.row)
+    return own and ("[@" in text or "#this row" in text)

@@ -11,6 +11,7 @@ from . import (
     rules_patterns,
     rules_physics,
     rules_structure,
+    rules_totals,
     rules_units,
     rules_values,
 )
@@ -19,6 +20,7 @@ from .types import Rules
 RULES: Final[Rules] = (
     *rules_values.RULES,
     *rules_patterns.RULES,
+    *rules_totals.RULES,
     *rules_units.RULES,
     *rules_longhand.RULES,
     *rules_inputs.RULES,

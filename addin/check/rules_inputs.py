@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from collections import Counter
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Callable, Iterator
 
 from ..cells import Cell, Refused, Scalar
 from ..figures import figure
@@ -14,7 +14,8 @@ from ..xlsx.a1 import to_a1
 from .book import Book, Place
 from .calls import Call, Given
 from .gather import figures
-from .relative import moving
+from .relative import moving, of_own_row
+from .sameinput import Input, LabelKey, Sameness
 from .types import Finding, Rule, Severity
 
 PROJECT_WIDE = {
@@ -34,84 +35,58 @@ PROJECT_WIDE = {
 """Arguments that one project has once, with the labels that say no more than the argument's name."""
 
 _CLOSE = 1e-9
-
-
-@dataclass(frozen=True, slots=True)
-class _Input:
-    """A number that was typed, and the call that reads it."""
-
-    name: str
-    role: str
-    label: str
-    value: float
-    """SI."""
-    shown: Scalar
-    place: Place
-    literal: bool
-    call: int
+_MANY = 200
+"""Cells of one label beyond which they are a table, however it is laid out."""
 
 
 def two_values(book: Book) -> Iterator[Finding]:
     """D01: the same input is typed twice, with different values.
 
     Density, viscosity, ambient and vapour pressure count as the same input in the whole
-    workbook unless labels tell several fluids apart. Any other two inputs are the same
-    when label and kind of quantity are, and nothing but this input sets the
-    calculations apart that read them: two calculations that each have their own flow and their own
-    diameter are two calculations, not one with a contradiction. What a formula that was
+    workbook unless labels tell several fluids apart. Any other two inputs of one label and
+    kind of quantity are the same as :class:`Sameness` says. What a formula that was
     filled down or across reads from its own row or column is a table, not one input.
     """
     inputs = list(_inputs(book))
-    reported: set[Place] = set()
-    groups: dict[tuple[str, str], list[_Input]] = {}
+    groups: dict[str, list[Input]] = {}
+    labelled: dict[LabelKey, list[Input]] = {}
     for item in inputs:
         if item.name in PROJECT_WIDE:
             generic = not item.label or item.label in PROJECT_WIDE[item.name]
-            groups.setdefault(("", item.name if generic else f"{item.name} {item.label}"), []).append(item)
-    for group in groups.values():
-        yield from _contradictions(book, group, reported)
-    labelled: dict[tuple[str, str], list[_Input]] = {}
-    for item in inputs:
-        if item.label and item.name not in PROJECT_WIDE:
+            groups.setdefault(item.name if generic else f"{item.name} {item.label}", []).append(item)
+        elif item.label:
             labelled.setdefault((item.role, item.label), []).append(item)
-    reads: dict[int, dict[tuple[str, str], set[Place]]] = {}
-    for key, group in labelled.items():
-        for item in group:
-            reads.setdefault(item.call, {}).setdefault(key, set()).add(item.place)
+    sameness = Sameness(book, labelled)
+    reported: set[Place] = set()
+    for group in groups.values():
+        yield from _contradictions(book, group, reported, lambda one, other: one.place != other.place)
     for group in labelled.values():
-        if len({item.place for item in group}) > 1 and not _separate(group, reads):
-            yield from _contradictions(book, group, reported)
+        if len({item.place for item in group}) <= _MANY:
+            yield from _contradictions(book, group, reported, sameness.same)
 
 
-def _separate(group: list[_Input], reads: dict[int, dict[tuple[str, str], set[Place]]]) -> bool:
-    """Whether the calls that read these inputs differ in another labelled input as well."""
-    by_place: dict[Place, dict[tuple[str, str], set[Place]]] = {}
+def _contradictions(
+    book: Book, group: list[Input], reported: set[Place], same: Callable[[Input, Input], bool]
+) -> Iterator[Finding]:
+    """The inputs that others of the group contradict: of two values the rarer is told, or the later."""
+    classes: list[float] = []
+    counts: Counter[float] = Counter()
+    of_place: dict[Place, tuple[Input, float]] = {}
     for item in group:
-        own = by_place.setdefault(item.place, {})
-        for key, places in reads[item.call].items():
-            own.setdefault(key, set()).update(places)
-    sides = list(by_place.values())
-    shared = set.intersection(*(set(side) for side in sides))
-    apart = [key for key in shared if all(sides[0][key].isdisjoint(side[key]) for side in sides[1:])]
-    return len(apart) > 1
-
-
-def _contradictions(book: Book, group: list[_Input], reported: set[Place]) -> Iterator[Finding]:
-    values: Counter[float] = Counter()
-    first: dict[float, _Input] = {}
-    for item in group:
-        near = next((v for v in first if abs(v - item.value) <= _CLOSE * max(abs(v), abs(item.value))), None)
-        key = item.value if near is None else near
-        first.setdefault(key, item)
-        values[key] += 1
-    if len(first) < 2:
-        return
-    usual = values.most_common(1)[0][0]
-    for item in group:
-        if abs(item.value - usual) <= _CLOSE * max(abs(item.value), abs(usual)) or item.place in reported:
+        near = next((v for v in classes if math.isclose(v, item.value, rel_tol=_CLOSE)), None)
+        if near is None:
+            near = item.value
+            classes.append(near)
+        counts[near] += 1
+        before = of_place.get(item.place)
+        if before is None or (item.of_fitting and not before[0].of_fitting):
+            of_place[item.place] = item, near
+    ranked = sorted(of_place.values(), key=lambda entry: -counts[entry[1]])
+    for i, (item, value) in enumerate(ranked):
+        other = next((o for o, v in ranked[:i] if v != value and same(item, o)), None)
+        if other is None or item.place in reported:
             continue
         reported.add(item.place)
-        other = first[usual]
         called = f'"{item.label}"' if item.label else item.name
         sheet, row, col = item.place
         yield Finding(
@@ -126,7 +101,7 @@ def _contradictions(book: Book, group: list[_Input], reported: set[Place]) -> It
         )
 
 
-def _inputs(book: Book) -> Iterator[_Input]:
+def _inputs(book: Book) -> Iterator[Input]:
     for n, call in enumerate(book.calls):
         units = call.units
         if units is None:
@@ -140,7 +115,7 @@ def _inputs(book: Book) -> Iterator[_Input]:
 
 def _single(
     book: Book, call: Call, name: str, role: str, given: Given, value: Cell, units: UnitSet, n: int
-) -> Iterator[_Input]:
+) -> Iterator[Input]:
     if isinstance(value, list) or value is None or isinstance(value, bool):
         return
     node = call.node
@@ -155,7 +130,7 @@ def _single(
         return
     si = _si(value, name, role, units)
     if si is not None:
-        yield _Input(name, role, label, si, value, place, literal, n)
+        yield Input(name, role, label, si, value, place, literal, n, call.row.family == "Fittings")
 
 
 def _si(value: Scalar, name: str, role: str, units: UnitSet) -> float | None:
@@ -168,10 +143,10 @@ def _si(value: Scalar, name: str, role: str, units: UnitSet) -> float | None:
 
 def _of_a_table(book: Book, call: Call, given: Given) -> bool:
     """Whether the reference moves along a formula that was filled down or across."""
-    moves = moving(given.text)
+    node = call.node
+    moves = (True, False) if given.area and of_own_row(node, given.area) else moving(given.text)
     if moves is None:
         return False
-    node = call.node
     sheet, row, col = node.sheet, node.cell.row, node.cell.col
     own = book.signatures[node.index]
     for moves_this_way, places in (
@@ -185,7 +160,7 @@ def _of_a_table(book: Book, call: Call, given: Given) -> bool:
     return False
 
 
-def _start_block(call: Call, given: Given, value: Cell, units: UnitSet, n: int) -> Iterator[_Input]:
+def _start_block(call: Call, given: Given, value: Cell, units: UnitSet, n: int) -> Iterator[Input]:
     """The project-wide entries of a start block name | value | unit."""
     if given.area is None or not isinstance(value, list):
         return
@@ -204,7 +179,7 @@ def _start_block(call: Call, given: Given, value: Cell, units: UnitSet, n: int) 
         except (Refused, UnitError, IndexError):
             continue
         place = (given.area.sheet, given.area.r1 + i, given.area.c1 + 1)
-        yield _Input(column.name, column.role, "", si, line[1], place, False, n)
+        yield Input(column.name, column.role, "", si, line[1], place, False, n, False)
 
 
 RULES = (Rule("D01", "one input with two values", two_values),)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 from collections.abc import Iterator
 
@@ -16,6 +17,11 @@ _LONG = 3
 """Formulas in line, all alike, that the next cell is expected to continue."""
 _GAP = 50
 """Cells of numbers inside a run of formulas that are still taken for typed over."""
+_BESIDE = 30
+"""Cells before a formula in which a text that tells its kind is looked for."""
+_NUMBER = re.compile(r"\s*[-+]?\d+(?:[.,]\d+)?\s*")
+"""A number that was typed, or pasted, as text."""
+_CONSTANT = re.compile(r"(?<![\w.$:])\d+(?:\.\d+)?(?:e[-+]?\d+)?(?![\w:(])")
 _DOWN, _ACROSS = (1, 0), (0, 1)
 
 
@@ -96,7 +102,7 @@ def _numbers_after(book: Book, run: list[Node], step: tuple[int, int], long: boo
         if beyond is not None and book.signatures.get(beyond.index) == book.signatures[last.index]:
             # Input and formula in turn, one below the other, are no run with a hole in it.
             if len(run) > 1 or not any(_reads(beyond, p) for p in gap):
-                yield from gap
+                yield from (p for p in gap if not _lacks_inputs(book, last, p))
             return
         after = [gap[0]] if len(gap) == 1 else []
     back = (-step[0], -step[1])
@@ -106,7 +112,9 @@ def _numbers_after(book: Book, run: list[Node], step: tuple[int, int], long: boo
         before = []
     for near, places in ((last, after), (first, before)):
         for place in places:
-            if (long or _goes_on_beside(book, near, place, step)) and _has_inputs(book, near, place):
+            # A number that the next formula starts from is the beginning of a chain.
+            goes_on = (long or _goes_on_beside(book, near, place, step)) and _has_inputs(book, near, place)
+            if (goes_on and not _reads(near, place)) or _sums_beside(book, near, place):
                 yield place
 
 
@@ -149,18 +157,48 @@ def _typed_number(book: Book, place: Place | None) -> bool:
     if place is None or place in book.model.at:
         return False
     value = book.stored[place[0]].get(place[1:])
-    return isinstance(value, float) and not book.in_area(place)
+    number = isinstance(value, float) or (isinstance(value, str) and _NUMBER.fullmatch(value) is not None)
+    return number and not book.in_area(place)
+
+
+def _inputs(book: Book, like: Node, place: Place) -> Iterator[tuple[Place, Place]]:
+    """Each cell that a formula reads, and the cell that it would read if it were filled into a place."""
+    row, col = place[1] - like.cell.row, place[2] - like.cell.col
+    for ref, moves_down, moves_across in book.relative_references(like):
+        if (row and moves_down) or (col and moves_across):
+            own = ref.sheet, ref.r1, ref.c1
+            yield own, (ref.sheet, ref.r1 + row * moves_down, ref.c1 + col * moves_across)
 
 
 def _has_inputs(book: Book, like: Node, place: Place) -> bool:
     """Whether the formula, filled into a place, would find its inputs there."""
+    moved = list(_inputs(book, like, place))
+    return bool(moved) and all(p != place and _alike(book, own, p) for own, p in moved)
+
+
+def _alike(book: Book, own: Place, moved: Place) -> bool:
+    value = book.value(moved)
+    return value not in (None, "") and (isinstance(value, float) or not isinstance(book.value(own), float))
+
+
+def _lacks_inputs(book: Book, like: Node, place: Place) -> bool:
+    """Whether something that the formula reads is left empty beside a place: a row of another kind."""
+    moved = _inputs(book, like, place)
+    return any(book.value(p) in (None, "") and book.value(own) not in (None, "") for own, p in moved)
+
+
+def _sums_beside(book: Book, like: Node, place: Place) -> bool:
+    """Whether a formula sums its own line, and beside it the line of a place holds results, too."""
     row, col = place[1] - like.cell.row, place[2] - like.cell.col
-    moved = [
-        (ref.sheet, ref.r1 + row * moves_down, ref.c1 + col * moves_across)
-        for ref, moves_down, moves_across in book.relative_references(like)
-        if (row and moves_down) or (col and moves_across)
-    ]
-    return bool(moved) and all(p != place and book.value(p) not in (None, "") for p in moved)
+    for ref in like.references:
+        upright = bool(col) and ref.c1 == ref.c2 == like.cell.col and ref.r1 < ref.r2
+        level = bool(row) and ref.r1 == ref.r2 == like.cell.row and ref.c1 < ref.c2
+        if ref.sheet == like.sheet and (upright or level):
+            moved = Reference(ref.sheet, ref.r1 + row, ref.c1 + col, ref.r2 + row, ref.c2 + col)
+            results = [node for node in book.formulas_in(moved) if node.index in book.affected]
+            if len(results) > 1 or any(node.area for node in results):
+                return True
+    return False
 
 
 def odd_formula(book: Book) -> Iterator[Finding]:
@@ -175,6 +213,8 @@ def odd_formula(book: Book) -> Iterator[Finding]:
         if not node.calls and _sums(node, _place(like)):
             continue
         other_function = node.calls and sorted(like.calls) != sorted(node.calls)
+        if other_function and _another_kind(book, node):
+            continue
         yield Finding(
             "P02",
             Severity.NOTE if other_function else Severity.WARNING,
@@ -198,7 +238,7 @@ def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
         form = book.signatures[near.index]
         if far is not None and book.signatures[far.index] == form:
             return near
-        if far is None and sorted(near.calls) == sorted(node.calls) and node.calls:
+        if _one_kind(book, node, near) and not _reads(near, _place(node)):
             way = back if near is one else step
             run, at = 1, near
             while run < _LONG:
@@ -209,6 +249,29 @@ def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
             if run >= _LONG:
                 return near
     return None
+
+
+def _one_kind(book: Book, node: Node, near: Node) -> bool:
+    """Whether two formulas call the same functions, or are the same but for constants."""
+    if node.calls or near.calls:
+        return sorted(near.calls) == sorted(node.calls)
+    one, other = (_CONSTANT.sub("0", book.signatures[n.index]) for n in (node, near))
+    return one == other
+
+
+def _another_kind(book: Book, node: Node) -> bool:
+    """Whether a text of the row (or column) tells that it is of another kind than both its neighbours.
+
+    Such as a column "bend", "closed", "bend" beside the formulas.
+    """
+    sheet, row, col = _place(node)
+    beside = [((row, c), (row - 1, c), (row + 1, c)) for c in range(max(col - _BESIDE, 1), col)]
+    beside += [((r, col), (r, col - 1), (r, col + 1)) for r in range(max(row - _BESIDE, 1), row)]
+    for places in beside:
+        own, one, other = (book.value((sheet, *place)) for place in places)
+        if isinstance(own, str) and isinstance(one, str) and own != one == other and one.strip():
+            return True
+    return False
 
 
 def _next(book: Book, node: Node, step: tuple[int, int]) -> Node | None:

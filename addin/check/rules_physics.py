@@ -85,16 +85,20 @@ def junctions(book: Book) -> Iterator[Finding]:
     Either the engine refused the call, or the call's own tolerance was set so wide that
     it did not.
     """
-    for index, (call, said) in book.unclosed.items():
-        node = book.model.nodes[index]
+    refused: dict[tuple[str, str], list[tuple[Call, str]]] = {}
+    for call, said in book.unclosed.values():
+        refused.setdefault((call.row.name, digest(list(call.inputs))), []).append((call, said))
+    for (name, basis), calls in refused.items():
+        call, said = calls[0]
+        others = f" (and {len(calls) - 1} more cells with the same flows)" if len(calls) > 1 else ""
         yield Finding(
             "M01",
             Severity.ERROR,
-            book.sheet(node.sheet),
-            node.a1,
-            f"{call.row.name}: {said}",
+            book.sheet(call.node.sheet),
+            call.node.a1,
+            f"{name}: {said}{others}",
             "What flows into a control volume must flow out of it; without that there is no thrust.",
-            digest(list(call.values)),
+            basis,
         )
     seen = set()
     for call in book.calls:

@@ -11,7 +11,9 @@ from ..figures import figure
 from ..hosts.headless.elsewhere import elsewhere
 from ..hosts.headless.model import Node
 from ..hosts.headless.reasons import reason
+from ..units import ROLES
 from .book import Book
+from .calls import Call
 from .gather import Remark, figures, joined
 from .types import Finding, Rule, Severity
 
@@ -217,27 +219,39 @@ def not_checked(book: Book) -> Iterator[Finding]:
 
 
 def covered(book: Book) -> Iterator[Finding]:
-    """V06: a call fails, and the formula around it shows a number instead."""
+    """V06: a call fails, and the formula around it shows a number, or nothing though the inputs are there."""
     remarks = []
     for call in book.calls:
         node = call.node
         shown = book.results.values.get(node.index)
-        if not isinstance(shown, float) or not any(word in node.cell.text.upper() for word in _COVERS):
+        hides = isinstance(shown, float) or (shown == "" and _all_there(call))
+        if not hides or not any(word in node.cell.text.upper() for word in _COVERS):
             continue
         answer = dispatch.call(call.row.name, call.values)
         if isinstance(answer, CellError):
+            instead = "nothing" if shown == "" else figure(shown)
             remarks.append(
                 Remark(
                     book.sheet(node.sheet),
                     node.cell.row,
                     node.cell.col,
                     f"{call.row.name} {book.signatures[node.index]}",
-                    f"{call.row.name} fails ({answer}), and the formula shows {figure(shown)} instead",
+                    f"{call.row.name} fails ({answer}), and the formula shows {instead} instead",
                     f"The reason: {answer.message or answer}. A sum over such cells does not tell it.",
                     f"{answer} {figures(shown)}",
                 )
             )
     yield from joined("V06", Severity.WARNING, remarks)
+
+
+def _all_there(call: Call) -> bool:
+    """Whether every cell that a call reads as one number holds a number: its row is in use."""
+    cells = [
+        value
+        for arg, given, value in call.arguments
+        if given.area is not None and arg.role in ROLES and not isinstance(value, list)
+    ]
+    return bool(cells) and all(isinstance(value, float) for value in cells)
 
 
 RULES = (
@@ -246,5 +260,5 @@ RULES = (
     Rule("V03", "error value", errors),
     Rule("V04", "formula not recomputed", not_recomputed),
     Rule("V05", "formula outside the cells", not_checked),
-    Rule("V06", "failed call covered by a number", covered),
+    Rule("V06", "failed call covered up", covered),
 )

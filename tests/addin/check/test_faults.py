@@ -15,6 +15,7 @@ from openpyxl.formatting.rule import FormulaRule
 from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.formula import ArrayFormula
+from openpyxl.worksheet.table import Table
 
 from thrustbook.addin.catalogue.registry import CATALOGUE
 from thrustbook.addin.catalogue.types import Longhand, TableLonghand
@@ -98,6 +99,15 @@ def _no_cases(book: Workbook) -> None:
         book["Run"].cell(row, 15).value = None
 
 
+def _table_of_areas(book: Workbook) -> None:
+    ws = book.create_sheet("Areas")
+    ws.append(("D", "A"))
+    for row in range(2, 8):
+        ws.append((100.0 * row, "=TB_AREA(Units,Pipes[[#This Row],[D]])"))
+    ws["B2"] = 0.03
+    ws.add_table(Table(displayName="Pipes", ref="A1:B7"))
+
+
 def _uneven_units(book: Workbook) -> None:
     book["Bends"]["A16"] = "bore of the drain, area"
     book["Bends"]["B16"] = '=TB_AREA("US",12)'
@@ -141,6 +151,21 @@ FAULTS = {
     "number over a formula that depends on a call": Fault(
         _put("Bends", I8=5.0), "P01", ("Bends!I8",), "1.5*G"
     ),
+    "number over the first formula": Fault(
+        _put("Bends", **{f"G{FIRST}": 5.0}), "P01", (f"Bends!G{FIRST}",), "5"
+    ),
+    "number typed as text over a formula": Fault(_put("Bends", G8="5.0"), "P01", ("Bends!G8",), "5"),
+    "number over a total beside another": Fault(
+        _put("Bends", G11="=SUM(G5:G10)", H11=-99.0, I11=None), "P01", ("Bends!H11",), "SUM(G5:G10)"
+    ),
+    "number over a formula of a table": Fault(_table_of_areas, "P01", ("Areas!B2",), "stands in place"),
+    "total without its last row": Fault(
+        _put("Bends", I11="=SUM(I5:I9)"), "P03", ("Bends!I11",), "leaves out I10", W
+    ),
+    "total without its first row": Fault(
+        _put("Bends", I11="=SUM(I6:I10)"), "P03", ("Bends!I11",), "leaves out I5", W
+    ),
+    "odd last formula before a total": Fault(_put("Bends", I10="=1.4*G10"), "P02", ("Bends!I10",), "1.4", W),
     "odd formula": Fault(
         _put("Bends", G8='=TB_BEND("Fx",Units,rho,B8,C8,$D$5,E8)'), "P02", ("Bends!G8",), "$D$5", W
     ),
@@ -173,6 +198,9 @@ FAULTS = {
         ("Bends!G4",),
         '"N"',
     ),
+    "unit beside the largest result": Fault(
+        _put("Bends", B14='=MAX(TB_CLOSED("F",Units,B5,Inputs!B3),0)', C14="N"), "U02", ("Bends!C14",), '"N"'
+    ),
     "unit of another quantity": Fault(_put("Bends", C4="p1 [mm]"), "U02", ("Bends!C4",), "no unit of"),
     "unit above a column of a block": Fault(
         lambda book: (
@@ -185,6 +213,12 @@ FAULTS = {
     ),
     "unit above a result of a block": Fault(_put("Run", O7="F [lbf]"), "U02", ("Run!O7",), '"lbf"'),
     "flows that do not close": Fault(_put("Balance", F6=70.0), "M01", ("Balance!B8",), "do not close"),
+    "flows that do not close in several results": Fault(
+        _put("Balance", F6=70.0, B9='=TB_BALANCE("Fy",Units,rho,A2:F3,A4:F6)'),
+        "M01",
+        ("Balance!B8",),
+        "and 1 more cell",
+    ),
     "flows that close only by a wide tolerance": Fault(
         _put("Balance", F6=79.0, B8='=TB_BALANCE("Fx",Units,rho,A2:F3,A4:F6,,,,,0.05)'),
         "M01",

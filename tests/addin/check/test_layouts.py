@@ -1,0 +1,176 @@
+"""Sheets as projects have them: inputs of several fittings, chains, mixed columns. Figures are invented."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from pathlib import Path
+
+import pytest
+from openpyxl import Workbook
+from openpyxl.worksheet.worksheet import Worksheet
+
+from .books import findings, stored
+
+Line = tuple[object, ...]
+
+
+def _sheet(book: Workbook, title: str, lines: Iterable[Line]) -> Worksheet:
+    ws = book.create_sheet(title)
+    for row, line in enumerate(lines, 1):
+        for col, value in enumerate(line, 1):
+            ws.cell(row, col, value)
+    return ws
+
+
+def _empty() -> Workbook:
+    book = Workbook()
+    book.remove(book.worksheets[0])
+    return book
+
+
+def _found(book: Workbook, path: Path) -> list[tuple[str, str]]:
+    return [(f.code, f.place) for f in findings(stored(book, path / "book.xlsx"))]
+
+
+def _bend(title: str, flow: object, diameter: object, pressure: object, angle: object) -> list[Line]:
+    return [
+        (title,),
+        ("Quantity", "Symbol", "Value", "Unit"),
+        ("Density", "rho", 998.0, "kg/m3"),
+        ("Flow", "Q", flow, "L/s"),
+        ("Inside diameter", "D", diameter, "mm"),
+        ("Pressure", "p", pressure, "kPa"),
+        ("Deflection", "θ", angle, "°"),
+        ("Velocity", "V", '=TB_VELOCITY("metric",C4,C5)', "m/s"),
+        ("Thrust", "F", '=TB_BEND("F","metric",C3,C5,C6,C4,C7)', "kN"),
+    ]
+
+
+def _fittings(**second: object) -> Workbook:
+    """Two bends and a cap, each on a sheet; what is not given is linked to the first."""
+    book = _empty()
+    _sheet(book, "B1", _bend("Bend B1", 120.0, 400.0, 600.0, 45.0))
+    linked = {"flow": "='B1'!C4", "diameter": "='B1'!C5", "pressure": "='B1'!C6", "angle": "='B1'!C7"}
+    _sheet(book, "B2", _bend("Bend B2", **{**linked, **second}))
+    _sheet(
+        book,
+        "C1",
+        [
+            ("Cap C1",),
+            ("Inside diameter", "D", 200.0, "mm"),
+            ("Pressure", "p", "='B1'!C6", "kPa"),
+            ("Thrust", "F", '=TB_CLOSED("F","metric",C2,C3)', "kN"),
+        ],
+    )
+    return book
+
+
+@pytest.mark.parametrize("own", [{"angle": 90.0}, {"diameter": 350.0}, {"pressure": 450.0}], ids=str)
+def test_each_fitting_has_its_own_size_and_pressure(tmp_path: Path, own: dict[str, float]) -> None:
+    assert _found(_fittings(**own), tmp_path) == []
+
+
+def test_the_flow_of_a_main_is_one_flow(tmp_path: Path) -> None:
+    assert _found(_fittings(flow=130.0), tmp_path) == [("D01", "B2!C4")]
+
+
+def test_a_diameter_typed_again_beside_a_fitting_is_found(tmp_path: Path) -> None:
+    book = _fittings()
+    _sheet(book, "Check", [("Inside diameter", 450.0, "mm"), ("Area", '=TB_AREA("metric",B1)', "m2")])
+    del book["C1"]
+    assert _found(book, tmp_path) == [("D01", "Check!B1")]
+
+
+def test_a_named_input_typed_twice_is_found_whatever_its_unit_is_written_like(tmp_path: Path) -> None:
+    book = _empty()
+    for title, label, value in (("A", "Test pressure [kPa]", 900.0), ("B", "Test pressure (kPa)", 950.0)):
+        _sheet(book, title, [(label, value), ("Thrust", '=TB_CLOSED("F","metric",300,B1)', "kN")])
+    assert _found(book, tmp_path) == [("D01", "B!B1")]
+
+
+def test_load_cases_on_sheets_of_their_own(tmp_path: Path) -> None:
+    book = _empty()
+    for title, pressure, flow in (("Duty", 500.0, 150.0), ("Test", 900.0, 0.0), ("Surge", 700.0, 150.0)):
+        _sheet(book, title, _bend("Bend B1", flow, 400.0 if title == "Duty" else "=Duty!C5", pressure, 45.0))
+        if title != "Duty":
+            book[title]["C7"] = "=Duty!C7"
+    assert _found(book, tmp_path) == []
+
+
+def test_a_label_is_not_the_unit_that_stands_before_the_value(tmp_path: Path) -> None:
+    book = _empty()
+    lines: list[Line] = [
+        ("Density", "lb/ft3", 62.4),
+        ("Inside diameter", "in", 24.0),
+        ("Working pressure", "psi", 100.0),
+        ("Test pressure", "psi", 150.0),
+        ("Thrust, working", "lbf", '=TB_CLOSED("F","US",C2,C3)'),
+        ("Thrust, test", "lbf", '=TB_CLOSED("F","US",C2,C4)'),
+    ]
+    _sheet(book, "Cap", lines)
+    assert _found(book, tmp_path) == []
+
+
+def _mixed() -> Workbook:
+    """A column of fittings of several kinds; a cap has no angle and no thrust across."""
+    book = _empty()
+    ws = _sheet(book, "Fittings", [("node", "kind", "D", "p", "Q", "angle", "Fx", "Fy")])
+    for row in range(2, 10):
+        for col, value in enumerate((f"N{row}", "bend", 300.0, 500.0, 80.0, 45.0), 1):
+            ws.cell(row, col, value)
+        for col, name in ((7, "Fx"), (8, "Fy")):
+            ws.cell(row, col, f'=TB_BEND("{name}","metric",998,C{row},D{row},E{row},F{row})')
+    ws["B5"], ws["F5"], ws["G5"], ws["H5"] = "closed", None, '=TB_CLOSED("F","metric",C5,D5)', 0.0
+    return book
+
+
+def test_rows_of_another_kind_in_a_table_of_fittings(tmp_path: Path) -> None:
+    assert _found(_mixed(), tmp_path) == []
+
+
+def test_another_function_without_another_kind_is_found(tmp_path: Path) -> None:
+    book = _mixed()
+    book["Fittings"]["B5"], book["Fittings"]["F5"] = "bend", 45.0
+    assert _found(book, tmp_path) == [("P01", "Fittings!H5"), ("P02", "Fittings!G5")]
+
+
+@pytest.mark.parametrize("start", [90.0, "=$B$12", "=$B$12-E2"], ids=str)
+def test_the_start_of_a_chain_is_not_like_the_rest(tmp_path: Path, start: object) -> None:
+    book = _empty()
+    ws = _sheet(book, "Chain", [("node", "D", "dz", "p [kPa]", "hf [m]", "HGL [m]")])
+    ws["A11"], ws["B11"], ws["A12"], ws["B12"] = "pressure at the pumps", 600.0, "level at the pumps", 90.0
+    for row in range(2, 9):
+        pressure = "$B$11" if row == 2 else f"D{row - 1}"
+        line = (
+            f"N{row}",
+            300.0,
+            1.0,
+            f'=TB_PRESSURE("p2","metric",998,B{row},B{row},{pressure},80,C{row})',
+            f'=TB_PIPELOSS("hL","metric",998,1,B{row},100,0.1,80)',
+            start if row == 2 else f"=F{row - 1}-E{row}",
+        )
+        for col, value in enumerate(line, 1):
+            ws.cell(row, col, value)
+    assert _found(book, tmp_path) == []
+
+
+def test_subtotals_of_groups_below_a_column_leave_nothing_out(tmp_path: Path) -> None:
+    book = _empty()
+    ws = _sheet(book, "Areas", [("D [mm]", "A [m2]")])
+    for row in range(2, 10):
+        ws.cell(row, 1, 100.0 * row)
+        ws.cell(row, 2, f'=TB_AREA("metric",A{row})')
+    ws["A11"], ws["B11"] = "first four", "=SUM(B2:B5)"
+    ws["A12"], ws["B12"] = "last four", "=SUM(B6:B9)"
+    ws["A13"], ws["B13"] = "all", "=B11+B12"
+    assert _found(book, tmp_path) == []
+
+
+@pytest.mark.parametrize(("pressure", "expected"), [(None, []), (-900.0, [("V06", "Cap!B3")])], ids=str)
+def test_an_error_covered_by_nothing_counts_where_the_inputs_are_there(
+    tmp_path: Path, pressure: object, expected: list[tuple[str, str]]
+) -> None:
+    book = _empty()
+    formula = '=IFERROR(TB_BEND("F","metric",998,300,B2,80,B1),"")'
+    _sheet(book, "Cap", [("angle", 400.0), ("p", -pressure if pressure else None), ("F", formula)])
+    assert _found(book, tmp_path) == expected
