@@ -46,6 +46,8 @@ class Check:
     scale: Callable[[], str] = lambda: ""
     figures: bool = False
     """Whether the cell holds a text with figures in it."""
+    twin: Callable[[], tuple[str, str] | None] = lambda: None
+    """A cell that shows the same beside its working, and the verdict on it."""
     at: int = 0
     """The row of its line."""
 
@@ -218,7 +220,10 @@ class Block:
         sheet.put(at, 4, Formula(check.value()), "number")
         sheet.put(at, 6, linked(check.ref), "linked")
         sheet.put(at, 7, Formula(f"{local(at, 4)}-{local(at, 6)}"), "difference")
-        verdict = agreement(local(at, 4), local(at, 6), tolerance, check.scale(), check.figures)
+        apart, twin = '"differs"', check.twin()
+        if twin is not None:  # its verdict knows how large the terms of a small sum are
+            apart = f"IF({local(at, 6)}={twin[0]},{twin[1]},{apart})"
+        verdict = agreement(local(at, 4), local(at, 6), tolerance, check.scale(), check.figures, apart)
         sheet.put(at, 10, Formula(verdict), "verdict")
         sheet.fit_height(at)
 

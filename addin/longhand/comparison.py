@@ -50,6 +50,7 @@ class Comparison:
         value = partial(_or_not_available, entry.formula_of, i, j)
         block = outcome.block if isinstance(outcome, BlockOutcome) else self.loose
         result = ""
+        twin: Callable[[], tuple[str, str] | None] | None = None
         if _shows(outcome.shape, i, j):
             row, col = within(outcome.shape, i, j)
             if isinstance(outcome, BlockOutcome):
@@ -57,18 +58,21 @@ class Comparison:
             elif isinstance(outcome, RowsOutcome):
                 if self._own_line(outcome, cell, entry, row, col, _ref(cell, i, j)):
                     return
-            elif isinstance(outcome, TableOutcome | ScheduleOutcome) and outcome.own(
-                row, col, _ref(cell, i, j)
-            ):
-                entry.table = outcome
-                entry.shown.add(outcome.results[col])
-                return
+                twin = partial(outcome.beside, row, col)
+            elif isinstance(outcome, TableOutcome | ScheduleOutcome):
+                if outcome.own(row, col, _ref(cell, i, j)):
+                    entry.table = outcome
+                    entry.shown.add(outcome.results[col])
+                    return
+                twin = partial(outcome.beside, row, col)
             if isinstance(outcome, WordsOutcome | TableOutcome | ScheduleOutcome):
                 stored = self._stored(cell, i, j)
                 shown = "" if is_blank(stored) else stored
                 if outcome.text(row, col, shown) == shown:
                     return
-        self._check(block, cell, entry, i, j, value, result)
+        check = self._check(block, cell, entry, i, j, value, result)
+        if twin is not None:
+            check.twin = twin
 
     def _stored(self, cell: TbCell, i: int, j: int) -> Scalar:
         return self._source.values(cell.sheet).get((cell.cell.row + i, cell.cell.col + j))
@@ -130,7 +134,7 @@ class Comparison:
 
     def _check(
         self, block: Block, cell: TbCell, entry: Entry, i: int, j: int, value: Callable[[], str], result: str
-    ) -> None:
+    ) -> Check:
         a1 = to_a1(cell.cell.row + i, cell.cell.col + j)
         check = Check(cell, _ref(cell, i, j), f"{cell.sheet}!{a1}", value)
         stored = self._stored(cell, i, j)
@@ -139,6 +143,7 @@ class Comparison:
             check.scale = lambda: block.scale_ref(result)
         block.checks.append(check)
         entry.checks.append((block, check))
+        return check
 
     def _own_line(self, outcome: RowsOutcome, cell: TbCell, entry: Entry, i: int, j: int, ref: str) -> bool:
         """Set a cell beside its line; False where another cell stands there."""

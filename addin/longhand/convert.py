@@ -94,11 +94,14 @@ def not_given(row: Row, arg: Arg) -> Content | None:
     return default_of(row, arg)
 
 
-def agreement(value: str, own: str, tolerance: str, scale: str, figures: bool = False) -> str:
+def agreement(
+    value: str, own: str, tolerance: str, scale: str, figures: bool = False, apart: str = '"differs"'
+) -> str:
     """The verdict on a cell: "agrees", "differs", or "error" where both sides are errors.
 
     With ``figures`` the cell holds a text into which a number is written, whose last
     figures may be rounded another way: "text" where nothing but figures differs.
+    ``apart`` is the verdict on numbers that the tolerance does not cover.
     """
     allowed = f"{tolerance}*MAX(ABS({value}),ABS({own})"
     allowed += f",0.000001*{scale})" if scale else ")"
@@ -109,7 +112,7 @@ def agreement(value: str, own: str, tolerance: str, scale: str, figures: bool = 
         f'IF(ISERROR({own}),IF(ISERROR({value}),"error","differs"),'
         f'IF(ISERROR({value}),"differs",IF(ISTEXT({own})<>ISTEXT({value}),"differs",'
         f'IF(ISTEXT({own}),IF({value}={own},"agrees",{other}),'
-        f'IF(ABS({value}-{own})<={allowed},"agrees","differs")))))'
+        f'IF(ABS({value}-{own})<={allowed},"agrees",{apart})))))'
     )
 
 

@@ -91,6 +91,17 @@ class RowsOutcome:
         text = self.rows.sheet.ref(*self.rows.places[self.number][line][result])
         return text if self.guard is None else self.guard.around(text)
 
+    def beside(self, i: int, j: int) -> tuple[str, str]:
+        """The cell that stands beside the working of an element, and the verdict on it."""
+        line, result = self.place(i, j)
+        return self.at_line(line, result)
+
+    def at_line(self, line: int, result: str) -> tuple[str, str]:
+        """The same for a line of the group."""
+        assert self.rows is not None
+        row, col = self.rows.places[self.number][line][result]
+        return self.group.lines[line].own[result], self.rows.sheet.ref(row, col + 3)
+
     @property
     def one_range(self) -> bool:
         return self.single and self.elements[1] == 1 and self.guard is None

@@ -140,12 +140,16 @@ class Placed:
         """The verdicts on some results, as a formula refers to them."""
         areas = []
         for name in sorted(results):
-            if name in self._result_at:
-                areas.append(self.sheet.ref(self._result_at[name], 7))
-            else:
-                col = self._result[name] + (2 if self.results[name][0].role == "text" else 3)
-                areas.append(f"{self.sheet.ref(self._first, col)}:{fixed(self._last, col)}")
+            first, last = self.verdict_ref(name, 0), self.verdict_ref(name, len(self.lines) - 1)
+            areas.append(first if first == last else f"{first}:{last.rpartition('!')[2]}")
         return areas
+
+    def verdict_ref(self, result: str, line: int) -> str:
+        """The verdict on a result."""
+        if result in self._result_at:
+            return self.sheet.ref(self._result_at[result], 7)
+        col = self._result[result] + (2 if self.results[result][0].role == "text" else 3)
+        return self.sheet.ref(self._first + line, col)
 
     @property
     def _last(self) -> int:

@@ -108,6 +108,11 @@ class ScheduleOutcome:
         line.target = line.target or ref
         return line.own.setdefault(result, ref) == ref
 
+    def beside(self, i: int, j: int) -> tuple[str, str] | None:
+        """The cell that stands beside the working of an element, and the verdict on it."""
+        result = self.result_of(i, self.results[j]) if i in self.kinds else ""
+        return self.carriers[self.kinds[i]].at_line(self.lines[i], result) if result else None
+
     def text(self, i: int, j: int, stored: Scalar) -> Scalar:
         """The text that the cell of an element shows; None where it is no text known beforehand."""
         result = self.results[j]

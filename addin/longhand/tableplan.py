@@ -83,6 +83,16 @@ class TableOutcome:
         line.target = line.target or ref
         return line.own.setdefault(result, ref) == ref
 
+    def beside(self, i: int, j: int) -> tuple[str, str] | None:
+        """The cell that stands beside the working of an element, and the verdict on it."""
+        result = self.results[j]
+        if self.one_row:
+            return self.section.own[result], self.section.verdict_ref(result, 0)
+        if result in self.constants or i not in self.rows:
+            return None
+        line = self.rows.index(i)
+        return self.section.lines[line].own[result], self.section.verdict_ref(result, line)
+
     def text(self, i: int, j: int, stored: Scalar) -> Scalar:
         """The text that the cell of an element shows; None where it is no text known beforehand."""
         if self.results[j] in self.constants:

@@ -15,7 +15,7 @@ from thrustbook.addin.xlsx.a1 import to_a1
 from thrustbook.addin.xlsx.package import Package
 from thrustbook.addin.xlsx.sheetxml import stored_values
 
-from .test_detach import changed, evaluated
+from .test_detach import TEMPLATES, changed, evaluated
 
 SHEET = "S"
 BEND = "1000,0.3,200000,0.2,90"
@@ -148,3 +148,18 @@ def test_every_wrong_value_is_found(book: Path, turn: int, odd: int, tmp_path: P
 def test_a_text_is_no_number(book: Path, value: str, tmp_path: Path) -> None:
     words = _verdicts(changed(book, {SHEET: {to_a1(*_place(2)): value}}, tmp_path / "seeded.xlsx"))
     assert words[to_a1(*_place(2))] == "differs"
+
+
+def test_the_same_call_in_two_cells_agrees_in_both(tmp_path: Path) -> None:
+    """A sum of forces that is nothing but rounding is no difference in the second cell either."""
+    path = tmp_path / "book.xlsx"
+    book = openpyxl.load_workbook(TEMPLATES / "pipe-run.xlsx")
+    sheet = book["Cover"]
+    for row in (40, 41, 42):
+        sheet.cell(row, 2, "=" + str(sheet["B16"].value).removeprefix("="))
+    book.save(path)
+    found = Made(Package.read(evaluated(path))).verdicts()
+    assert {entry.cell.where for entry in found["agrees"]} >= {f"Cover!B{row}" for row in (16, 40, 41, 42)}
+    assert not found["differs"]
+    wrong = changed(path, {"Cover": {"B41": 1e-6}}, tmp_path / "wrong.xlsx")
+    assert [e.cell.where for e in Made(Package.read(wrong)).verdicts()["differs"]] == ["Cover!B41"]
