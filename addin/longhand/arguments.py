@@ -10,6 +10,7 @@ from typing import Any, Literal
 from ..catalogue.types import Arg, Column
 from ..cells import Scalar
 from ..hosts.headless.formulas import Kind, Part
+from ..hosts.headless.formulas import literal as formula_text
 from ..tables import is_blank
 from ..units import UnitError, quantity, unit
 from .calls import Call, Items, NotWorked, Shape, render
@@ -84,6 +85,8 @@ class Argument:
             return self.area.ref(i, j)
         if self.form == "call":
             return element_text(self._call, written, i, j)
+        if self.form == "array":
+            return formula_text(self.value(i, j))
         items = self.items
         if self.survey is not None and self.extent != SINGLE:
             items = element(self.survey, items, i, j, self._element)

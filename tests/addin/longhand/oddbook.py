@@ -121,6 +121,11 @@ FORMULAS = (
     Odd('TB_CONVERT(A1:A3,"m","mm")', (3, 1)),
     Odd('TB_CONVERT(A1:A3*2,"m",E8&"m")', (3, 1)),
     Odd('TB_CONVERT(A1,"m","m"&"m")'),
+    Odd('TB_CONVERT({1;2;3},"m","mm")', (3, 1)),
+    Odd('TB_CONVERT(A1:A3-B1:B3,"m","mm")', (3, 1)),
+    Odd('TB_AREA("metric",TB_CONVERT(A1+1,"m","mm"))'),
+    Odd('10-TB_CONVERT(B1+1,"degC","degF")^2'),
+    Odd('1/TB_CONVERT(100,"kPa(a)","bar",B1*90000)'),
     # Pressures against different data in one range
     Odd('TB_CLOSED("Fx","metric",A1*1000,L1:L3)', (3, 1)),
 )
