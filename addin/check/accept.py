@@ -66,14 +66,14 @@ class Accepted:
     def read(cls, path: Path) -> Accepted:
         """Read a file. Raises :class:`BadList`, OSError."""
         try:
-            data = tomllib.loads(path.read_text(encoding="utf-8"))
+            data = tomllib.loads(path.read_text(encoding="utf-8-sig"))
         except (tomllib.TOMLDecodeError, UnicodeDecodeError) as error:
             raise BadList(f"{path} is not readable TOML ({error})") from error
         tables = data.pop("accepted", [])
-        if data or not isinstance(tables, list):
-            raise BadList(
-                f'{path} may hold nothing but [[accepted]] entries, not "{next(iter(data), "accepted")}"'
-            )
+        if data:
+            raise BadList(f'{path} may hold nothing but [[accepted]] entries, not "{next(iter(data))}"')
+        if not isinstance(tables, list):
+            raise BadList(f"{path}: an entry begins with [[accepted]], in two pairs of brackets")
         return cls([_entry(path, number, table) for number, table in enumerate(tables, 1)])
 
 

@@ -69,21 +69,17 @@ def _contradictions(
     book: Book, group: list[Input], reported: set[Place], same: Callable[[Input, Input], bool]
 ) -> Iterator[Finding]:
     """The inputs that others of the group contradict: of two values the rarer is told, or the later."""
-    classes: list[float] = []
     counts: Counter[float] = Counter()
     of_place: dict[Place, tuple[Input, float]] = {}
     for item in group:
-        near = next((v for v in classes if math.isclose(v, item.value, rel_tol=_CLOSE)), None)
-        if near is None:
-            near = item.value
-            classes.append(near)
+        near = next((v for v in counts if math.isclose(v, item.value, rel_tol=_CLOSE)), item.value)
         counts[near] += 1
         before = of_place.get(item.place)
         if before is None or (item.of_fitting and not before[0].of_fitting):
             of_place[item.place] = item, near
-    ranked = sorted(of_place.values(), key=lambda entry: -counts[entry[1]])
-    for i, (item, value) in enumerate(ranked):
-        other = next((o for o, v in ranked[:i] if v != value and same(item, o)), None)
+    ranked = [[item for item, v in of_place.values() if v == value] for value, _ in counts.most_common()]
+    for item, rank in ((item, rank) for rank, items in enumerate(ranked) for item in items):
+        other = next((o for items in ranked[:rank] for o in items if same(item, o)), None)
         if other is None or item.place in reported:
             continue
         reported.add(item.place)

@@ -42,6 +42,7 @@ def overtyped(book: Book) -> Iterator[Finding]:
     remarks = []
     for (sheet, row, col), like in found.items():
         value = book.value((sheet, row, col))
+        read = [book.value(moved) for _, moved in _inputs(book, like, (sheet, row, col))]
         remarks.append(
             Remark(
                 book.sheet(sheet),
@@ -50,7 +51,7 @@ def overtyped(book: Book) -> Iterator[Finding]:
                 book.signatures[like.index],
                 f"the number {figure(value, 9)} stands in place of the formula",
                 f"{like.a1} and the cells in line with it hold a formula, ={like.cell.text}.",
-                figures(value),
+                figures([value, book.signatures[like.index], *read]),
             )
         )
     yield from joined("P01", Severity.ERROR, remarks)

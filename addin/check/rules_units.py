@@ -2,23 +2,19 @@
 
 from __future__ import annotations
 
-import math
 from collections import Counter
 from collections.abc import Iterator
 from typing import TypeAlias
 
-from ..catalogue.types import Column
-from ..cells import Cell, Refused, Scalar
-from ..tables import find_column, heading, is_blank
-from ..units import ROLES, Unit, UnitError, unit
+from ..tables import is_blank
+from ..units import ROLES, Unit
 from ..xlsx.a1 import to_a1
 from .book import Book, Place
-from .calls import Call, Given
+from .calls import Call
 from .gather import Remark, joined
-from .labels import Written
 from .types import Finding, Rule, Severity
+from .writtenunits import Met, met
 
-_PLAIN = ("ratio", "text", "choice", "table", "headings", "any")
 _Key: TypeAlias = tuple[str, float, int, float]
 """A unit: its symbol, and what makes it that unit."""
 
@@ -34,7 +30,11 @@ def _roles(call: Call) -> set[str]:
 
 
 def mixed(book: Book) -> Iterator[Finding]:
-    """U01: calls on one sheet count the same kind of quantity in different units."""
+    """U01: calls on one sheet count the same kind of quantity in different units.
+
+    A call that the units written at its cells contradict as well is told there, as U02.
+    """
+    told = {id(found[0].call) for found in _unlike(book)[1]}
     used: dict[tuple[int, str], Counter[_Key]] = {}
     sets: list[tuple[Call, dict[str, _Key]]] = []
     for call in book.calls:
@@ -51,7 +51,7 @@ def mixed(book: Book) -> Iterator[Finding]:
     for call, own in sets:
         sheet = call.node.sheet
         odd = sorted(role for role, key in own.items() if key[1:] != usual[sheet, role][1:])
-        if not odd:
+        if not odd or id(call) in told:
             continue
         unusual = ", ".join(f"{role} in {own[role][0]}" for role in odd)
         others = ", ".join(f"{role} in {usual[sheet, role][0]}" for role in odd)
@@ -74,153 +74,66 @@ def _key(given: Unit) -> _Key:
 
 
 def headings(book: Book) -> Iterator[Finding]:
-    """U02: the unit written at a cell is not the one in which a function reads or gives it."""
-    seen: set[Place] = set()
-    for call in book.calls:
-        for place, role, own in _quantities(book, call):
-            written = _unlike(book, place, role, own)
-            if written is None:
-                place = book.source(place) or place
-                written = _unlike(book, place, role, own)
-            if written is None or written.place in seen:
-                continue
-            seen.add(written.place)
-            reads = book.name((call.node.sheet, call.node.cell.row, call.node.cell.col))
-            direction = "gives" if place[:1] == (call.node.sheet,) and _is_result(call, place) else "reads"
-            yield Finding(
-                "U02",
-                Severity.ERROR,
-                book.sheet(written.place[0]),
-                to_a1(*written.place[1:]),
-                f'the unit written here is "{written.text}", but {call.row.name} {direction} '
-                f"{to_a1(*place[1:])} in {own.symbol}",
-                f"{reads} takes its units from its unit set, not from this text"
-                + ("." if written.unit else f'; "{written.text}" is no unit of {ROLES[role].text} at all.'),
-                f"{written.text} {own.symbol}",
-            )
+    """U02: the unit written at a cell is not the one in which a function reads or gives it.
 
-
-def _unlike(book: Book, place: Place, role: str, own: Unit) -> Written | None:
-    """The unit written at a cell, where it is another than its own."""
-    written = book.around.written_unit(place, role)
-    same = written is None or (written.unit is not None and _equal(written.unit, own))
-    return None if same else written
-
-
-def _equal(one: Unit, other: Unit) -> bool:
-    same_zero = one.shift == other.shift and one.offset == other.offset
-    return same_zero and math.isclose(one.factor, other.factor, rel_tol=1e-9)
-
-
-def _is_result(call: Call, place: Place) -> bool:
-    r1, c1, r2, c2 = call.node.extent()
-    return r1 <= place[1] <= r2 and c1 <= place[2] <= c2
-
-
-def _quantities(book: Book, call: Call) -> Iterator[tuple[Place, str, Unit]]:
-    """Cells that a call reads or fills as plain numbers: place, role, and the unit it counts them in."""
-    units = call.units
-    if units is None:
-        return
-    heads: Cell = None
-    before = ""
-    for arg, given, value in call.arguments:
-        if arg.role == "headings":
-            heads = value
-        if given.area is not None and arg.role == "table" and before == "headings":
-            yield from _table(call, arg.columns, given, value, heads)
-        elif given.area is not None and arg.name == "start":
-            yield from _pairs(call, arg.columns, given, value)
-        before = arg.role
-        if given.area is not None and arg.role not in _PLAIN:
-            for place in _tops(given):
-                if isinstance(book.value(place), float):
-                    yield place, arg.role, units.unit(arg.role)
-    if call.shown:
-        yield from _given_back(call)
-
-
-def _tops(given: Given) -> list[Place]:
-    area = given.area
-    assert area is not None
-    return [(area.sheet, area.r1, col) for col in range(area.c1, area.c2 + 1)][:100]
-
-
-def _given_back(call: Call) -> Iterator[tuple[Place, str, Unit]]:
-    """The cells at the head of what a call gives."""
-    node, units, asked = call.node, call.units, call.wanted
-    if units is None or asked is None or asked.form != "values":
-        return
-    r1, c1, r2, c2 = node.extent()
-    # Results stand side by side, but below each other where the inputs were one row.
-    upright = call.row.kind == "table" or r2 == r1 or c2 - c1 + 1 == len(asked.results)
-    for j, result in enumerate(asked.results):
-        row, col = (r1, c1 + j) if upright else (r1 + j, c1)
-        if result.role not in _PLAIN and row <= r2 and col <= c2:
-            yield (node.sheet, row, col), result.role, units.unit(result.role)
-
-
-def _table(
-    call: Call, columns: tuple[Column, ...], given: Given, value: Cell, heads: Cell
-) -> Iterator[tuple[Place, str, Unit]]:
-    """The columns of a table; a unit in its headings goes before the unit set."""
-    units, area = call.units, given.area
-    assert units is not None
-    assert area is not None
-    if not isinstance(value, list):
-        return
-    if is_blank(heads):
-        plan: list[tuple[Column, str | None] | None] = [(c, None) for c in columns[: len(value[0])]]
-    elif isinstance(heads, list) and len(heads[0]) == len(value[0]):
-        plan = [_column(heads, j, columns) for j in range(len(heads[0]))]
-    else:
-        return
-    for j, entry in enumerate(plan):
-        if entry is None or entry[0].role in _PLAIN or not any(isinstance(line[j], float) for line in value):
+    The text is at fault, or the unit set of the call, where most that is written at its
+    cells is of another set, or the text serves other calls well.
+    """
+    told: set[Place] = set()
+    texts, sets = _unlike(book)
+    for one in texts:
+        if one.written.place in told:
             continue
-        column, own = entry
-        try:
-            expected = unit(own, column.role) if own else units.unit(column.role)
-        except UnitError:
-            continue
-        yield (area.sheet, area.r1, area.c1 + j), column.role, expected
+        told.add(one.written.place)
+        row, node = one.call.row.name, one.call.node
+        text = one.written.text
+        yield Finding(
+            "U02",
+            Severity.ERROR,
+            book.sheet(one.written.place[0]),
+            to_a1(*one.written.place[1:]),
+            f'the unit written here is "{text}", but {row} {"gives" if one.gives else "reads"} '
+            f"{to_a1(*one.place[1:])} in {one.own.symbol}",
+            f"{book.name((node.sheet, node.cell.row, node.cell.col))} takes its units from its unit set, "
+            "not from this text"
+            + ("." if one.written.unit else f'; "{text}" is no unit of {ROLES[one.role].text} at all.'),
+            f"{text} {one.own.symbol}",
+        )
+    yield from joined("U02", Severity.ERROR, (_of_call(book, found) for found in sets))
 
 
-def _pairs(
-    call: Call, columns: tuple[Column, ...], given: Given, value: Cell
-) -> Iterator[tuple[Place, str, Unit]]:
-    """The values of a block name | value | unit; a unit that the block itself holds goes first."""
-    units, area = call.units, given.area
-    assert units is not None
-    assert area is not None
-    for i, line in enumerate(value if isinstance(value, list) else []):
-        if len(line) < 2 or not isinstance(line[1], float):
-            continue
-        found = _column([[line[0]]], 0, columns)
-        if found is None or found[0].role in _PLAIN:
-            continue
-        column, own = found
-        if len(line) > 2 and not is_blank(line[2]):
-            own = str(line[2]).strip().strip("[]")
-        try:
-            expected = unit(own, column.role) if own else units.unit(column.role)
-        except UnitError:
-            continue
-        yield (area.sheet, area.r1 + i, area.c1 + 1), column.role, expected
+def _unlike(book: Book) -> tuple[list[Met], list[list[Met]]]:
+    """What disagrees: texts, each with a call; and calls whose unit set is at fault, each with its cells."""
+    of_call: dict[int, list[Met]] = {}
+    votes: Counter[Place] = Counter()
+    for one in met(book):
+        of_call.setdefault(id(one.call), []).append(one)
+        votes[one.written.place] += 1 if one.agrees else -1
+    agreed = {one.written.place for found in of_call.values() for one in found if one.agrees}
+    texts, sets = [], []
+    for found in of_call.values():
+        wrong = [one for one in found if not one.agrees]
+        good = [one for one in wrong if one.written.place in agreed and votes[one.written.place] >= 0]
+        if good or (len(wrong) > 1 and 2 * len(wrong) > len(found)):
+            sets.append(wrong)
+        else:
+            texts += wrong
+    return texts, sets
 
 
-def _column(
-    heads: list[list[Scalar]], j: int, columns: tuple[Column, ...]
-) -> tuple[Column, str | None] | None:
-    try:
-        name, own = heading(heads[0][j])
-        if not name:
-            return None
-        if len(heads) == 2 and not is_blank(heads[1][j]):
-            own = str(heads[1][j]).strip().strip("[]")
-        return find_column(name, columns, ""), own
-    except Refused:
-        return None
+def _of_call(book: Book, found: list[Met]) -> Remark:
+    call = found[0].call
+    own = ", ".join(dict.fromkeys(f"{one.role} in {one.own.symbol}" for one in found))
+    written = ", ".join(dict.fromkeys(f'"{one.written.text}"' for one in found))
+    return Remark(
+        sheet=book.sheet(call.node.sheet),
+        row=call.node.cell.row,
+        col=call.node.cell.col,
+        kind=f"{own} {written}",
+        what=f"{call.row.name} counts {own}, but at its cells is written {written}",
+        why=f"The unit set of this call is not that of its cells ({book.name(found[0].written.place)}).",
+        basis=f"{own} {written}",
+    )
 
 
 RULES = (
