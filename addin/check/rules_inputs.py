@@ -90,11 +90,16 @@ def _contradictions(
             Severity.WARNING,
             book.sheet(sheet),
             to_a1(row, col),
-            f"{called} is {figure(item.shown)} here and {figure(other.shown)} in {book.name(other.place)}",
+            f"{called} is {_shown(item)} here and {_shown(other)} in {book.name(other.place)}",
             f"Both are read as {item.name} by TB_ functions; one project has one value of it"
             + (", typed into the formula here." if item.literal else "."),
             f"{figures(item.value)} {figures(other.value)}",
         )
+
+
+def _shown(item: Input) -> str:
+    unit = f" {item.unit}" if isinstance(item.shown, float) and item.unit != "-" else ""
+    return f"{figure(item.shown)}{unit}"
 
 
 def _inputs(book: Book) -> Iterator[Input]:
@@ -126,7 +131,9 @@ def _single(
         return
     si = _si(value, name, role, units)
     if si is not None:
-        yield Input(name, role, label, si, value, place, literal, n, call.row.family == "Fittings")
+        of_fitting = call.row.family == "Fittings"
+        symbol = units.unit(role).symbol
+        yield Input(name, role, label, si, value, symbol, place, literal, n, of_fitting)
 
 
 def _si(value: Scalar, name: str, role: str, units: UnitSet) -> float | None:
@@ -169,13 +176,12 @@ def _start_block(call: Call, given: Given, value: Cell, units: UnitSet, n: int) 
                 continue
             if len(line) > 2 and isinstance(line[2], str) and line[2].strip():
                 own = line[2].strip().strip("[]")
-            si = number(
-                line[1], name, column.role, unit(own, column.role) if own else units.unit(column.role)
-            )
+            given_in = unit(own, column.role) if own else units.unit(column.role)
+            si = number(line[1], name, column.role, given_in)
         except (Refused, UnitError, IndexError):
             continue
         place = (given.area.sheet, given.area.r1 + i, given.area.c1 + 1)
-        yield Input(column.name, column.role, "", si, line[1], place, False, n, False)
+        yield Input(column.name, column.role, "", si, line[1], given_in.symbol, place, False, n, False)
 
 
 RULES = (Rule("D01", "one input with two values", two_values),)

@@ -15,6 +15,8 @@ from .types import Finding, Rule, Severity
 
 _LONG = 3
 """Formulas in line, all alike, that the next cell is expected to continue."""
+_FEW = 3
+"""Cells of numbers at an end of a run that are still taken for typed over."""
 _GAP = 50
 """Cells of numbers inside a run of formulas that are still taken for typed over."""
 _BESIDE = 30
@@ -22,6 +24,7 @@ _BESIDE = 30
 _NUMBER = re.compile(r"\s*[-+]?\d+(?:[.,]\d+)?\s*")
 """A number that was typed, or pasted, as text."""
 _CONSTANT = re.compile(r"(?<![\w.$:])\d+(?:\.\d+)?(?:e[-+]?\d+)?(?![\w:(])")
+_CELL = re.compile(r"(?:'[^']*'!|[\w.]+!)?\$?[a-z]{1,3}\$?\d+(?![\w(])")
 _DOWN, _ACROSS = (1, 0), (0, 1)
 
 
@@ -105,12 +108,15 @@ def _numbers_after(book: Book, run: list[Node], step: tuple[int, int], long: boo
             if len(run) > 1 or not any(_reads(beyond, p) for p in gap):
                 yield from (p for p in gap if not _lacks_inputs(book, last, p))
             return
-        after = [gap[0]] if len(gap) == 1 else []
+        after = gap
+    before: list[Place] = []
     back = (-step[0], -step[1])
-    ahead = _moved(_place(first), back)
-    before = [ahead] if ahead is not None and _typed_number(book, ahead) else []
-    if before and _typed_number(book, _moved(before[0], back)):
-        before = []
+    place = _moved(_place(first), back)
+    while place is not None and len(before) <= _GAP and _typed_number(book, place):
+        before.append(place)
+        place = _moved(place, back)
+    # More numbers than that are a list of their own.
+    after, before = ([] if len(part) > max(min(len(run) // 2, _FEW), 1) else part for part in (after, before))
     for near, places in ((last, after), (first, before)):
         for place in places:
             # A number that the next formula starts from is the beginning of a chain.
@@ -203,61 +209,86 @@ def _sums_beside(book: Book, like: Node, place: Place) -> bool:
 
 
 def odd_formula(book: Book) -> Iterator[Finding]:
-    """P02: a formula that differs from neighbours which are all alike."""
+    """P02: a formula, or two filled alike, that differ from neighbours which are all alike."""
+    remarks: dict[Severity, list[Remark]] = {Severity.WARNING: [], Severity.NOTE: []}
     for node in book.model.nodes:
         if node.index not in book.related or node.cell.kind != "plain":
             continue
-        likes = [like for step in (_DOWN, _ACROSS) if (like := _neighbours(book, node, step)) is not None]
-        if not likes or _agrees_with_any(book, node):
+        found = [odd for step in (_DOWN, _ACROSS) if (odd := _neighbours(book, node, step)) is not None]
+        if not found or _agrees_with_any(book, node, {twin.index for _, twin in found if twin}):
             continue
-        like = likes[0]
+        like = found[0][0]
         if not node.calls and _sums(node, _place(like)):
             continue
         other_function = node.calls and sorted(like.calls) != sorted(node.calls)
         if other_function and _another_kind(book, node):
             continue
-        yield Finding(
-            "P02",
-            Severity.NOTE if other_function else Severity.WARNING,
-            book.sheet(node.sheet),
-            node.a1,
-            f"={node.cell.text} differs from its neighbours",
-            f"{like.a1} and the cells in line with it hold ={like.cell.text}, which reads other cells "
-            "or other constants from there.",
-            book.signatures[node.index],
+        remarks[Severity.NOTE if other_function else Severity.WARNING].append(
+            Remark(
+                sheet=book.sheet(node.sheet),
+                row=node.cell.row,
+                col=node.cell.col,
+                kind=book.signatures[node.index],
+                what=f"={node.cell.text} differs from its neighbours",
+                why=f"{like.a1} and the cells in line with it hold ={like.cell.text}, which reads other "
+                "cells or other constants from there.",
+                basis=book.signatures[node.index],
+            )
         )
+    for severity, some in remarks.items():
+        yield from joined("P02", severity, some)
 
 
-def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
-    """A neighbour that stands for a run which the formula interrupts or ends; None without such a run."""
+def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> tuple[Node, Node | None] | None:
+    """A neighbour that stands for a run which the formula interrupts or ends; None without such a run.
+
+    With it a second formula that was filled from this one, where the two interrupt the run together.
+    """
     own = book.signatures[node.index]
     back = (-step[0], -step[1])
-    one, two = _next(book, node, back), _next(book, node, step)
-    for near, far in ((one, two), (two, one)):
+    for way, other_way in ((back, step), (step, back)):
+        near, far = _next(book, node, way), _next(book, node, other_way)
         if near is None or book.signatures[near.index] == own:
             continue
         form = book.signatures[near.index]
         if far is not None and book.signatures[far.index] == form:
-            return near
-        if _one_kind(book, node, near) and not _reads(near, _place(node)):
-            way = back if near is one else step
-            run, at = 1, near
-            while run < _LONG:
-                following = _next(book, at, way)
-                if following is None or book.signatures[following.index] != form:
-                    break
-                run, at = run + 1, following
-            if run >= _LONG:
-                return near
+            return near, None
+        if not _one_kind(book, node, near) or _reads(near, _place(node)):
+            continue
+        if far is not None and book.signatures[far.index] == own:
+            beyond = _next(book, far, other_way)
+            if beyond is not None and book.signatures[beyond.index] == form:
+                return near, far
+        elif (node.calls or not _reads_line(node, step)) and _run_of(book, near, way):
+            return near, None
     return None
 
 
+def _run_of(book: Book, node: Node, way: tuple[int, int]) -> bool:
+    """Whether a long run of formulas of one form begins with a formula."""
+    at: Node | None = node
+    for _ in range(_LONG - 1):
+        at = _next(book, at, way) if at is not None else None
+        if at is None or book.signatures[at.index] != book.signatures[node.index]:
+            return False
+    return True
+
+
+def _reads_line(node: Node, step: tuple[int, int]) -> bool:
+    """Whether a formula reads the line it stands in, as totals do."""
+    row, col = node.cell.row, node.cell.col
+    here = [ref for ref in node.references if ref.sheet == node.sheet]
+    if step == _DOWN:
+        return any(ref.c1 <= col <= ref.c2 for ref in here)
+    return any(ref.r1 <= row <= ref.r2 for ref in here)
+
+
 def _one_kind(book: Book, node: Node, near: Node) -> bool:
-    """Whether two formulas call the same functions, or are the same but for constants."""
+    """Whether two formulas call the same functions, or are the same but for cells and constants."""
     if node.calls or near.calls:
         return sorted(near.calls) == sorted(node.calls)
-    one, other = (_CONSTANT.sub("0", book.signatures[n.index]) for n in (node, near))
-    return one == other
+    one, other = (_CONSTANT.sub("0", _CELL.sub("a", book.signatures[n.index])) for n in (node, near))
+    return one == other != "a"  # links from elsewhere are of no kind
 
 
 def _another_kind(book: Book, node: Node) -> bool:
@@ -281,11 +312,11 @@ def _next(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
     return found if found is not None and found.cell.kind == "plain" else None
 
 
-def _agrees_with_any(book: Book, node: Node) -> bool:
+def _agrees_with_any(book: Book, node: Node, but: set[int]) -> bool:
     own = book.signatures[node.index]
     for step in ((1, 0), (-1, 0), (0, 1), (0, -1)):
         other = _next(book, node, step)
-        if other is not None and book.signatures[other.index] == own:
+        if other is not None and other.index not in but and book.signatures[other.index] == own:
             return True
     return False
 

@@ -6,6 +6,8 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
+from thrustbook.engine.runcases import KINDS
+
 from .. import dispatch, elements, tabular
 from ..catalogue.types import Row
 from ..cells import Cell, CellError, Refused
@@ -180,8 +182,8 @@ def load_cases(book: Book) -> Iterator[Finding]:
     for key, found in kinds.items():
         call = first[key]
         lacking = [kind for kind in WANTED_CASES if kind not in found]
-        if not lacking:
-            continue
+        if not lacking or not found <= set(KINDS):
+            continue  # a kind that is none is an error of the call
         words = " and no ".join(_CASE_WORDS[kind] for kind in lacking)
         yield Finding(
             "C01",

@@ -65,6 +65,7 @@ class Input:
     value: float
     """SI."""
     shown: Scalar
+    unit: str
     place: Place
     literal: bool
     call: int

@@ -126,6 +126,24 @@ def test_accepting(tmp_path: Path, fast: Path, capsys: pytest.CaptureFixture[str
     assert "no longer found" in capsys.readouterr().out
 
 
+def test_a_number_over_a_formula_is_accepted_for_its_inputs_alone(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    listed, path = tmp_path / "accepted.toml", tmp_path / "book.xlsx"
+    for flow, expected in ((100.0, 0), (100.0, 0), (120.0, 3)):
+        book = clean_book()
+        book["Bends"]["D8"], book["Bends"]["G8"] = flow, 25.0
+        stored(book, path)
+        if not listed.exists():
+            main(["check", str(path), "--write-accept", str(listed)])
+            text = listed.read_text(encoding="utf-8")
+            for key, value in (("reason", "as built"), ("initials", "AB"), ("date", "2026-01-31")):
+                text = text.replace(f'{key} = ""', f'{key} = "{value}"')
+            listed.write_text(text, encoding="utf-8-sig")  # as some editors save it
+        assert main(["check", str(path), "--accept", str(listed)]) == expected
+    assert "no longer found" in capsys.readouterr().out
+
+
 def test_a_new_list_keeps_what_was_signed(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     path = _fast(tmp_path / "fast.xlsx", 700.0)
     one, two = tmp_path / "one.toml", tmp_path / "two.toml"
@@ -154,6 +172,7 @@ def test_a_new_list_keeps_what_was_signed(tmp_path: Path, capsys: pytest.Capture
         ("[[accepted]]\ncode = 1\nsheet = ''\ncell = ''\nfingerprint = ''\n", "must be text"),
         ("[[accepted]]\ncolour = 'red'\n", '"colour" is not known'),
         ("other = 1\n", "nothing but"),
+        ("[accepted]\ncode = 'V01'\n", "two pairs of brackets"),
     ],
 )
 def test_a_bad_list_is_refused(

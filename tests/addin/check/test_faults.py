@@ -169,6 +169,23 @@ FAULTS = {
     "odd formula": Fault(
         _put("Bends", G8='=TB_BEND("Fx",Units,rho,B8,C8,$D$5,E8)'), "P02", ("Bends!G8",), "$D$5", W
     ),
+    "two numbers over the last formulas": Fault(
+        _put("Bends", G9=5.0, G10=5.5), "P01", ("Bends!G9:G10",), "2 cells"
+    ),
+    "two odd formulas filled alike": Fault(
+        _put("Bends", **{f"G{r}": f'=TB_BEND("Fx",Units,rho,B{r},C{r},$D$5,E{r})' for r in (7, 8)}),
+        "P02",
+        ("Bends!G7:G8",),
+        "$D$5",
+        W,
+    ),
+    "odd last formula that computes on": Fault(
+        _put("Bends", **{f"J{r}": f"=I{r}/$B$5" for r in range(FIRST, LAST)}, J10="=I9/$B$5"),
+        "P02",
+        ("Bends!J10",),
+        "=I9",
+        W,
+    ),
     "odd constant": Fault(_put("Bends", I7="=1.4*G7"), "P02", ("Bends!I7",), "1.4", W),
     "odd last formula": Fault(
         _put("Bends", **{f"F{LAST}": f"=TB_VELOCITY(Units,D{LAST},B{LAST - 1})"}),
@@ -178,6 +195,9 @@ FAULTS = {
         W,
     ),
     "two sets of units": Fault(_uneven_units, "U01", ("Bends!B16",), "diameter in in", W),
+    "another set of units in one cell": Fault(
+        _put("Bends", B14='=TB_CLOSED("F","SI",B5,Inputs!B3)'), "U02", ("Bends!B14",), "pressure in Pa"
+    ),
     "unit above an argument": Fault(_put("Bends", D4="Q [gpm]"), "U02", ("Bends!D4",), '"gpm"'),
     "unit above a result": Fault(_put("Bends", G4="Fx [N]"), "U02", ("Bends!G4",), '"N"'),
     "unit beside a result": Fault(_put("Bends", C14="N"), "U02", ("Bends!C14",), '"N"'),
@@ -252,6 +272,7 @@ FAULTS = {
         "below",
         W,
     ),
+    "a kind of case that is none": Fault(_put("Run", B15="tets"), "V03", ("Run!O8:O11",), "'tets'"),
     "no surge case": Fault(_no_surge, "C01", ("Run!O8",), "no surge among", W),
     "no load case": Fault(_no_cases, "C01", ("Run!I8",), "no load cases", W),
 }
