@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from functools import cached_property
 
 from ..cells import Scalar
@@ -134,16 +134,22 @@ class Book:
         else:
             for col in range(area.c1, area.c2 + 1):
                 yield from _between(self._by_column.get((area.sheet, col), ([], [])), area)
-        for node in self._wide:
-            r1, c1, r2, c2 = node.extent()
-            meets = r1 <= area.r2 and area.r1 <= r2 and c1 <= area.c2 and area.c1 <= c2
-            if node.sheet == area.sheet and meets:
-                yield node
+        yield from self._filling(area)
+
+    def _filling(self, area: Reference) -> list[Node]:
+        """The formulas of several cells that reach into an area."""
+        by_row = self._wide_by_row
+        if area.r2 - area.r1 < len(by_row):
+            rows: Iterable[int] = range(area.r1, area.r2 + 1)
+        else:
+            rows = (row for sheet, row in by_row if sheet == area.sheet and area.r1 <= row <= area.r2)
+        found = {node.index: node for row in rows for node in by_row.get((area.sheet, row), ())}
+        return [n for n in found.values() if n.extent()[1] <= area.c2 and area.c1 <= n.extent()[3]]
 
     def in_area(self, place: Place) -> bool:
         """Whether a cell is filled by an array formula."""
         sheet, row, col = place
-        return any(n.sheet == sheet and _holds(n.extent(), row, col) for n in self._wide)
+        return bool(self._filling(Reference(sheet, row, col, row, col)))
 
     def relative_references(self, node: Node) -> Iterator[tuple[Reference, bool, bool]]:
         """The single cells that a formula refers to; whether each moves when filled down, or across."""
@@ -161,8 +167,15 @@ class Book:
                     yield ref, *((True, False) if of_own_row(node, ref) else moves)
 
     @cached_property
-    def _wide(self) -> list[Node]:
-        return [n for n in self.model.nodes if n.cell.kind in ("array", "dynamic")]
+    def _wide_by_row(self) -> dict[tuple[int, int], list[Node]]:
+        """(sheet, row) -> the formulas of several cells that fill a part of it."""
+        out: dict[tuple[int, int], list[Node]] = {}
+        for node in self.model.nodes:
+            r1, c1, r2, c2 = node.extent()
+            if node.cell.kind in ("array", "dynamic") and (r1, c1) != (r2, c2):
+                for row in range(r1, r2 + 1):
+                    out.setdefault((node.sheet, row), []).append(node)
+        return out
 
     @cached_property
     def around(self) -> Surroundings:
@@ -204,11 +217,6 @@ class Book:
         from .unclosed import unclosed
 
         return unclosed(self)
-
-
-def _holds(extent: tuple[int, int, int, int], row: int, col: int) -> bool:
-    r1, c1, r2, c2 = extent
-    return r1 <= row <= r2 and c1 <= col <= c2
 
 
 def _between(column: tuple[list[int], list[Node]], area: Reference) -> list[Node]:

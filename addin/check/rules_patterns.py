@@ -38,10 +38,12 @@ def overtyped(book: Book) -> Iterator[Finding]:
             if len(run) > 1:
                 in_line[_line(book, run[0], step)] += len(run)
         for run in runs:
-            if run[0].index in book.affected and not run[0].area:
+            if run[0].index in book.affected and not (run[0].area and run[0].cell.kind == "plain"):
                 long = in_line[_line(book, run[0], step)] >= _LONG
                 for place in _numbers_after(book, run, step, long):
                     found.setdefault(place, run[-1])
+    for place, like in _subtotals(book):
+        found.setdefault(place, like)
     remarks = []
     for (sheet, row, col), like in found.items():
         value = book.value((sheet, row, col))
@@ -69,7 +71,7 @@ def _runs(book: Book, step: tuple[int, int]) -> Iterator[list[Node]]:
         else (lambda n: (n.sheet, n.cell.row, n.cell.col))
     )
     run: list[Node] = []
-    for node in sorted((n for n in book.model.nodes if n.cell.kind == "plain"), key=order):
+    for node in sorted((n for n in book.model.nodes if _in_line(n, step)), key=order):
         if run:
             last = run[-1]
             next_to = (node.sheet, node.cell.row, node.cell.col) == (
@@ -84,6 +86,13 @@ def _runs(book: Book, step: tuple[int, int]) -> Iterator[list[Node]]:
         run = [node]
     if run:
         yield run
+
+
+def _in_line(node: Node, step: tuple[int, int]) -> bool:
+    """Whether a formula fills one cell, or one line across the way that formulas are filled."""
+    r1, c1, r2, c2 = node.extent()
+    thin = r1 == r2 if step[0] else c1 == c2
+    return node.cell.kind == "plain" or (node.cell.kind in ("array", "dynamic") and thin)
 
 
 def _line(book: Book, node: Node, step: tuple[int, int]) -> tuple[int, int, str]:
@@ -135,6 +144,24 @@ def _goes_on_beside(book: Book, near: Node, place: Place, step: tuple[int, int])
         if None not in forms and len(forms) == 1 and nodes[0] is not None and nodes[0].index in book.affected:
             return True
     return False
+
+
+def _subtotals(book: Book) -> Iterator[tuple[Place, Node]]:
+    """Numbers below results that a total adds to sums of such results, each with one of those sums."""
+    for node in book.model.nodes:
+        singles = [ref for ref in node.references if (ref.r1, ref.c1) == (ref.r2, ref.c2)]
+        if node.index not in book.affected or node.calls or len(singles) < 3:
+            continue
+        places = [(ref.sheet, ref.r1, ref.c1) for ref in singles if ref.c1 == node.cell.col]
+        sums = [other for p in places if (other := book.model.at.get(p)) and _sums(other, _above(p))]
+        for place in places if len(sums) > 1 else ():
+            above = book.model.at.get(_above(place))
+            if above is not None and above.calls and _typed_number(book, place):
+                yield place, sums[0]
+
+
+def _above(place: Place) -> Place:
+    return place[0], place[1] - 1, place[2]
 
 
 def _reads(node: Node, place: Place) -> bool:
@@ -212,7 +239,7 @@ def odd_formula(book: Book) -> Iterator[Finding]:
     """P02: a formula, or two filled alike, that differ from neighbours which are all alike."""
     remarks: dict[Severity, list[Remark]] = {Severity.WARNING: [], Severity.NOTE: []}
     for node in book.model.nodes:
-        if node.index not in book.related or node.cell.kind != "plain":
+        if node.index not in book.related:
             continue
         found = [odd for step in (_DOWN, _ACROSS) if (odd := _neighbours(book, node, step)) is not None]
         if not found or _agrees_with_any(book, node, {twin.index for _, twin in found if twin}):
@@ -244,6 +271,8 @@ def _neighbours(book: Book, node: Node, step: tuple[int, int]) -> tuple[Node, No
 
     With it a second formula that was filled from this one, where the two interrupt the run together.
     """
+    if not _in_line(node, step):
+        return None
     own = book.signatures[node.index]
     back = (-step[0], -step[1])
     for way, other_way in ((back, step), (step, back)):
@@ -309,7 +338,7 @@ def _another_kind(book: Book, node: Node) -> bool:
 def _next(book: Book, node: Node, step: tuple[int, int]) -> Node | None:
     place = _moved(_place(node), step)
     found = book.model.at.get(place) if place is not None else None
-    return found if found is not None and found.cell.kind == "plain" else None
+    return found if found is not None and _in_line(found, step) else None
 
 
 def _agrees_with_any(book: Book, node: Node, but: set[int]) -> bool:

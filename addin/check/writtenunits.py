@@ -9,8 +9,9 @@ from typing import TYPE_CHECKING
 
 from ..catalogue.types import Column
 from ..cells import Cell, Refused, Scalar
+from ..hosts.headless.dependency import Reference
 from ..tables import find_column, heading, is_blank
-from ..units import Unit, UnitError, unit
+from ..units import ROLES, Unit, UnitError, unit
 from .calls import Call, Given
 from .labels import Written
 
@@ -67,6 +68,8 @@ def _equal(one: Unit, other: Unit) -> bool:
 
 def _quantities(book: Book, call: Call) -> Iterator[tuple[Place, str, Unit]]:
     """Cells that a call reads or fills as plain numbers: place, role, and the unit it counts them in."""
+    if call.row.name == "TB_CONVERT":
+        yield from _converted(book, call)
     units = call.units
     if units is None:
         return
@@ -86,6 +89,27 @@ def _quantities(book: Book, call: Call) -> Iterator[tuple[Place, str, Unit]]:
                     yield place, arg.role, units.unit(arg.role)
     if call.shown:
         yield from _given_back(call)
+
+
+def _converted(book: Book, call: Call) -> Iterator[tuple[Place, str, Unit]]:
+    """What a conversion reads and gives; the first kind of quantity that both its units measure."""
+    texts = [text for text in call.values[1:3] if isinstance(text, str)]
+    for role in ROLES:
+        try:
+            units = [unit(text, role) for text in texts]
+        except UnitError:
+            continue
+        area = call.given[0].area
+        if len(units) == 2 and area is not None and isinstance(book.value(_first(area)), float):
+            yield _first(area), role, units[0]
+        node = call.node
+        if len(units) == 2 and call.shown:
+            yield (node.sheet, node.cell.row, node.cell.col), role, units[1]
+        return
+
+
+def _first(area: Reference) -> Place:
+    return area.sheet, area.r1, area.c1
 
 
 def _tops(given: Given) -> list[Place]:

@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 from openpyxl import Workbook
+from openpyxl.worksheet.formula import ArrayFormula
 from openpyxl.worksheet.worksheet import Worksheet
 
 from .books import findings, stored
@@ -164,6 +165,81 @@ def test_subtotals_of_groups_below_a_column_leave_nothing_out(tmp_path: Path) ->
     ws["A12"], ws["B12"] = "last four", "=SUM(B6:B9)"
     ws["A13"], ws["B13"] = "all", "=B11+B12"
     assert _found(book, tmp_path) == []
+
+
+def _rows_of_arrays() -> Workbook:
+    """A table whose formulas are array formulas, one or two cells wide, filled down."""
+    book = _empty()
+    heads = ("name", "D [mm]", "p [kPa]", "Q [L/s]", "angle [deg]", "Fx [kN]", "Fy [kN]", "V [m/s]")
+    ws = _sheet(book, "Rows", [heads])
+    for r in range(2, 9):
+        for col, value in enumerate((f"N{r}", 300.0, 400.0 + r, 80.0 + r, 15.0 * r - 10), 1):
+            ws.cell(r, col, value)
+        ws[f"F{r}"] = ArrayFormula(f"F{r}:G{r}", f'=TB_BEND("Fx,Fy","metric",998,B{r},C{r},D{r},E{r})')
+        ws[f"H{r}"] = ArrayFormula(f"H{r}", f'=TB_VELOCITY("metric",D{r},B{r})')
+    return book
+
+
+@pytest.mark.parametrize(
+    ("cells", "expected"),
+    [
+        ({}, []),
+        ({"H5": 1.2}, [("P01", "Rows!H5")]),
+        ({"H8": 1.2}, [("P01", "Rows!H8")]),
+        ({"F5": 1.2, "G5": 3.0}, [("P01", "Rows!F5")]),
+        ({"H5": ArrayFormula("H5", '=TB_VELOCITY("metric",D4,B5)')}, [("P02", "Rows!H5")]),
+        (
+            {"F8": ArrayFormula("F8:G8", '=TB_BEND("Fy,Fx","metric",998,B8,C8,D8,E8)')},
+            [("P02", "Rows!F8")],
+        ),
+    ],
+    ids=str,
+)
+def test_array_formulas_filled_down(
+    tmp_path: Path, cells: dict[str, object], expected: list[tuple[str, str]]
+) -> None:
+    book = _rows_of_arrays()
+    for place, value in cells.items():
+        book["Rows"][place] = value
+    assert _found(book, tmp_path) == expected
+
+
+@pytest.mark.parametrize("typed", [None, "D5", "D13"], ids=str)
+def test_a_number_over_a_subtotal_is_found(tmp_path: Path, typed: str | None) -> None:
+    book = _empty()
+    ws = _sheet(book, "Caps", [("node", "D", "p", "F [kN]")])
+    for r in range(2, 14):
+        if r in (5, 9, 13):
+            ws[f"D{r}"] = f"=SUM(D{r - 3}:D{r - 1})"
+        else:
+            ws[f"B{r}"], ws[f"C{r}"] = 300.0, 400.0 + r
+            ws[f"D{r}"] = f'=TB_CLOSED("F","metric",B{r},C{r})'
+    ws["D14"] = "=D5+D9+D13"
+    if typed:
+        ws[typed] = 90.0
+    assert _found(book, tmp_path) == ([("P01", f"Caps!{typed}")] if typed else [])
+
+
+@pytest.mark.parametrize(
+    ("cells", "expected"),
+    [
+        ({}, []),
+        ({"B1": "D [ft]"}, [("U02", "Dual!B1")]),
+        ({"C1": "F [kip]"}, [("U02", "Dual!C1")]),
+    ],
+    ids=str,
+)
+def test_headings_of_conversions(
+    tmp_path: Path, cells: dict[str, str], expected: list[tuple[str, str]]
+) -> None:
+    book = _empty()
+    ws = _sheet(book, "Dual", [("D [mm]", "D [in]", "F [lbf]", "F [kN]")])
+    for r in range(2, 7):
+        ws[f"A{r}"], ws[f"B{r}"] = 100.0 * r, f'=TB_CONVERT(A{r},"mm","in")'
+        ws[f"C{r}"], ws[f"D{r}"] = f'=TB_CONVERT(D{r},"kN","lbf")', f'=TB_CLOSED("F","metric",A{r},400)'
+    for place, value in cells.items():
+        ws[place] = value
+    assert _found(book, tmp_path) == expected
 
 
 @pytest.mark.parametrize(("pressure", "expected"), [(None, []), (-900.0, [("V06", "Cap!B3")])], ids=str)
