@@ -31,7 +31,7 @@ from .schedule import ScheduleOutcome, plan_schedule, schedule_outcome
 from .source import Source, TbCell, plain
 from .staged import Staged
 from .summary import Entry, Summary
-from .tablecalls import TableCalls
+from .tablecalls import NOTED, TableCalls
 from .tableread import OfRole
 from .tools import convert_outcome
 from .unitsheet import UnitSheet
@@ -128,6 +128,8 @@ class Book:
         if not isinstance(row.longhand, Longhand):
             key = self._key(row, units, arguments)
             of_role = partial(self.units.conversion, units)
+            if "note" in results and row.name in NOTED and cell.items != [call]:
+                raise NotWorked(f"{row.name} gives notes inside another formula")
             if isinstance(row.routine, Schedule):
                 return self._schedule(row, key, arguments, of_role, results, guard, cell)
             return self.tables.outcome(row, key, arguments, of_role, results, guard, cell)

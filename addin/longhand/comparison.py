@@ -40,7 +40,7 @@ class Comparison:
         outcome = only.outcome
         assert outcome is not None
         entry.formula_of = partial(_repeated, outcome)
-        entry.words = isinstance(outcome, WordsOutcome) and outcome.formula is None
+        entry.words = _gives_words(outcome)
         for i, j in _filled(cell):
             self._result(outcome, cell, entry, i, j)
 
@@ -155,6 +155,15 @@ class Comparison:
         entry.rows = outcome
         entry.shown.add(result)
         return True
+
+
+def _gives_words(outcome: Outcome) -> bool:
+    """Whether a call gives texts that are not worked."""
+    if isinstance(outcome, WordsOutcome):
+        return outcome.formula is None
+    if isinstance(outcome, ScheduleOutcome):
+        return "note" in outcome.results
+    return isinstance(outcome, TableOutcome) and bool(outcome.constants)
 
 
 def _ref(cell: TbCell, i: int, j: int) -> str:

@@ -37,7 +37,7 @@ class Entry:
     refused: bool = False
     """Whether that is what the function itself has against its arguments."""
     words: bool = False
-    """Whether it is one call that gives texts, which stand as constants."""
+    """Whether it is one call that gives texts which stand as constants: headings, notes."""
     checks: list[tuple[Block, Check]] = field(default_factory=list)
     rows: RowsOutcome | None = None
     table: TableOutcome | ScheduleOutcome | None = None

@@ -21,6 +21,9 @@ from .tableread import OfRole, ReadTable
 _STACKED = ("TB_BALANCE", "TB_BRANCHFLOW")
 """Functions whose tables are short: all on one sheet."""
 
+NOTED = ("TB_RUNCASES", "TB_SCHEDULE")
+"""Functions whose notes are not worked: they stand as the cells of the call hold them."""
+
 MOST_SHEETS = 16
 """Tables that get sheets of their own, with headings on every page; beyond, they are stacked."""
 

@@ -10,6 +10,7 @@ import pytest
 from openpyxl.worksheet.formula import ArrayFormula
 
 from thrustbook.addin.cells import CellError, Scalar
+from thrustbook.addin.longhand.detach import Detached
 from thrustbook.addin.longhand.make import Made
 from thrustbook.addin.xlsx.a1 import to_a1
 from thrustbook.addin.xlsx.package import Package
@@ -163,3 +164,25 @@ def test_the_same_call_in_two_cells_agrees_in_both(tmp_path: Path) -> None:
     assert not found["differs"]
     wrong = changed(path, {"Cover": {"B41": 1e-6}}, tmp_path / "wrong.xlsx")
     assert [e.cell.where for e in Made(Package.read(wrong)).verdicts()["differs"]] == ["Cover!B41"]
+
+
+@pytest.mark.parametrize(
+    "formula",
+    [
+        f'"Note: "&TB_SCHEDULE("note",{SCHEDULE})',
+        f'INDEX(TB_SCHEDULE("name,note",{SCHEDULE}),1,2)',
+        f'TB_CONVERT(TB_SCHEDULE("note",{SCHEDULE}),"m","mm")',
+    ],
+)
+def test_notes_inside_a_formula_are_not_taken_from_its_cells(
+    book: Path, formula: str, tmp_path: Path
+) -> None:
+    path = tmp_path / "notes.xlsx"
+    other = openpyxl.load_workbook(book)
+    other[SHEET]["A9"] = f"={formula}"
+    other.save(path)
+    made = Detached(Package.read(evaluated(path)))
+    found = made.made.verdicts()
+    assert [(e.cell.a1, "note" in e.trouble) for e in found["not worked"]] == [("A9", True)]
+    first = to_a1(*_place(13))  # the call alone, whose notes stand as constants
+    assert [f.reason for f in made.frozen if f.where == f"{SHEET}!{first}"] == ["it is a text"]
