@@ -17,8 +17,10 @@ from ..hosts.headless.settle import Settlement
 from ..progress import Progress, ticker
 from ..xlsx.a1 import to_a1
 from ..xlsx.package import Package
+from ..xlsx.refusals import Refusal
 from ..xlsx.sheetxml import stored_values
 from .calls import Call, read_calls
+from .circles import WORDS, circles, in_circles
 from .labels import Surroundings
 from .relative import moving, of_own_row, relative_form
 
@@ -40,13 +42,27 @@ class Book:
         """What a reader of the report should know of the check itself."""
         recorder = Recorder(Functions.of_catalogue())
         self.model = Model(package, recorder.functions, progress)
-        tick = ticker(progress, "evaluate", sum(len(node.calls) for node in self.model.nodes))
-        self.settlement = Settlement(self.model, Host(recorder.functions, tick))
+        self.settlement = self._settled(recorder)
         self.probe = Probe(self.settlement, recorder)
-        self.settlement.settle()
         self.affected = self.settlement.affected()
         computed = [n.index for n in self.model.nodes if n.index not in self.settlement.kept]
         self.results = Results(self.settlement, computed)
+
+    def _settled(self, recorder: Recorder) -> Settlement:
+        """The workbook evaluated; without its circles, where they make the evaluator give up on it all."""
+        tick = ticker(self.progress, "evaluate", sum(len(node.calls) for node in self.model.nodes))
+        settlement = Settlement(self.model, Host(recorder.functions, tick))
+        try:
+            settlement.settle()
+        except Refusal:
+            spoilt = in_circles(self)
+            if not spoilt:
+                raise
+            for node in spoilt:
+                node.reason = WORDS
+            settlement = Settlement(self.model, Host(recorder.functions, tick))
+            settlement.settle()
+        return settlement
 
     def tell(self, stage: str, done: int, total: int) -> None:
         """Show how far the work is."""
@@ -207,8 +223,6 @@ class Book:
     @cached_property
     def circular(self) -> tuple[list[list[Node]], set[int]]:
         """The circles of formulas that refer to themselves, and all formulas spoilt by them."""
-        from .circles import circles
-
         return circles(self)
 
     @cached_property

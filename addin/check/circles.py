@@ -10,36 +10,48 @@ from ..hosts.headless.model import Node
 if TYPE_CHECKING:
     from .book import Book
 
-_WORDS = "circular reference"
+WORDS = "circular reference"
 
 
 def circles(book: Book) -> tuple[list[list[Node]], set[int]]:
     """Each circle in the order in which it is walked, and the formulas that it spoils."""
-    suspects = [node for node in book.model.nodes if _suspect(book, node)]
+    suspects = {node.index for node in book.model.nodes if _suspect(book, node)}
     if not suspects:
         return [], set()
-    among = {node.index for node in suspects}
-    reads = {
-        node.index: sorted(
-            {other.index for ref in node.references for other in book.formulas_in(ref)} & among
-        )
-        for node in suspects
+    # Not every formula of a circle need be an error: some stop at a value that they had.
+    reads = _reads(book)
+    closed = [component for component in _closed(reads) if not suspects.isdisjoint(component)]
+    found = [[book.model.nodes[i] for i in _walk(component, reads)] for component in closed]
+    own = {node.index for circle in found for node in circle}
+    return found, book.model.graph().dependents(own) if own else set()
+
+
+def in_circles(book: Book) -> list[Node]:
+    """The formulas that refer to themselves, by their references alone: no result is needed."""
+    closed = _closed(_reads(book))
+    return [book.model.nodes[i] for component in closed for i in component]
+
+
+def _reads(book: Book) -> dict[int, list[int]]:
+    """Formula -> the formulas that it reads."""
+    return {
+        node.index: sorted({other.index for ref in node.references for other in book.formulas_in(ref)})
+        for node in book.model.nodes
     }
-    found = []
-    for component in _components(reads):
-        if len(component) > 1 or component[0] in reads[component[0]]:
-            found.append([book.model.nodes[i] for i in _walk(component, reads)])
-    in_circles = {node.index for circle in found for node in circle}
-    return found, book.model.graph().dependents(in_circles) if in_circles else set()
+
+
+def _closed(reads: dict[int, list[int]]) -> list[list[int]]:
+    """The components that are circles."""
+    return [part for part in _components(reads) if len(part) > 1 or part[0] in reads[part[0]]]
 
 
 def _suspect(book: Book, node: Node) -> bool:
     settlement = book.settlement
-    if _WORDS in settlement.kept.get(node.index, ""):
+    if WORDS in settlement.kept.get(node.index, ""):
         return True
     failed = settlement.failed.get(node.index)
     if failed is not None:
-        return _WORDS in failed.message
+        return WORDS in failed.message
     return error_word(settlement.run.raw(node)) == "Circ"
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from bisect import bisect_left
+from functools import lru_cache
 from typing import TYPE_CHECKING, NamedTuple
 
 from ..units import Unit, UnitError, unit
@@ -106,6 +107,7 @@ def _without_unit(text: str) -> str:
     return text[: inside.start()].strip() if inside and _known(inside[1]) else text
 
 
+@lru_cache(maxsize=4096)
 def _bare(text: str, role: str) -> Unit | None:
     """A text that is nothing but a unit of the role."""
     if not text or text[0].isdigit() or text == "-":
@@ -117,6 +119,7 @@ def _bare(text: str, role: str) -> Unit | None:
         return None
 
 
+@lru_cache(maxsize=4096)
 def _known(text: str) -> bool:
     """Whether a text is a unit of any kind."""
     from ..units import convert

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Sequence, Set
+from itertools import pairwise
 from typing import NamedTuple
 
 from ..hosts.headless.dependency import Reference
 from ..xlsx.a1 import MAX_COLUMN, column_letters
 from ..xlsx.sheetscan import attributes
-from .book import Book
+from .book import Book, Place
 from .gather import figures
 from .types import Finding, Rule, Severity
 
@@ -40,6 +41,19 @@ def circular(book: Book) -> Iterator[Finding]:
         )
 
 
+def _unused_headings(book: Book) -> Iterator[Place]:
+    """Headings of tables over columns without a value: to read them changes nothing."""
+    for call in book.calls:
+        pairs = pairwise(call.arguments)
+        for (arg, given, _), (_, table, value) in pairs:
+            if arg.role != "headings" or given.area is None or table.area is None:
+                continue
+            for j, column in enumerate(zip(*value, strict=True) if isinstance(value, list) else ()):
+                if all(cell in (None, "") for cell in column):
+                    for row in range(given.area.r1, given.area.r2 + 1):
+                        yield given.area.sheet, row, given.area.c1 + j
+
+
 class _Hidden(NamedTuple):
     area: Reference
     cell: str
@@ -49,6 +63,7 @@ class _Hidden(NamedTuple):
 def hidden(book: Book) -> Iterator[Finding]:
     """S02: a hidden sheet, row or column holds something that a TB_ cell reads, directly or not."""
     _, areas = book.feeding
+    unused = set(_unused_headings(book))
     by_sheet: dict[int, list[Reference]] = {}
     for area in areas:
         by_sheet.setdefault(area.sheet, []).append(area)
@@ -56,8 +71,9 @@ def hidden(book: Book) -> Iterator[Finding]:
         read = by_sheet.get(number)
         if not read:
             continue
+        idle = {(row, col) for of, row, col in unused if of == number}
         for place in _hidden_places(book, number, sheet.state):
-            held = _held(book, place.area, read)
+            held = _held(book, place.area, read, idle)
             if held:
                 what = ", ".join(name for name, _ in held[:3]) + (", ..." if len(held) > 3 else "")
                 yield Finding(
@@ -108,7 +124,9 @@ def _ranges(numbers: Sequence[int]) -> list[tuple[int, int]]:
     return out
 
 
-def _held(book: Book, place: Reference, read: Sequence[Reference]) -> list[tuple[str, object]]:
+def _held(
+    book: Book, place: Reference, read: Sequence[Reference], idle: Set[tuple[int, int]]
+) -> list[tuple[str, object]]:
     """The cells in a hidden place that hold something and are read."""
     cells = book.values[place.sheet]
     boxes = [
@@ -123,7 +141,9 @@ def _held(book: Book, place: Reference, read: Sequence[Reference]) -> list[tuple
         else:
             found.update(p for p in cells if r1 <= p[0] <= r2 and c1 <= p[1] <= c2)
     return [
-        (f"{column_letters(c)}{r}", cells[r, c]) for r, c in sorted(found) if cells[r, c] not in (None, "")
+        (f"{column_letters(c)}{r}", cells[r, c])
+        for r, c in sorted(found - idle)
+        if cells[r, c] not in (None, "")
     ]
 
 

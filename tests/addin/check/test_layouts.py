@@ -10,7 +10,9 @@ from openpyxl import Workbook
 from openpyxl.worksheet.formula import ArrayFormula
 from openpyxl.worksheet.worksheet import Worksheet
 
-from .books import findings, stored
+from thrustbook.addin.check.types import Severity
+
+from .books import clean_book, findings, stored
 
 Line = tuple[object, ...]
 
@@ -250,3 +252,27 @@ def test_an_error_covered_by_nothing_counts_where_the_inputs_are_there(
     formula = '=IFERROR(TB_BEND("F","metric",998,300,B2,80,B1),"")'
     _sheet(book, "Cap", [("angle", 400.0), ("p", -pressure if pressure else None), ("F", formula)])
     assert _found(book, tmp_path) == expected
+
+
+def test_a_circle_through_a_block_is_named(tmp_path: Path) -> None:
+    # The evaluator gives up on such a workbook, so it is saved without values.
+    book = clean_book()
+    book["Run"]["B4"], book["Inputs"]["E1"] = "=Inputs!E1/5", "=Run!K8"
+    book.save(tmp_path / "book.xlsx")
+    errors = [f for f in findings(tmp_path / "book.xlsx") if f.severity is Severity.ERROR]
+    assert [(f.code, f.place) for f in errors] == [("S01", "Inputs!E1")]
+    assert "Inputs!E1 -> Run!I8 -> Run!B4 -> Inputs!E1" in errors[0].what
+
+
+@pytest.mark.parametrize("value", [None, 0.5], ids=str)
+def test_a_hidden_column_that_a_block_does_not_use(tmp_path: Path, value: float | None) -> None:
+    book = clean_book()
+    ws = book["Run"]
+    ws["G7"], ws["G9"] = "K", value
+    for row in ws.iter_rows():
+        for cell in row:
+            if isinstance(cell.value, ArrayFormula):
+                cell.value.text = cell.value.text.replace("A7:F7,A8:F11", "A7:G7,A8:G11")
+    ws["B18"] = ws["B18"].value.replace("A7:F7,A8:F11", "A7:G7,A8:G11")
+    ws.column_dimensions["G"].hidden = True
+    assert _found(book, tmp_path) == ([] if value is None else [("S02", "Run!G:G")])
