@@ -80,8 +80,9 @@ class Argument:
         """The argument, or one element of it, as a formula on another sheet writes it."""
         i, j = self._inside(i, j)
         if self.form == "area" and self.area is not None:
-            if self.shape == (1, 1):
-                return self.source.operand(_only(self.items).text, self.sheet)
+            written_as = _only(self.items).text
+            if self.shape == SINGLE and ":" not in written_as:
+                return self.source.operand(written_as, self.sheet)
             return self.area.ref(i, j)
         if self.form == "call":
             return element_text(self._call, written, i, j)

@@ -17,6 +17,7 @@ from ..xlsx.package import Package
 from ..xlsx.sheetxml import set_formulas, store
 from .calls import NotWorked
 from .detachtext import constant
+from .grid import Formula
 from .make import Made
 from .summary import Entry
 
@@ -92,12 +93,10 @@ class Detached:
             replaced[sheets[name]] = set_formulas(xml, formulas, formulas.keys())
         workbook = self.package.workbook_part
         replaced[workbook] = _recalculating(replaced[workbook], workbook, self.package.path.name)
-        self._store_values(replaced, parts.added, sheets)
+        self._store_values(replaced, sheets)
         self.package.save(target, replaced, parts.added)
 
-    def _store_values(
-        self, replaced: dict[str, bytes], added: dict[str, bytes], sheets: dict[str, str]
-    ) -> None:
+    def _store_values(self, replaced: dict[str, bytes], sheets: dict[str, str]) -> None:
         """Give the changed cells the values of their new formulas."""
         extents = {
             name: (max(r for r, _ in places), max(c for _, c in places))
@@ -105,7 +104,13 @@ class Detached:
         }
         if not extents:
             return
-        values = evaluate_sheets(self.package.to_bytes(replaced, added), extents)
+        text_of = self.made.text_of
+        evaluated = dict(replaced)
+        for name, formulas in self._formulas.items():
+            texts = {place: text_of(Formula(text)) for place, text in formulas.items()}
+            evaluated[sheets[name]] = set_formulas(self.package.part(sheets[name]), texts, texts.keys())
+        added = self.made.addition.parts(None, text_of).added
+        values = evaluate_sheets(self.package.to_bytes(evaluated, added), extents)
         for name, places in self._formulas.items():
             before = self.made.book.source.values(name)
             new: dict[Place, Scalar] = {}

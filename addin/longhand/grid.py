@@ -15,6 +15,11 @@ class Formula(NamedTuple):
     ref: str = ""
 
 
+def as_written(formula: Formula) -> str:
+    """The text of a formula as it stands."""
+    return formula.text
+
+
 FILLED = Formula("")
 """A cell that the array formula in another one fills."""
 

@@ -7,15 +7,20 @@ import gc
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
-from ..hosts.headless.formulas import join, take_apart
+from ..hosts.headless.contexts import Operand, in_context
+from ..hosts.headless.formulas import Unreadable, join, take_apart
 from ..hosts.headless.names import Names
 from ..progress import Progress
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
 from .book import Book
+from .grid import Formula
 from .parts import Addition, Parts
 from .source import Source
 from .summary import Entry
+
+_SEVERAL = ":{["
+"""Signs without which a formula has neither ranges nor arrays, and nothing of other workbooks."""
 
 
 @contextlib.contextmanager
@@ -30,12 +35,22 @@ def collection_paused() -> Iterator[None]:
             gc.enable()
 
 
-def _kept_outside(package: Package) -> Callable[[str], str]:
-    """Formulas with the values that the file keeps of other workbooks; for evaluation only."""
+def _for_the_evaluator(package: Package) -> Callable[[Formula], str]:
+    """Formulas as the embedded evaluator gets them right; for evaluation only.
+
+    They are given the values that the file keeps of other workbooks, and a range or an array
+    where a single value is meant as a spreadsheet takes it.
+    """
     names = Names((), package.externals)
 
-    def text_of(text: str) -> str:
-        return join(names.written_out(take_apart(text), "", 1, 1)) if "[" in text else text
+    def text_of(formula: Formula) -> str:
+        text = formula.text
+        if not any(sign in text for sign in _SEVERAL):
+            return text
+        parts = names.written_out(take_apart(text), "", 1, 1)
+        with contextlib.suppress(Unreadable):
+            parts = in_context(parts, bool(formula.ref), lambda name: Operand.UNKNOWN)
+        return join(parts)
 
     return text_of
 
@@ -60,7 +75,9 @@ class Made:
         if progress is not None:
             progress("evaluate", 0, 1)
         still = {s.part: without_formulas(package.part(s.part)) for s in package.sheets}
-        parts = self.addition.parts(None, _kept_outside(package))
+        self.text_of = _for_the_evaluator(package)
+        """Formulas as the embedded evaluator gets them right."""
+        parts = self.addition.parts(None, self.text_of)
         extents = {s.name: (s.last_row, s.last_col) for s in self.book.sheets}
         with collection_paused():
             self.values = evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)

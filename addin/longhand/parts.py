@@ -10,7 +10,7 @@ from lxml import etree
 
 from ..xlsx.opc import MAIN, RELATION_ID, parse
 from ..xlsx.package import Package
-from .grid import Sheet, fixed, quoted_sheet
+from .grid import Formula, Sheet, as_written, fixed, quoted_sheet
 from .sheetpart import Values, sheet_xml
 from .styles import Formats, with_formats
 
@@ -51,7 +51,9 @@ class Addition:
         self._styles_part, self._formats, self._new_styles = self._styled()
         self._common = self._register()
 
-    def parts(self, values: Mapping[str, Values] | None, text_of: Callable[[str], str] = str) -> Parts:
+    def parts(
+        self, values: Mapping[str, Values] | None, text_of: Callable[[Formula], str] = as_written
+    ) -> Parts:
         """All parts; with ``values`` (by sheet) the formulas of the new sheets carry their results.
 
         ``text_of`` may write the formulas another way.

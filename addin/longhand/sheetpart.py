@@ -8,7 +8,7 @@ from typing import Any
 from ..xlsx.a1 import column_letters
 from ..xlsx.cellvalues import encode
 from ..xlsx.xmltext import escape
-from .grid import Formula, Sheet, local
+from .grid import Formula, Sheet, as_written, local
 
 _MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 Values = Mapping[int, list[Any]]
@@ -20,7 +20,7 @@ def sheet_xml(
     styles: Mapping[str, int],
     dxfs: Mapping[str, int],
     values: Values | None,
-    text_of: Callable[[str], str] = str,
+    text_of: Callable[[Formula], str] = as_written,
 ) -> bytes:
     """The part of a sheet; with ``values`` its formulas carry their results.
 
@@ -34,7 +34,7 @@ def _pieces(
     styles: Mapping[str, int],
     dxfs: Mapping[str, int],
     values: Values | None,
-    text_of: Callable[[str], str],
+    text_of: Callable[[Formula], str],
 ) -> Iterator[str]:
     yield '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>\n'
     yield f'<worksheet xmlns="{_MAIN}"><sheetPr><pageSetUpPr fitToPage="{int(sheet.fit_width)}"/></sheetPr>'
@@ -88,9 +88,9 @@ def _text(text: str) -> str:
     return f' t="inlineStr"><is><t{keep}>{escape(text)}</t></is></c>'
 
 
-def _formula(formula: Formula, value: Any, text_of: Callable[[str], str]) -> str:
+def _formula(formula: Formula, value: Any, text_of: Callable[[Formula], str]) -> str:
     array = f' t="array" ref="{formula.ref}"' if formula.ref else ""
-    text = f"<f{array}>{escape(text_of(formula.text))}</f>" if formula.text else ""
+    text = f"<f{array}>{escape(text_of(formula))}</f>" if formula.text else ""
     if value is None:
         return f">{text}</c>" if text else "/>"
     kind, shown = encode(value)

@@ -10,6 +10,7 @@ from typing import Any
 from formualizer import RangeAddress, Workbook
 
 from ...cells import Scalar
+from .each import register_each
 from .host import engine_value, scalar
 
 _FORMULA = re.compile(
@@ -30,6 +31,7 @@ def evaluate_sheets(
     The answer is, for each sheet, row -> values from column 1 on.
     """
     workbook = Workbook.from_bytes(book)
+    register_each(workbook)
     workbook.evaluate_all()
     found = {}
     for name, (rows, cols) in extents.items():

@@ -60,6 +60,10 @@ FORMULAS = (
     Odd(f'"d="&TB_BEND("units: Fx","SI",{BEND})'),
     Odd('TB_BRANCHFLOW("metric",B1:D3)*-1', (3, 1)),
     Odd('TB_SCHEDULE("Fx","SI",E1:K1,E2:K4)/1000', (3, 1)),
+    Odd('TB_AREA("SI",A1:A3)*ROW(A1:A3)', (3, 1)),
+    Odd('CHOOSE({1,2},B1:B3,TB_AREA("SI",A1:A3))', (3, 2)),
+    Odd('VLOOKUP(B2,IF({1,0},B1:B3,TB_AREA("SI",A1:A3)),2,FALSE)', (1, 1)),
+    Odd('TB_AREA("SI",A1)*SUMPRODUCT(ROUND(B1:B3/2,0),A1:A3)'),
     # Units and wanted results computed on the way
     Odd('TB_AREA("S"&"I",A1)'),
     Odd('TB_AREA(E5&"",A1:A3)', (3, 1)),
