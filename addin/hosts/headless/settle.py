@@ -7,7 +7,7 @@ from ...xlsx.a1 import MAX_COLUMN, MAX_ROW, to_a1
 from ...xlsx.refusals import Refusal
 from ...xlsx.sheetxml import stored_values
 from .areas import Area
-from .dependency import Reference
+from .dependency import Graph, Reference
 from .host import Host, error_word, scalar
 from .model import Model, Node
 from .run import Run, Stopped
@@ -42,8 +42,9 @@ class Settlement:
         for node in self.model.nodes:
             if node.reason:
                 self._set_aside(node, node.reason)
+        graph = self.model.graph()
         for area, node in self._live_areas():
-            if self._is_read(node):
+            if _is_read(graph, node):
                 area.expect()
         left = _PATIENCE + len(self.model.areas)
         while True:
@@ -188,19 +189,16 @@ class Settlement:
     def _lay_tiles(self) -> bool:
         """Have tiles in the next copy for the large results that other formulas read."""
         again = False
+        graph = self.model.graph()
         for area, node in self._live_areas():
             shape = area.grid.shape if area.grid is not None else (1, 1)
             if not area.large:
                 again = again or area.tiled is not None
                 area.tiled = None
-            elif area.tiled != shape and (area.tiled is not None or self._is_read(node)):
+            elif area.tiled != shape and (area.tiled is not None or _is_read(graph, node)):
                 area.tiled = (shape[0], shape[1])
                 again = True
         return again
-
-    def _is_read(self, node: Node) -> bool:
-        """Whether another formula refers to the cells that this one fills."""
-        return bool(self.model.graph().readers(Reference(node.sheet, *node.extent())) - {node.index})
 
     def _find_uncomputable(self) -> bool:
         found = False
@@ -216,6 +214,11 @@ class Settlement:
                 self.kept[node.index] = reason
                 found = True
         return found
+
+
+def _is_read(graph: Graph, node: Node) -> bool:
+    """Whether another formula refers to the cells that this one fills."""
+    return bool(graph.readers(Reference(node.sheet, *node.extent())) - {node.index})
 
 
 def _overlap(one: Reference, other: Reference) -> bool:
