@@ -176,7 +176,10 @@ class Book:
         guard: Guard | None,
         cell: TbCell,
     ) -> RowsOutcome:
-        elements = broadcast([a.shape for a in arguments])
+        try:
+            elements = broadcast([a.shape for a in arguments])
+        except NotWorked as reason:
+            raise Refuses(str(reason)) from None
         if not single and min(elements) > 1:
             raise NotWorked("several results take ranges of one row or one column")
         count = elements[0] * elements[1]

@@ -55,7 +55,8 @@ class Reader:
             argument = resolve(items, cell.sheet, self._source)
             beforehand = _beforehand(row, k)
             if argument.form == "expression" or (argument.form == "call" and beforehand):
-                key = cell.sheet, row.name, k, plain(items, self._source, cell.sheet, _identity)
+                text = plain(items, self._source, cell.sheet, _identity)
+                key = cell.sheet, row.name, k, text, _fills_one(cell)
                 found = self._known.get(key)
                 if found is None:
                     found = self._known[key] = self._settled(argument, cell, number, k, row, beforehand)
@@ -73,8 +74,11 @@ class Reader:
         if found is not None and plain_text and (found.number or role in _WORDS):
             return argument
         grid = self._values(cell, number, k)
+        if grid is not None and isinstance(grid[0][0], CellError) and grid[0][0].kind == "NAME":
+            grid = None  # a function that the evaluator does not know
         failed = grid is None or (len(grid) == 1 and isinstance(grid[0][0], CellError))
-        if failed and found is not None and not beforehand and (found.elementwise or _fills_one(cell)):
+        one = found is not None and (found.elementwise or (grid is not None and _fills_one(cell)))
+        if failed and one and not beforehand:
             return argument
         if grid is None or (failed and not isinstance(cell.cell.value, CellError)):
             raise NotWorked(f"{argument.shown()} must be known beforehand and cannot be evaluated here")

@@ -7,9 +7,10 @@ from collections.abc import Mapping, Sequence
 from functools import lru_cache
 from typing import Any
 
-from formualizer import RangeAddress, Workbook
+from formualizer import ExcelEvaluationError, RangeAddress, Workbook
 
 from ...cells import Scalar
+from ...xlsx.refusals import Refusal
 from .each import register_each
 from .host import engine_value, scalar
 
@@ -28,11 +29,15 @@ def evaluate_sheets(
 ) -> dict[str, dict[int, list[Scalar]]]:
     """Evaluate a workbook and give the values of some sheets, from A1 to (rows, columns).
 
-    The answer is, for each sheet, row -> values from column 1 on.
+    The answer is, for each sheet, row -> values from column 1 on. Raises :class:`Refusal` when
+    the evaluator gives up on the workbook.
     """
     workbook = Workbook.from_bytes(book)
     register_each(workbook)
-    workbook.evaluate_all()
+    try:
+        workbook.evaluate_all()
+    except ExcelEvaluationError as error:
+        raise Refusal(f"the workbook cannot be evaluated ({error})") from None
     found = {}
     for name, (rows, cols) in extents.items():
         grid = workbook[name].get_values(RangeAddress(name, 1, 1, rows, cols))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, Final
 
 from ...cells import Cell
 from ...progress import Progress
@@ -12,19 +12,23 @@ from .host import Functions, Host
 from .model import Model, Node
 from .settle import Settlement
 
+_GIVEN: Final = "THRUSTBOOK.GIVEN"
+"""Stands for a TB_ function whose arguments are asked for: the evaluator may compute others in passing."""
+
 
 class Recorder:
-    """Keeps the arguments of the last call that went through it."""
+    """Keeps the arguments of the call that is asked for."""
 
     def __init__(self, functions: Functions) -> None:
-        self.last: tuple[str, Sequence[Cell]] | None = None
+        self.last: Sequence[Cell] | None = None
         self._call = functions.call
-        self.functions = Functions(self._record, functions.block)
+        self.functions = Functions(self._record, {**functions.block, _GIVEN: False})
 
     def _record(self, name: str, args: Sequence[Cell]) -> Any:
-        answer = self._call(name, args)
-        self.last = name, args
-        return answer
+        if name != _GIVEN:
+            return self._call(name, args)
+        self.last = args
+        return 0.0
 
 
 class Probe:
@@ -55,11 +59,11 @@ class Probe:
         """
         if node.rewritten is None or number >= len(node.rewritten.spans):
             return None
-        name, first, last = node.rewritten.spans[number]
+        _, first, last = node.rewritten.spans[number]
         self._recorder.last = None
-        self._settlement.run.try_formula(node, "".join(node.rewritten.pieces[first : last + 1]))
-        recorded = self._recorder.last
-        return list(recorded[1]) if recorded is not None and recorded[0] == name else None
+        given = "".join(node.rewritten.pieces[first + 1 : last + 1])
+        self._settlement.run.try_formula(node, f"{_GIVEN}({given}")
+        return None if self._recorder.last is None else list(self._recorder.last)
 
     def shape(self, node: Node) -> tuple[int, int] | None:
         """Rows and columns of all that a formula gives, shown or not; None where that cannot be told."""

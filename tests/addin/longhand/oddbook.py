@@ -81,6 +81,7 @@ FORMULAS = (
     Odd('TB_AREA("SI",A1:INDEX(A1:A9,COUNT(A1:A9)))', (3, 1)),
     Odd('SUM(TB_AREA("SI",A1:INDEX(A1:A9,3)))'),
     Odd('TB_AREA("SI",INDEX(A1:B3,2,1))'),
+    Odd("ROUND(TB_VELOCITY(INDEX(E5:E9,1),A1,A2),2)", (1, 1)),
     Odd('TB_AREA("SI",A1:A3*B1:B3)', (3, 1)),
     Odd('TB_AREA("SI",A1:A3*TRANSPOSE(A1:A3))', (3, 3)),
     Odd('TB_VELOCITY("SI",A1:A3,TB_AREA("SI",A1:A3)*2)', (3, 1)),
