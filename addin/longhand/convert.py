@@ -104,7 +104,7 @@ def agreement(
     ``apart`` is the verdict on numbers that the tolerance does not cover.
     """
     allowed = f"{tolerance}*MAX(ABS({value}),ABS({own})"
-    allowed += f",0.000001*{scale})" if scale else ")"
+    allowed += f",0.0001*{scale})" if scale else ")"
     other = '"differs"'
     if figures:
         other = f'IF({_without_figures(value)}={_without_figures(own)},"text","differs")'

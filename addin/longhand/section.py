@@ -232,9 +232,15 @@ class Section(Placed):
         if result.role == "flow":
             flows = [self._cell(column.name, at) for column, _ in self.columns if column.role == "flow"]
             return f"MAX({','.join(flows)},0-MIN({','.join(flows)}))/{unit}" if flows else ""
-        if not names:
+        sizes = [f"ABS({self._cell(n, at)})" for n in names]
+        if "EGL1" in self._column and result.role in ("pressure", "force"):
+            # A pressure is what is left of two levels; one metre of water is about 10 kPa.
+            head = f"10000*ABS({self._cell('EGL1', at)})"
+            area = f"*MAX({self._cell('A1', at)},{self._cell('A2', at)})" if result.role == "force" else ""
+            sizes.append(head + area)
+        if not sizes:
             return ""
-        return f"MAX({','.join(f'ABS({self._cell(n, at)})' for n in names)})/{unit}"
+        return f"MAX({','.join(sizes)})/{unit}"
 
     def _write_verdict(self) -> None:
         sheet = self.sheet

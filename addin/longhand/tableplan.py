@@ -271,6 +271,8 @@ def envelope(
                 columns.append((Column(name=f"bearing_{n}", role="angle", text=text), _si("angle")))
             rows.append(RowStep("bearing", "bearing in that case", "angle", f"CHOOSE({{Fhk}},{bearings})"))
     columns.append((Column(name="name", role="text", text="name of the node"), Conversion("", 1.0)))
+    for name, role, text in _SIZES:
+        columns.append((Column(name=name, role=role, text=f"{text}, for the tolerance"), _si(role)))
     lines = []
     for i, line in enumerate(_lines(table)):
         lines.append(TableLine(line.label, "", _envelope_given(cases, line, i)))
@@ -289,6 +291,13 @@ def envelope(
         },
     )
     return Section(row.name, title, target, working, columns, entries, lines)
+
+
+_SIZES: Final = (
+    ("EGL1", "level", "largest energy level of all cases"),
+    ("A1", "area", "area before the node"),
+    ("A2", "area", "area behind the node"),
+)
 
 
 def _si(role: str) -> Conversion:
@@ -311,6 +320,9 @@ def _envelope_given(
                 else:
                     text = section.si_ref(quantity, i)
                 out[f"{quantity}_{n}"] = Formula(text)
+        for name, _, _ in _SIZES:
+            sizes = ",".join(f"ABS({section.si_ref(name, i)})" for _, section in cases)
+            out[name] = Formula(f"MAX({sizes})")
         return out
 
     return given

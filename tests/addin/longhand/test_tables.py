@@ -14,6 +14,7 @@ from thrustbook.addin.catalogue.workings.balance import TB_BALANCE
 from thrustbook.addin.catalogue.workings.runs import run_working
 from thrustbook.addin.hosts.headless.evaluate import evaluate_workbook
 from thrustbook.addin.longhand.detach import Detached
+from thrustbook.addin.longhand.make import Made
 from thrustbook.addin.longhand.section import unknown_names
 from thrustbook.addin.xlsx.a1 import range_from_a1
 from thrustbook.addin.xlsx.package import Package
@@ -21,7 +22,7 @@ from thrustbook.addin.xlsx.sheetxml import stored_values
 
 from .office import recalculated
 from .tablebook import make
-from .test_detach import same
+from .test_detach import TEMPLATES, changed, evaluated, same
 
 # The entries of a load case begin with c in the working.
 CASES = tuple(Column(name=f"c{column.name}", role=column.role) for column in CASE_COLUMNS)
@@ -71,6 +72,14 @@ def stored(path: Path) -> dict[str, dict[tuple[int, int], Any]]:
     package = Package.read(path)
     calling = [sheet for sheet in package.sheets if sheet.name in COUNTS]
     return {s.name: stored_values(package.part(s.part), package.shared_strings) for s in calling}
+
+
+def test_a_pressure_that_is_left_of_two_equal_levels_agrees(tmp_path: Path) -> None:
+    """In pipes ten metres wide a few millipascals stand before the free end: rounding of the levels."""
+    book = evaluated(changed(TEMPLATES / "pipe-run.xlsx", {"Inputs": {"E25": "in"}}, tmp_path / "wide.xlsx"))
+    found = Made(Package.read(book)).verdicts()
+    assert not found["differs"]
+    assert len(found["agrees"]) == 18
 
 
 @pytest.mark.parametrize(
