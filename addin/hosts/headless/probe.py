@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
+from functools import cached_property
 from typing import Any, Final
 
 from ...cells import Cell
@@ -10,8 +12,10 @@ from ...progress import Progress
 from ...xlsx.package import Package
 from .host import Functions, Host
 from .model import Model, Node
+from .run import Run
 from .settle import Settlement
 
+_VOLATILE: Final = re.compile(r"\b(?:NOW|TODAY|RAND|RANDBETWEEN|RANDARRAY)\(", re.IGNORECASE)
 _GIVEN: Final = "THRUSTBOOK.GIVEN"
 """Stands for a TB_ function whose arguments are asked for: the evaluator may compute others in passing."""
 
@@ -52,6 +56,16 @@ class Probe:
         node = self._settlement.model.at.get((self._sheets[sheet.casefold()], row, col))
         return None if node is None or node.index in self._settlement.kept else node
 
+    @cached_property
+    def _run(self) -> Run:
+        """The evaluated copy, in which what would be computed anew with every question stands still."""
+        settlement = self._settlement
+        for node in settlement.model.nodes:
+            volatile = node.anywhere or _VOLATILE.search(node.cell.text) is not None
+            if volatile and node.index not in settlement.kept and node.index not in settlement.failed:
+                settlement.run.hold(node)
+        return settlement.run
+
     def arguments(self, node: Node, number: int) -> list[Cell] | None:
         """The arguments of one TB_ call of a formula, as the dispatcher gets them; None where it gets none.
 
@@ -62,7 +76,7 @@ class Probe:
         _, first, last = node.rewritten.spans[number]
         self._recorder.last = None
         given = "".join(node.rewritten.pieces[first + 1 : last + 1])
-        self._settlement.run.try_formula(node, f"{_GIVEN}({given}")
+        self._run.try_formula(node, f"{_GIVEN}({given}")
         return None if self._recorder.last is None else list(self._recorder.last)
 
     def shape(self, node: Node) -> tuple[int, int] | None:
@@ -70,8 +84,8 @@ class Probe:
         if node.rewritten is None:
             return None
         text = node.rewritten.text
-        rows, _ = self._settlement.run.try_formula(node, f"ROWS({text})")
-        columns, _ = self._settlement.run.try_formula(node, f"COLUMNS({text})")
+        rows, _ = self._run.try_formula(node, f"ROWS({text})")
+        columns, _ = self._run.try_formula(node, f"COLUMNS({text})")
         if not isinstance(rows, float) or not isinstance(columns, float):
             return None
         return int(rows), int(columns)

@@ -10,7 +10,7 @@ from formualizer import ExcelEvaluationError, Workbook, WorkbookConfig
 from ...cells import CellError, Scalar
 from .areas import register_areas
 from .each import register_each
-from .host import Host, scalar
+from .host import Host, engine_rows, engine_value, scalar
 from .model import Model, Node
 
 _SCRATCH_COLUMN = 16_380  # beside everything that people write
@@ -71,6 +71,14 @@ class Run:
         """The value of a formula cell; a formula never gives an empty cell."""
         value = scalar(self.raw(node))
         return 0.0 if value is None else value
+
+    def hold(self, node: Node) -> None:
+        """Put what a formula has given in its place, so that it is not computed again."""
+        sheet, row, col = self._model.sheet_names[node.sheet], node.cell.row, node.cell.col
+        if node.area is None or node.area.kind == "plain":
+            self._workbook.set_value(sheet, row, col, engine_value(self.value(node)))
+        else:
+            self._workbook.set_values_batch(sheet, row, col, engine_rows(node.area.result()))
 
     def try_formula(self, node: Node, text: str) -> tuple[Any, tuple[str, CellError] | None]:
         """What a formula gives in the row of a cell, and which TB_ call failed in it, if any did."""
