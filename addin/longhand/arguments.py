@@ -208,6 +208,12 @@ def linked(ref: str) -> Formula:
     return Formula(f'IF({ref}="","",{ref})')
 
 
+def number_of(ref: str) -> Formula:
+    """The number in a cell; a text that looks like one, and TRUE, are none."""
+    # Some spreadsheets count TRUE as a number.
+    return Formula(f'IF(ISLOGICAL({ref}),#VALUE!,IF(ISNUMBER({ref}),{ref},IF({ref}="","",#VALUE!)))')
+
+
 def taken(
     argument: Argument, arg: Arg | Column, written: Written, i: int = 0, j: int = 0
 ) -> tuple[Content | None, Conversion | None]:
@@ -243,10 +249,10 @@ def taken(
                 digits = f"TRIM(LEFT({trimmed},LEN({trimmed})-{len(name)}))"
                 same = f"EXACT(RIGHT({trimmed},{len(name)}),{quoted(name)})"
                 return Formula(f"IF({same},VALUE({digits}),#VALUE!)"), own
-        if isinstance(value, bool) or (isinstance(value, str) and not is_blank(value)):
-            return Formula(f"IF(OR(ISTEXT({text}),ISLOGICAL({text})),#VALUE!,{linked(text).text})"), None
-        return linked(text), None
-    return linked(text) if hands_on_cells(argument.items) else Formula(text), None
+        return number_of(text), None
+    if not hands_on_cells(argument.items):
+        return Formula(text), None
+    return linked(text) if arg.role in _WORDS else number_of(text), None
 
 
 def own_unit(text: str, role: str) -> Conversion | None:

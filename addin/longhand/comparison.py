@@ -94,7 +94,8 @@ class Comparison:
             entry.formula_of = self._staged_formula(cell)
         for i in range(r2 - r1 + 1 if not one else 1):
             for j in range(c2 - c1 + 1 if not one else 1):
-                self._check(block, cell, entry, i, j, partial(_or_not_available, entry.formula_of, i, j), "")
+                value = partial(_or_not_available, entry.formula_of, i, j)
+                self._check(block, cell, entry, i, j, value, "").scale = partial(_largest, cell)
 
     def _gives_one(self, cell: TbCell, found: Survey) -> bool:
         return not found.takes_results or self._reader.shape(cell) == SINGLE
@@ -155,6 +156,13 @@ class Comparison:
         entry.rows = outcome
         entry.shown.add(result)
         return True
+
+
+def _largest(cell: TbCell) -> str:
+    """The largest of the results in a formula: a difference of them keeps their rounding."""
+    results = [written(item) for item in cell.items if isinstance(item, Call)]
+    sizes = ",".join(f"{text},0-MIN({text})" for text in results)
+    return f"IFERROR(MAX({sizes}),0)"
 
 
 def _gives_words(outcome: Outcome) -> bool:

@@ -87,7 +87,9 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
             continue
         if whole:
             whole += (item.kind in OPENS) - (item.kind in CLOSES)
-            computes = computes or item.kind in (Kind.OPERATOR, Kind.OPEN)
+            computes = computes or item.kind is Kind.OPERATOR
+            if item.kind is Kind.OPEN and function_name(item.text) in _ELEMENTWISE:
+                computes = True
             several = several or item.kind is Kind.ARRAY_OPEN
             if item.kind is Kind.REFERENCE and not several:
                 several = shape_of(item) not in (None, SINGLE)

@@ -12,7 +12,7 @@ from ..hosts.headless.probe import Probe
 from ..progress import Progress
 from ..tables import is_blank
 from ..xlsx.refusals import Refusal
-from .arguments import Argument, resolve
+from .arguments import Argument, linked, number_of, resolve
 from .calls import Call, Items, NotWorked
 from .expressions import SINGLE, hands_on_cells, spans
 from .outcomes import written
@@ -88,7 +88,7 @@ class Reader:
             if numbers and shape == (found.shape if found.elementwise else SINGLE):
                 argument.extent = shape
                 return argument
-        return self._stage(argument, cell, grid)
+        return self._stage(argument, cell, grid, role not in (*_WORDS, *_READ_BEFOREHAND))
 
     def _values(self, cell: TbCell, number: int, k: int) -> list[list[Scalar]] | None:
         """What the evaluator hands to a call; None where it cannot tell."""
@@ -101,7 +101,7 @@ class Reader:
         value = values[k]
         return value if isinstance(value, list) else [[value]]
 
-    def _stage(self, argument: Argument, cell: TbCell, grid: list[list[Scalar]]) -> Argument:
+    def _stage(self, argument: Argument, cell: TbCell, grid: list[list[Scalar]], numeric: bool) -> Argument:
         """An argument that stands in cells of its own."""
         items, shown = argument.items, argument.shown()
         if argument.form == "call":
@@ -110,14 +110,16 @@ class Reader:
             assert call.outcome is not None
             area = self._staged.results(cell, shown, call.outcome)
         else:
-            blanks = hands_on_cells(items) or any(is_blank(v) for line in grid for v in line)
+            flat = [value for line in grid for value in line]
+            handed = hands_on_cells(items) or any(map(is_blank, flat))
+            number = numeric and len(flat) == 1 and isinstance(flat[0], float)
 
             def text() -> str:
                 inside = plain(items, self._source, cell.sheet, written)
                 if spans(items):  # not every evaluator gives the cells between two others as an array
                     inside = f"INDEX({inside},0,0)"
-                # An empty cell stays empty and does not become 0.
-                return f'IF({inside}="","",{inside})' if blanks else inside
+                taken = number_of(inside) if number else linked(inside)
+                return taken.text if handed else inside
 
             area = self._staged.array(cell, shown, (len(grid), len(grid[0])), text)
         return staged_argument(area, argument, [[None if is_blank(v) else v for v in line] for line in grid])
