@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING
 from ..catalogue.registry import CATALOGUE
 from ..catalogue.types import Row, TableLonghand
 from ..cells import CellError
-from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
 from ..longhand.book import Book as Workings
+from ..longhand.make import evaluated, for_the_evaluator
 from ..longhand.parts import Addition
 from ..longhand.source import Source, TbCell
 from ..xlsx.package import Package
@@ -81,11 +81,7 @@ def _recomputed(book: Book) -> Package:
 
 
 def _differing(package: Package, workings: Workings) -> Iterator[tuple[TbCell, str]]:
-    addition = Addition(package, workings.sheets)
-    parts = addition.parts(None)
-    still = {s.part: without_formulas(package.part(s.part)) for s in package.sheets}
-    extents = {s.name: (s.last_row, s.last_col) for s in workings.sheets}
-    values = evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)
+    values = evaluated(package, Addition(package, workings.sheets), for_the_evaluator(package))
     front = workings.summary.sheet.name
     for entry in workings.summary.verdicts(workings.entries, values[front]).get("differs", []):
         names = [call.name for call in entry.cell.calls if _row(call.name) is not None]

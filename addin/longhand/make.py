@@ -7,9 +7,11 @@ import gc
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
+from ..cells import Scalar
 from ..hosts.headless.contexts import Operand, in_context
 from ..hosts.headless.formulas import Unreadable, join, take_apart
 from ..hosts.headless.names import Names
+from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
 from ..progress import Progress
 from ..xlsx.package import Package
 from ..xlsx.refusals import Refusal
@@ -35,7 +37,7 @@ def collection_paused() -> Iterator[None]:
             gc.enable()
 
 
-def _for_the_evaluator(package: Package) -> Callable[[Formula], str]:
+def for_the_evaluator(package: Package) -> Callable[[Formula], str]:
     """Formulas as the embedded evaluator gets them right; for evaluation only.
 
     They are given the values that the file keeps of other workbooks, and a range or an array
@@ -55,12 +57,20 @@ def _for_the_evaluator(package: Package) -> Callable[[Formula], str]:
     return text_of
 
 
+def evaluated(
+    package: Package, addition: Addition, text_of: Callable[[Formula], str]
+) -> dict[str, dict[int, list[Scalar]]]:
+    """The values of new sheets, by sheet and row, over the stored values of the workbook."""
+    still = {sheet.part: without_formulas(package.part(sheet.part)) for sheet in package.sheets}
+    parts = addition.parts(None, text_of)
+    extents = {sheet.name: (sheet.last_row, sheet.last_col) for sheet in addition.sheets}
+    return evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)
+
+
 class Made:
     """Checking sheets for a workbook, with their values."""
 
     def __init__(self, package: Package, progress: Progress | None = None) -> None:
-        from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
-
         self.package = package
         source = Source(package, progress)
         missing = source.without_value()
@@ -74,13 +84,10 @@ class Made:
         self.addition = Addition(package, self.book.sheets)
         if progress is not None:
             progress("evaluate", 0, 1)
-        still = {s.part: without_formulas(package.part(s.part)) for s in package.sheets}
-        self.text_of = _for_the_evaluator(package)
+        self.text_of = for_the_evaluator(package)
         """Formulas as the embedded evaluator gets them right."""
-        parts = self.addition.parts(None, self.text_of)
-        extents = {s.name: (s.last_row, s.last_col) for s in self.book.sheets}
         with collection_paused():
-            self.values = evaluate_sheets(package.to_bytes({**parts.replaced, **still}, parts.added), extents)
+            self.values = evaluated(package, self.addition, self.text_of)
         if progress is not None:
             progress("evaluate", 1, 1)
 
