@@ -94,7 +94,7 @@ class Sheet:
         """Make a row as tall as its wrapped texts need; not every spreadsheet does so by itself."""
         lines = max(
             (
-                -(-len(content) // max(1, int(self.widths.get(col, 9.0) * 1.1)))
+                _lines(content, self.widths.get(col, 9.0) * (1.0 if style == "mono" else 1.1))
                 for col, (content, style) in self.cells[row].items()
                 if isinstance(content, str) and style in WRAPPED
             ),
@@ -114,6 +114,21 @@ class Sheet:
     @property
     def last_col(self) -> int:
         return max((max(cells, default=0) for cells in self.cells.values()), default=0)
+
+
+def _lines(text: str, width: float) -> int:
+    """Lines that a text takes in a cell of so many characters: words go to a new line whole, then are cut."""
+    most = max(1, int(width))
+    if len(text) <= most:
+        return 1
+    lines, used = 1, 0
+    for word in text.split(" "):
+        if used and used + 1 + len(word) <= most:
+            used += 1 + len(word)
+            continue
+        lines += (used > 0) + max(0, len(word) - 1) // most
+        used = max(0, len(word) - 1) % most + 1
+    return lines
 
 
 def quoted_sheet(name: str) -> str:
