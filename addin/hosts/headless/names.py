@@ -8,7 +8,7 @@ from ...xlsx.externals import Externals
 from ...xlsx.formulashift import MovableFormula
 from ...xlsx.package import NameRef
 from .formulas import OPENS, Kind, Part, Unreadable, calls, join, literal, take_apart
-from .lets import without_lets
+from .lets import arguments_from, called, opens_lambda, without_lets
 
 _DEEPEST = 16  # names that refer to names; deeper than any workbook, so that a circle ends
 
@@ -70,8 +70,8 @@ class Names:
         for part in parts:
             if found:
                 break
-            if part.kind is Kind.REFERENCE:
-                inner = self.find(part.text, name.sheet or "")
+            if part.kind in (Kind.REFERENCE, Kind.OPEN):
+                inner = self.find(part.text.removesuffix("("), name.sheet or "")
                 found = inner is not None and self.calling(inner, depth + 1)
         if depth == 0:
             self._calling[name] = found
@@ -109,7 +109,9 @@ class Names:
         nor those that mean another cell at each place. The LETs of a formula that calls one are
         written out, too. Raises :class:`Unreadable` for names in a circle.
         """
-        parts = self._kept_outside(without_lets(parts))
+        if depth > _DEEPEST:
+            raise Unreadable("names refer to themselves")
+        parts = self._kept_outside(without_lets(self._functions(parts, sheet)))
         if not self._names:
             return parts
         out: list[Part] = []
@@ -127,6 +129,29 @@ class Names:
             alone = len(inner) == 1
             out += inner if alone else [Part("(", Kind.PAREN_OPEN), *inner, Part(")", Kind.PAREN_CLOSE)]
         return without_lets(out) if changed else parts
+
+    def _functions(self, parts: list[Part], sheet: str, depth: int = 0) -> list[Part]:
+        """The parts with every call of a name that is a function, and calls a TB_ function, written out."""
+        at = next((i for i, part in enumerate(parts) if self._function(part, sheet) is not None), None)
+        if at is None:
+            return parts
+        if depth > _DEEPEST:
+            raise Unreadable(f"the name {parts[at].text[:-1]} refers to itself")
+        name = self._function(parts[at], sheet)
+        assert name is not None
+        arguments, end = arguments_from(parts, at + 1)
+        written = called(self.parts(name), arguments)
+        return self._functions([*parts[:at], *written, *parts[end:]], sheet, depth + 1)
+
+    def _function(self, part: Part, sheet: str) -> NameRef | None:
+        """The name that a call calls, where that is a LAMBDA with a TB_ function in it."""
+        if part.kind is not Kind.OPEN or not self._names:
+            return None
+        name = self.find(part.text[:-1], sheet)
+        if name is None or not self.calling(name):
+            return None
+        first = next((p for p in self.parts(name) if p.kind is not Kind.SPACE), None)
+        return name if first is not None and opens_lambda(first) else None
 
     def _kept_outside(self, parts: list[Part]) -> list[Part]:
         """The parts with cells of other workbooks as the values that the file keeps of them."""

@@ -94,6 +94,10 @@ FORMULAS = (
     Odd('TB_AREA("SI",IF(A1:A3>0.15,E7,A1:A3))', (3, 1)),
     Odd('LET(x,A1*2,d,x+A2,TB_AREA("SI",d)*x)'),
     Odd('_xlfn.LET(_xlpm.d,A1:A3,TB_AREA("SI",_xlpm.d))', (3, 1)),
+    Odd('LAMBDA(d,k,TB_AREA("SI",d)*k)(A2,1+1)'),
+    Odd('_xlfn.LAMBDA(_xlpm.d,SUM(TB_AREA("SI",_xlpm.d)))(A1:A3)'),
+    Odd("ROUND(TWICE(A2)+TWICE(A1*2),6)"),
+    Odd("TWICE(A1:A3)", (3, 1)),
     Odd('TB_AREA("SI",_xlfn.SINGLE($M$1:$M$999))'),
     Odd('TB_AREA("SI",_xlfn.ANCHORARRAY(H20))', (3, 1)),
     # Names: of a cell, of an expression, of the cell that stands four columns to the right
@@ -199,6 +203,8 @@ def make(path: Path) -> Path:
     sheet["E5"], sheet["E6"], sheet["F6"], sheet["E7"], sheet["E8"] = "SI", "Fx", "Fy", "150 mm", "m"
     for name, text in (("diameters", "$A$1:$A$3"), ("doubled", "$A$1:$A$3*2"), ("beside", "F1")):
         book.defined_names[name] = DefinedName(name, attr_text=f"{SHEET}!{text}")
+    function = '_xlfn.LAMBDA(_xlpm.d,TB_AREA("SI",_xlpm.d)*2)'
+    book.defined_names["TWICE"] = DefinedName("TWICE", attr_text=function)
     book.defined_names["linked"] = DefinedName("linked", attr_text="[1]Data!$A$2")
     book._external_links.append(_link({"A1": 0.11, "A2": 0.12, "A3": 0.13, "B1": 3.0, "B2": "SI"}))
     for number, odd in enumerate(FORMULAS):
