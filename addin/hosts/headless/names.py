@@ -109,8 +109,6 @@ class Names:
         nor those that mean another cell at each place. The LETs of a formula that calls one are
         written out, too. Raises :class:`Unreadable` for names in a circle.
         """
-        if depth > _DEEPEST:
-            raise Unreadable("names refer to themselves")
         parts = self._kept_outside(without_lets(self._functions(parts, sheet)))
         if not self._names:
             return parts
