@@ -10,7 +10,7 @@ from lxml import etree
 
 from ..cells import CellError, Scalar
 from ..hosts.headless.elsewhere import elsewhere
-from ..hosts.headless.plainvalues import evaluate_sheets
+from ..hosts.headless.plainvalues import evaluate_sheets, without_formulas
 from ..progress import Progress
 from ..xlsx.opc import MAIN, parse
 from ..xlsx.package import Package
@@ -93,11 +93,13 @@ class Detached:
             replaced[sheets[name]] = set_formulas(xml, formulas, formulas.keys())
         workbook = self.package.workbook_part
         replaced[workbook] = _recalculating(replaced[workbook], workbook, self.package.path.name)
-        self._store_values(replaced, sheets)
+        self._store_values(replaced, parts.added, sheets)
         self.package.save(target, replaced, parts.added)
 
-    def _store_values(self, replaced: dict[str, bytes], sheets: dict[str, str]) -> None:
-        """Give the changed cells the values of their new formulas."""
+    def _store_values(
+        self, replaced: dict[str, bytes], added: dict[str, bytes], sheets: dict[str, str]
+    ) -> None:
+        """Give the changed cells the values of their new formulas; those of the checking sheets are known."""
         extents = {
             name: (max(r for r, _ in places), max(c for _, c in places))
             for name, places in self._formulas.items()
@@ -109,8 +111,8 @@ class Detached:
         for name, formulas in self._formulas.items():
             texts = {place: text_of(Formula(text)) for place, text in formulas.items()}
             evaluated[sheets[name]] = set_formulas(self.package.part(sheets[name]), texts, texts.keys())
-        added = self.made.addition.parts(None, text_of).added
-        values = evaluate_sheets(self.package.to_bytes(evaluated, added), extents)
+        known = {part: without_formulas(xml) for part, xml in added.items()}
+        values = evaluate_sheets(self.package.to_bytes(evaluated, known), extents)
         for name, places in self._formulas.items():
             before = self.made.book.source.values(name)
             new: dict[Place, Scalar] = {}
