@@ -23,6 +23,7 @@ from .calls import Call, read_calls
 from .circles import WORDS, circles, in_circles
 from .labels import Surroundings
 from .relative import moving, of_own_row, relative_form
+from .writtenunits import Met, met
 
 Place = tuple[int, int, int]
 """Sheet (from 0), row and column (from 1)."""
@@ -224,6 +225,11 @@ class Book:
     def circular(self) -> tuple[list[list[Node]], set[int]]:
         """The circles of formulas that refer to themselves, and all formulas spoilt by them."""
         return circles(self)
+
+    @cached_property
+    def written_units(self) -> list[Met]:
+        """The units written at the cells that calls read and fill."""
+        return list(met(self))
 
     @cached_property
     def unclosed(self) -> dict[int, tuple[Call, str]]:

@@ -13,7 +13,7 @@ from .book import Book, Place
 from .calls import Call
 from .gather import Remark, joined
 from .types import Finding, Rule, Severity
-from .writtenunits import Met, met
+from .writtenunits import Met
 
 _Key: TypeAlias = tuple[str, float, int, float]
 """A unit: its symbol, and what makes it that unit."""
@@ -106,7 +106,7 @@ def _unlike(book: Book) -> tuple[list[Met], list[list[Met]]]:
     """What disagrees: texts, each with a call; and calls whose unit set is at fault, each with its cells."""
     of_call: dict[int, list[Met]] = {}
     votes: Counter[Place] = Counter()
-    for one in met(book):
+    for one in book.written_units:
         of_call.setdefault(id(one.call), []).append(one)
         votes[one.written.place] += 1 if one.agrees else -1
     agreed = {one.written.place for found in of_call.values() for one in found if one.agrees}

@@ -24,7 +24,7 @@ Written = Callable[[Call], str]
 """How a call inside an argument is written: a reference to its long-hand result."""
 
 _QUANTITY = re.compile(r"\s*[-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?\s*(\S.*?)\s*")
-_WORDS = ("choice", "text", "any")
+WORDS = ("choice", "text", "any")
 """Roles of arguments that are no numbers."""
 
 
@@ -90,16 +90,12 @@ class Argument:
             return formula_text(self.value(i, j))
         items = self.items
         if self.survey is not None and self.extent != SINGLE:
-            items = element(self.survey, items, i, j, self._element)
+            items = element(self.survey, items, i, j, self._cell)
         return render(items, lambda text: self.source.operand(text, self.sheet), written)
 
-    def _element(self, n: int, i: int, j: int) -> str:
-        """One element of an item with several values."""
-        item = self.items[n]
-        if isinstance(item, Call):
-            assert item.outcome is not None
-            return item.outcome.at(i, j)
-        area = self.source.area(item.text, self.sheet)
+    def _cell(self, operand: Part, i: int, j: int) -> str:
+        """One cell of a range."""
+        area = self.source.area(operand.text, self.sheet)
         assert area is not None
         return area.ref(i, j)
 
@@ -230,7 +226,7 @@ def taken(
             return value, None
         if not isinstance(value, str):
             return Formula(str(value)), None
-        if arg.role in _WORDS:
+        if arg.role in WORDS:
             return value, None
         own = own_unit(value, arg.role)
         if own is None:
@@ -239,7 +235,7 @@ def taken(
     text = argument.text(written, i, j)
     if argument.form == "area":
         value = argument.value(i, j)
-        if arg.role in _WORDS:
+        if arg.role in WORDS:
             return linked(text), None
         if isinstance(value, str) and not is_blank(value):
             own = own_unit(value, arg.role)
@@ -252,7 +248,7 @@ def taken(
         return number_of(text), None
     if not hands_on_cells(argument.items):
         return Formula(text), None
-    return linked(text) if arg.role in _WORDS else number_of(text), None
+    return linked(text) if arg.role in WORDS else number_of(text), None
 
 
 def own_unit(text: str, role: str) -> Conversion | None:

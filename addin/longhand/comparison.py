@@ -5,7 +5,10 @@ from __future__ import annotations
 from collections.abc import Callable
 from functools import partial
 
+import numpy as np
+
 from ..cells import Scalar
+from ..hosts.headless.formulas import Part
 from ..tables import is_blank
 from ..xlsx.a1 import to_a1
 from .arguments import surveyed
@@ -41,7 +44,7 @@ class Comparison:
         assert outcome is not None
         entry.formula_of = partial(_repeated, outcome)
         entry.words = _gives_words(outcome)
-        for i, j in _filled(cell):
+        for i, j in np.ndindex(cell.shape):
             self._result(outcome, cell, entry, i, j)
 
     def _result(self, outcome: Outcome, cell: TbCell, entry: Entry, i: int, j: int) -> None:
@@ -81,8 +84,7 @@ class Comparison:
         """A formula around one call or several."""
         plain(cell.items, self._source, cell.sheet, named)  # whatever cannot be written is found here
         found = surveyed(cell.items, cell.sheet, self._source)
-        r1, c1, r2, c2 = cell.cell.ref or (0, 0, 0, 0)
-        one = cell.cell.kind == "plain" or (r1, c1) == (r2, c2)
+        one = cell.shape == SINGLE
         last = [item for item in cell.items if isinstance(item, Call)][-1].outcome
         block = last.block if isinstance(last, BlockOutcome) and one else self.loose
         array = found.computes and (found.takes_results or cell.cell.kind != "plain")
@@ -92,10 +94,9 @@ class Comparison:
             entry.formula_of = lambda i, j: render(cell.items, self._operand(cell), written)
         else:
             entry.formula_of = self._staged_formula(cell)
-        for i in range(r2 - r1 + 1 if not one else 1):
-            for j in range(c2 - c1 + 1 if not one else 1):
-                value = partial(_or_not_available, entry.formula_of, i, j)
-                self._check(block, cell, entry, i, j, value, "").scale = partial(_largest, cell)
+        for i, j in np.ndindex(cell.shape):
+            value = partial(_or_not_available, entry.formula_of, i, j)
+            self._check(block, cell, entry, i, j, value, "").scale = partial(_largest, cell)
 
     def _gives_one(self, cell: TbCell, found: Survey) -> bool:
         return not found.takes_results or self._reader.shape(cell) == SINGLE
@@ -108,12 +109,8 @@ class Comparison:
         shape = found.shape
         own = cell.cell
 
-        def of_range(n: int, i: int, j: int) -> str:
-            item = cell.items[n]
-            if isinstance(item, Call):
-                assert item.outcome is not None
-                return item.outcome.at(i, j)
-            area = self._source.area(item.text, cell.sheet)
+        def of_range(operand: Part, i: int, j: int) -> str:
+            area = self._source.area(operand.text, cell.sheet)
             assert area is not None
             return area.ref(i, j) if own.kind != "plain" else area.meeting(own.row, own.col)
 
@@ -203,11 +200,3 @@ def _or_not_available(formula_of: Callable[[int, int], str], i: int, j: int) -> 
         return formula_of(i, j)
     except NotWorked:
         return "NA()"
-
-
-def _filled(cell: TbCell) -> list[Shape]:
-    """The cells that a formula fills, counted from its first."""
-    if cell.cell.kind == "plain" or cell.cell.ref is None:
-        return [(0, 0)]
-    r1, c1, r2, c2 = cell.cell.ref
-    return [(i, j) for i in range(r2 - r1 + 1) for j in range(c2 - c1 + 1)]

@@ -78,10 +78,8 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
     for i, item in enumerate(items):
         if isinstance(item, Call):
             shape = outcome_shape(item)
-            if whole and shape != SINGLE:
+            if shape != SINGLE and whole:
                 takes_results = several = True
-            elif whole:
-                pass
             elif shape != SINGLE:
                 loose[i] = shape
             continue
@@ -116,10 +114,17 @@ def survey(items: Items, shape_of: Callable[[Part], Shape | None]) -> Survey:
     return Survey(loose, elementwise, number, takes_results, computes and several)
 
 
-def element(survey_: Survey, items: Items, i: int, j: int, at: Callable[[int, int, int], str]) -> Items:
-    """The items for one element; ``at(number, row, column)`` writes that element of a loose item."""
+def element(survey_: Survey, items: Items, i: int, j: int, cell: Callable[[Part, int, int], str]) -> Items:
+    """The items for one element; ``cell(range, row, column)`` writes that element of a range."""
+
+    def written(item: Part | Call, i: int, j: int) -> str:
+        if not isinstance(item, Call):
+            return cell(item, i, j)
+        assert item.outcome is not None
+        return item.outcome.at(i, j)
+
     return [
-        Part(at(n, *within(survey_.loose[n], i, j)), Kind.LITERAL) if n in survey_.loose else item
+        Part(written(item, *within(survey_.loose[n], i, j)), Kind.LITERAL) if n in survey_.loose else item
         for n, item in enumerate(items)
     ]
 

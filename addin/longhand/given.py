@@ -8,18 +8,18 @@ from typing import Any
 from ..catalogue.types import Longhand, Row
 from ..cells import CellError, Scalar
 from ..hosts.headless.formulas import Kind, Part
+from ..hosts.headless.model import Node
 from ..hosts.headless.probe import Probe
 from ..progress import Progress
 from ..tables import is_blank
 from ..xlsx.refusals import Refusal
-from .arguments import Argument, linked, number_of, resolve
+from .arguments import WORDS, Argument, linked, number_of, resolve
 from .calls import Call, Items, NotWorked
 from .expressions import SINGLE, hands_on_cells, spans
-from .outcomes import written
+from .outcomes import named, written
 from .source import Area, Source, TbCell, plain
 from .staged import Staged
 
-_WORDS = ("choice", "text", "any")
 _READ_BEFOREHAND = ("table", "headings")
 
 
@@ -43,10 +43,12 @@ class Reader:
 
     def shape(self, cell: TbCell) -> tuple[int, int] | None:
         """Rows and columns of all that a formula gives; None where that cannot be told."""
-        if self._probe is None:
-            return None
-        node = self._probe.node(cell.sheet, cell.cell.row, cell.cell.col)
-        return None if node is None else self._probe.shape(node)
+        node = self._node(cell)
+        return None if self._probe is None or node is None else self._probe.shape(node)
+
+    def _node(self, cell: TbCell) -> Node | None:
+        """The formula of a cell in the evaluated workbook; None where it cannot be asked."""
+        return None if self._probe is None else self._probe.node(cell.sheet, cell.cell.row, cell.cell.col)
 
     def arguments(self, call: Call, number: int, cell: TbCell, row: Row) -> list[Argument]:
         """The arguments of one call, the calls of a cell counted from 0. Raises NotWorked."""
@@ -55,8 +57,8 @@ class Reader:
             argument = resolve(items, cell.sheet, self._source)
             beforehand = _beforehand(row, k)
             if argument.form == "expression" or (argument.form == "call" and beforehand):
-                text = plain(items, self._source, cell.sheet, _identity)
-                key = cell.sheet, row.name, k, text, _fills_one(cell)
+                text = plain(items, self._source, cell.sheet, named)
+                key = cell.sheet, row.name, k, text, cell.shape == SINGLE
                 found = self._known.get(key)
                 if found is None:
                     found = self._known[key] = self._settled(argument, cell, number, k, row, beforehand)
@@ -71,31 +73,29 @@ class Reader:
         found = argument.survey
         role = row.args[k - row.leading].role if row.leading <= k < row.leading + len(row.args) else "any"
         plain_text = found is not None and not beforehand and found.elementwise and not found.computes
-        if found is not None and plain_text and (found.number or role in _WORDS):
+        if found is not None and plain_text and (found.number or role in WORDS):
             return argument
         grid = self._values(cell, number, k)
         if grid is not None and isinstance(grid[0][0], CellError) and grid[0][0].kind == "NAME":
             grid = None  # a function that the evaluator does not know
         failed = grid is None or (len(grid) == 1 and isinstance(grid[0][0], CellError))
-        one = found is not None and (found.elementwise or (grid is not None and _fills_one(cell)))
+        one = found is not None and (found.elementwise or (grid is not None and cell.shape == SINGLE))
         if failed and one and not beforehand:
             return argument
         if grid is None or (failed and not isinstance(cell.cell.value, CellError)):
             raise NotWorked(f"{argument.shown()} must be known beforehand and cannot be evaluated here")
         if found is not None and not beforehand and not found.computes and not spans(argument.items):
-            numbers = role in _WORDS or all(isinstance(v, float | CellError) for line in grid for v in line)
+            numbers = role in WORDS or all(isinstance(v, float | CellError) for line in grid for v in line)
             shape = len(grid), len(grid[0])
             if numbers and shape == (found.shape if found.elementwise else SINGLE):
                 argument.extent = shape
                 return argument
-        return self._stage(argument, cell, grid, role not in (*_WORDS, *_READ_BEFOREHAND))
+        return self._stage(argument, cell, grid, role not in (*WORDS, *_READ_BEFOREHAND))
 
     def _values(self, cell: TbCell, number: int, k: int) -> list[list[Scalar]] | None:
         """What the evaluator hands to a call; None where it cannot tell."""
-        if self._probe is None:
-            return None
-        node = self._probe.node(cell.sheet, cell.cell.row, cell.cell.col)
-        values = None if node is None else self._probe.arguments(node, number)
+        node = self._node(cell)
+        values = None if self._probe is None or node is None else self._probe.arguments(node, number)
         if values is None or k >= len(values):
             return None
         value = values[k]
@@ -129,15 +129,6 @@ def staged_argument(area: Area, argument: Argument, values: list[list[Any]]) -> 
     """An argument that is a range of the checking sheets."""
     items: Items = [Part(area.text(), Kind.REFERENCE)]
     return Argument("area", argument.sheet, items, argument.source, area, values)
-
-
-def _identity(call: Call) -> str:
-    return f"#{id(call.outcome)}"
-
-
-def _fills_one(cell: TbCell) -> bool:
-    ref = cell.cell.ref
-    return cell.cell.kind == "plain" or ref is None or ref[:2] == ref[2:]
 
 
 def _beforehand(row: Row, k: int) -> bool:

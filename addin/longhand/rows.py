@@ -9,6 +9,7 @@ from typing import Final
 from ..catalogue.registry import wording
 from ..catalogue.types import Arg, Longhand, Row, Step
 from ..xlsx.a1 import column_letters
+from .arguments import linked
 from .convert import (
     ANGLE_SCALE,
     P_ATM,
@@ -219,7 +220,7 @@ class RowSheet:
             sheet.put(at, col, Formula(value), "result")
             own = line.own.get(name)
             if own is not None:
-                sheet.put(at, col + 1, Formula(f'IF({own}="","",{own})'), "linked")
+                sheet.put(at, col + 1, linked(own), "linked")
                 sheet.put(at, col + 2, Formula(f"{local(at, col)}-{local(at, col + 1)}"), "difference")
                 scale = self._scale(name, cells)
                 if scale:

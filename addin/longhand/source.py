@@ -11,8 +11,6 @@ from typing import Any, NamedTuple
 from ..cells import CellError, Scalar
 from ..hosts.headless.contexts import Operand, meant_as_one_cell
 from ..hosts.headless.formulas import (
-    CLOSES,
-    OPENS,
     Kind,
     Part,
     Unreadable,
@@ -21,13 +19,14 @@ from ..hosts.headless.formulas import (
     functions,
     take_apart,
 )
+from ..hosts.headless.lets import arguments_from
 from ..hosts.headless.names import Names, split_sheet
 from ..hosts.headless.tablerefs import Tables
 from ..progress import Progress
 from ..xlsx.a1 import MAX_COLUMN, MAX_ROW, range_from_a1, to_a1
 from ..xlsx.package import Package
 from ..xlsx.sheetxml import FormulaCell, formula_cells, stored_values
-from .calls import Call, Items, NotWorked, all_calls, everything, render, tree
+from .calls import Call, Items, NotWorked, Shape, all_calls, everything, render, tree
 from .grid import quoted_sheet
 from .symbols import quoted
 
@@ -82,6 +81,14 @@ class TbCell:
     @property
     def a1(self) -> str:
         return to_a1(self.cell.row, self.cell.col)
+
+    @property
+    def shape(self) -> Shape:
+        """Rows and columns that the formula fills."""
+        if self.cell.kind == "plain" or self.cell.ref is None:
+            return 1, 1
+        r1, c1, r2, c2 = self.cell.ref
+        return r2 - r1 + 1, c2 - c1 + 1
 
     @property
     def where(self) -> str:
@@ -234,16 +241,17 @@ class Source:
             name = function_name(part.text) if part.kind is Kind.OPEN else ""
             if name not in _OF_THE_PLACE:
                 continue
-            given, end = _first_argument(parts, at)
+            arguments, behind = arguments_from(parts, at)
+            given = [part for part in arguments[0] if part.kind is not Kind.SPACE]
             first = given[0].text if given else ""
             if name == "INDIRECT" and first.startswith('"'):
                 word = str(literal(given[0]))
                 if "!" in word:
                     continue
-                if len(given) > 1 or parts[end].kind is Kind.COMMA:
+                if len(given) > 1 or len(arguments) > 1:
                     raise NotWorked("the formula uses INDIRECT, which depends on where it stands")
                 out.append(Part(quoted(f"{quoted_sheet(sheet)}!{word}"), Kind.LITERAL))
-                at = end
+                at = behind - 1
             elif name not in ("ROW", "COLUMN"):
                 raise NotWorked(f"the formula uses {name}, which depends on where it stands")
             elif not given:
@@ -323,17 +331,6 @@ class Source:
         if area is not None:
             return area.text()
         return text if "!" in text else f"{quoted_sheet(sheet)}!{text}"
-
-
-def _first_argument(parts: list[Part], at: int) -> tuple[list[Part], int]:
-    """What is given first to a function opened before, and the place of the comma or bracket behind it."""
-    depth, end = 0, at
-    while end < len(parts) and (depth or not (parts[end].kind is Kind.COMMA or parts[end].kind in CLOSES)):
-        depth += (parts[end].kind in OPENS) - (parts[end].kind in CLOSES)
-        end += 1
-    if end == len(parts):
-        raise NotWorked("the brackets of the formula do not close")
-    return [part for part in parts[at:end] if part.kind is not Kind.SPACE], end
 
 
 def literal(part: Part) -> Scalar:

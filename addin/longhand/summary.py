@@ -43,7 +43,6 @@ class Entry:
     table: TableOutcome | ScheduleOutcome | None = None
     shown: set[str] = field(default_factory=set)
     """Results whose cells stand beside their rows or their table."""
-    formula: Callable[[], str] = lambda: ""
     formula_of: Callable[[int, int], str] | None = None
     """The long-hand formula of each cell that the formula fills, counted from its first."""
     row: int = 0

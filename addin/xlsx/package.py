@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import os
 from collections.abc import Mapping, Sequence
+from functools import cached_property
 from os import PathLike
 from pathlib import Path
 from typing import NamedTuple
@@ -76,7 +77,6 @@ class Package:
     signed: bool
     has_macros: bool
     external_links: bool
-    externals: Externals
     date1904: bool
     sha256: str
 
@@ -109,9 +109,16 @@ class Package:
             name.endswith("vbaproject.bin") or name.startswith("xl/macrosheets/") for name in parts
         )
         by_id = {link.id: link.part for link in links if link.kind == "externalLink"}
-        linked = [by_id.get(n.get(RELATION_ID, ""), "") for n in root.iter(f"{{{MAIN}}}externalReference")]
+        self._linked = [
+            by_id.get(node.get(RELATION_ID, ""), "") for node in root.iter(f"{{{MAIN}}}externalReference")
+        ]
         self.external_links = bool(by_id)
-        self.externals = Externals([parse(self.part(part), part, label) for part in linked if self.has(part)])
+
+    @cached_property
+    def externals(self) -> Externals:
+        """What the file keeps of the workbooks that it is linked to."""
+        parts = [part for part in self._linked if self.has(part)]
+        return Externals([parse(self.part(part), part, self.path.name) for part in parts])
 
     @classmethod
     def read(cls, path: str | PathLike[str]) -> Package:

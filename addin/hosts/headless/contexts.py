@@ -161,13 +161,18 @@ def _flat(items: Sequence[_Item]) -> list[Part]:
         if isinstance(item, Part):
             out.append(item)
             continue
-        out.append(item.opening)
-        for number, argument in enumerate(item.arguments):
-            if number:
-                out.append(item.separators[number - 1])
-            out += _flat(argument)
-        out.append(item.closing)
+        out += _joined(item, [_flat(argument) for argument in item.arguments])
     return out
+
+
+def _joined(bracket: _Bracket, arguments: Sequence[Sequence[Part]]) -> list[Part]:
+    """A bracket with other arguments."""
+    out = [bracket.opening]
+    for number, argument in enumerate(arguments):
+        if number:
+            out.append(bracket.separators[number - 1])
+        out += argument
+    return [*out, bracket.closing]
 
 
 def _solid(items: Sequence[_Item]) -> list[_Item]:
@@ -261,16 +266,7 @@ class _Formula:
         return self._plain_call(call, Stands.ARRAY), name not in REDUCES_ARRAYS and count > 0
 
     def _plain_call(self, call: _Bracket, stands: Stands) -> list[Part]:
-        return self._joined(call, [self.expression(argument, stands)[0] for argument in call.arguments])
-
-    @staticmethod
-    def _joined(call: _Bracket, arguments: Sequence[Sequence[Part]]) -> list[Part]:
-        out = [call.opening]
-        for number, argument in enumerate(arguments):
-            if number:
-                out.append(call.separators[number - 1])
-            out += argument
-        return [*out, call.closing]
+        return _joined(call, [self.expression(argument, stands)[0] for argument in call.arguments])
 
     def _with_single_values(
         self, call: _Bracket, name: str, single: frozenset[int], stands: Stands
@@ -286,7 +282,7 @@ class _Formula:
             self._undisputed(name, call.arguments[DISPUTED[name]])
         if several and name not in BY_ITSELF:
             return self._each(call, name, several, texts), True
-        out = self._joined(call, texts)
+        out = _joined(call, texts)
         if name in REFERS and stands in (Stands.OPERAND, Stands.SINGLE):
             return [_AT, *out], False
         if name in CHOOSES or name in BY_ITSELF:
@@ -347,7 +343,7 @@ class _Formula:
             list(text) if join(text).strip() else [Part(f'"{OMITTED}"', Kind.LITERAL)] for text in texts
         ]
         opening = [Part(f"{EACH}(", Kind.OPEN), Part(f'"{name}"', Kind.LITERAL), Part(",", Kind.COMMA)]
-        return [*opening, *self._joined(call, filled)[1:]]
+        return [*opening, *_joined(call, filled)[1:]]
 
     def _place(self, call: _Bracket, name: str, stands: Stands) -> _Shown:
         """ROW or COLUMN: the numbers of all rows or columns of a range."""
